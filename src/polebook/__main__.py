@@ -1,0 +1,7 @@
+"""`python -m polebook` is `polebook`."""
+
+import sys
+
+from polebook.cli.main import main
+
+sys.exit(main())

@@ -1,0 +1,87 @@
+"""Edits of a chain file that name what they change: one key set or taken out, and no fault added."""
+
+from __future__ import annotations
+
+import re
+from collections import Counter
+from collections.abc import Mapping
+from typing import Any
+
+from polebook.chain.paths import Located, PathRefused, locate
+from polebook.chain.read import Reading, reading_of
+from polebook.param import Param
+from polebook.problem import Problem, ProblemsFound
+from polebook.quantity import DIMENSIONS
+from polebook.text import literal, splice
+from polebook.text.edit import Edit
+
+_DATE = re.compile(r"[0-9]{4}-[0-9]{2}-[0-9]{2}")
+
+
+def set_value(text: str, file: str, path: str, value: str) -> tuple[Edit, list[Problem]]:
+    """The edit that gives the key at `path` ("Q1.rc") the value as typed, and the faults that the file then still has.
+
+    Raises ProblemsFound where the path leads nowhere, the text is not TOML, or the edit would add a fault to a
+    file without taking others away.
+    """
+    before = reading_of(text, file)
+    found = locate(path, _content(before, text))
+    edit = splice.set_value(text, found.path, written(found, value), file)
+    return edit, _judged(before, edit.apply(text), file)
+
+
+def unset(text: str, file: str, path: str) -> tuple[Edit, list[Problem]]:
+    """The edit that takes the key at `path` out, and the faults that the file then still has; raises as `set_value`."""
+    before = reading_of(text, file)
+    found = locate(path, _content(before, text))
+    edit = splice.unset(text, found.path, file)
+    return edit, _judged(before, edit.apply(text), file)
+
+
+def _content(reading: Reading, text: str) -> Mapping[str, Any]:
+    if reading.data is None:
+        raise ProblemsFound(reading.problems, text)
+    return reading.data
+
+
+def _judged(before: Reading, after: str, file: str) -> list[Problem]:
+    """The faults of the changed text. Raises ProblemsFound with those that the edit adds, where it takes none away."""
+    reading = reading_of(after, file)
+    old = Counter((problem.what, path) for problem, path in before.faults)
+    new = Counter((problem.what, path) for problem, path in reading.faults)
+    added = new - old
+    if added and new.total() >= old.total():
+        raise ProblemsFound(
+            dict.fromkeys(problem for problem, path in reading.faults if (problem.what, path) in added), after
+        )
+    return reading.problems
+
+
+def written(found: Located, value: str) -> str:
+    """`value`, as typed by its user, as the file writes it."""
+    param = found.param
+    dimension = param.dimension if param else ""
+    typed = value.strip()
+    if dimension in ("arms", "table"):
+        example = f"{found.number}.1.series_r" if dimension == "arms" else f"{found.number}.rc"
+        raise PathRefused(
+            f"{found.number} holds several values", "one edit sets one key", f"name one of them, for example {example}"
+        )
+    if dimension in ("keys", "quantities"):
+        return _list(param, typed)
+    if dimension == "flag" and typed in ("true", "false"):
+        return typed
+    if (dimension == "format" and typed.isdecimal() and typed.isascii()) or (
+        dimension == "date" and _DATE.fullmatch(typed)
+    ):
+        return typed
+    if dimension in DIMENSIONS:
+        return literal.literal(value)
+    return literal.string(value)
+
+
+def _list(param: Param | None, typed: str) -> str:
+    """A list as typed with commas, brackets and quotes or not."""
+    items = [item.strip().strip("\"'") for item in typed.removeprefix("[").removesuffix("]").split(",")]
+    as_text = literal.string if param and param.dimension == "keys" else literal.literal
+    return f"[{', '.join(as_text(item) for item in items if item)}]"

@@ -1,0 +1,113 @@
+"""Chain -> circuit: the topology once, and the values of its parts as often as wanted."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from polebook.chain.model import Chain, Stage
+from polebook.circuit import bias, terminals
+from polebook.circuit.bias import Operating
+from polebook.circuit.figures import stage_figures
+from polebook.circuit.layout import Layout, arrange
+from polebook.circuit.recorder import Collector, Recorder
+from polebook.circuit.terminals import Get
+from polebook.circuit.views import Network, network
+from polebook.devices.missing import Lack
+from polebook.problem import Problem, ProblemsFound
+from polebook.stages.registry import KINDS, STAMPS
+from polebook.stages.stamper import Given, Stamper, Value
+
+
+@dataclass(frozen=True, slots=True)
+class Circuit:
+    """A chain with its topology, its operating points and its network at the file's own values."""
+
+    chain: Chain
+    plan: bias.Plan
+    layout: Layout
+    points: Mapping[str, Operating]
+    network: Network
+
+
+def circuit(chain: Chain) -> Circuit:
+    """Solves the bias, and lays out the network. Raises ProblemsFound where a needed figure cannot be had."""
+    plan = bias.plan(chain)
+    get = chain.numbers.get
+    points = bias.solve(plan, get, compare=True)
+    recorder = Recorder()
+    lacks = _stamp_source(recorder, chain, get)
+    for stage in chain.stages:
+        before = recorder.segments[-1].after
+        segment = recorder.begin(stage.name, stage.kind, before)
+        segment.after = before
+        if not stage.left_out:
+            given, missing = given_of(chain, stage, get, points)
+            lacks += [(stage, lack) for lack in missing]
+            if not missing:
+                segment.after = STAMPS[KINDS[stage.kind].topology](recorder, before, given)
+    if lacks:
+        raise ProblemsFound([_problem(chain, plan, stage, lack) for stage, lack in lacks], "")
+    before = recorder.segments[-1].after
+    segment = recorder.begin("load", "load", before)
+    segment.after = terminals.load(recorder, before, get)
+    emf = 0 if chain.source_kind == "voltage" else -1
+    layout = arrange(recorder, emf)
+    return Circuit(chain, plan, layout, points, network(layout, recorder.values))
+
+
+def _stamp_source(recorder: Recorder, chain: Chain, get: Get) -> list[tuple[Stage, Lack]]:
+    segment = recorder.begin("source", chain.source_kind, -1)
+    _, segment.after = terminals.source(recorder, chain.source_kind == "voltage", get)
+    return []
+
+
+def given_of(chain: Chain, stage: Stage, get: Get, points: Mapping[str, Operating]) -> tuple[Given, tuple[Lack, ...]]:
+    """What a stage is stamped from, and what is missing for it."""
+    figures, upper, lacks = stage_figures(chain, stage, get, points)
+    family = chain.cards[stage.device].family if stage.device else ""
+    prefix = stage.name + "."
+    given = Given(family, lambda key: get(prefix + key), figures, upper, stage.arms, stage.poles, stage.lower_poles)
+    return given, lacks
+
+
+def values(of: Circuit, override: Mapping[str, Value]) -> list[Value]:
+    """Part values with some numbers of the file replaced: floats, complex numbers or arrays of one shape.
+
+    The parts are those of the layout, in its order; a value that makes a part vanish needs a new circuit.
+    """
+    numbers = of.chain.numbers
+
+    def get(path: str) -> Value | None:
+        return override[path] if path in override else numbers.get(path)
+
+    points = bias.solve(of.plan, get)
+    collector = Collector(of.layout.recorder)
+    stamper: Stamper = collector
+    terminals.source(stamper, of.chain.source_kind == "voltage", get)
+    for stage in of.chain.stages:
+        if not stage.left_out:
+            given, _ = given_of(of.chain, stage, get, points)
+            STAMPS[KINDS[stage.kind].topology](stamper, 0, given)
+    terminals.load(stamper, 0, get)
+    return collector.values
+
+
+def with_values(of: Circuit, override: Mapping[str, Value]) -> Network:
+    """The network with some numbers of the file replaced."""
+    return network(of.layout, values(of, override))
+
+
+def _problem(chain: Chain, plan: bias.Plan, stage: Stage, lack: Lack) -> Problem:
+    place = chain.places.get(stage.name)
+    card = chain.cards[stage.device]
+    if lack.of_stage:
+        reasons = bias.missing(plan, chain).get(stage.name, "")
+        why = f"{lack.why}, and the current cannot be solved" + (f": {reasons}" if reasons else "")
+        key = {"bjt": "ic", "triode": "ia"}.get(card.family, "id")
+        return Problem(place, f"{lack.figure} of stage {stage.name} cannot be had", why,
+                       f"state the quiescent current ({key}) of the stage, or give the card {card.name} its {lack.figure}")
+    return Problem(chain.places.get(f"device.{card.name}", place), f"card {card.name} lacks {lack.key}",
+                   f"stage {stage.name} needs {lack.figure}: {lack.why}", f"add {lack.key} to [device.{card.name}]")
+
+

@@ -1,0 +1,80 @@
+"""The elements of a chain's network, by node and part number; values are kept apart from them."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+
+@dataclass(frozen=True, slots=True)
+class Part:
+    """Something with a value and an owner."""
+
+    stage: str
+    name: str
+    type: str  # R, C, L, gm, tau, gain
+    role: str  # "high", "low", "" for what stores nothing
+    segment: int
+
+
+@dataclass(frozen=True, slots=True)
+class Branch:
+    """A two-terminal branch: groups in series, each of parts in parallel.
+
+    series  True: it is carried as an impedance between two nodes of the elimination tree, so that a tiny
+            resistor costs no digits; False: it is carried as an admittance.
+    bridge  it runs from the input side `i` to the output side `j` of its stage.
+    """
+
+    i: int
+    j: int
+    groups: tuple[tuple[int, ...], ...]
+    series: bool
+    bridge: bool = False
+
+    @property
+    def single(self) -> bool:
+        return len(self.groups) == 1 and len(self.groups[0]) == 1
+
+
+@dataclass(frozen=True, slots=True)
+class Transfer:
+    """A current part·(V(plus) - V(minus)) from node `output` through the device to node `lower`."""
+
+    part: int
+    output: int
+    lower: int
+    plus: int
+    minus: int
+
+
+@dataclass(frozen=True, slots=True)
+class Drive:
+    """V(node) = gain·(V(plus) - V(minus)) for a driven node; `gain` is a part."""
+
+    node: int
+    plus: int
+    minus: int
+    gain: int
+
+
+@dataclass(frozen=True, slots=True)
+class Storage:
+    """A storage on a driven node: (1 + s·tau) where high, (1 + 1/(s·tau)) where low."""
+
+    part: int
+    node: int
+
+
+@dataclass(slots=True)
+class Segment:
+    """The source, one stage or the load: its nodes and elements."""
+
+    name: str
+    kind: str
+    before: int  # interstage node at its input (GROUND for the source)
+    after: int = -1  # interstage node at its output
+    nodes: list[int] = field(default_factory=list)  # created by this segment
+    branches: list[Branch] = field(default_factory=list)
+    transfers: list[Transfer] = field(default_factory=list)
+    drives: list[Drive] = field(default_factory=list)
+    storages: list[Storage] = field(default_factory=list)

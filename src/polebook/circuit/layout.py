@@ -1,0 +1,125 @@
+"""The network of a chain: nodes, elements, owners, roles and orders of elimination. Built once; values many times."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+from polebook.circuit.elements import Branch, Part, Segment
+from polebook.circuit.placing import Stamps, balance_rows, place
+from polebook.circuit.recorder import Recorder
+from polebook.circuit.schedule import Graph, Step, leaves_first
+from polebook.stages.stamper import GROUND
+
+
+@dataclass(slots=True)
+class Layout:
+    """Topology, once. Lists by segment hold the source first, then each stage, then the load.
+
+    emf       node that the source's EMF drives, GROUND for a current source
+    after     interstage node behind each segment; a wire repeats the one before it
+    branches  every branch of every segment, in order
+    steps     elimination from load to source, by segment
+    onward    elimination from source to load at midband, by segment (none for the source)
+    diagonal  slot of the admittance at each `after`
+    seed      slots of (n0, n0) and (n0, emf) that start the way onward; -1 where n0 is the EMF itself
+    ends      slots of (after, after) and (after, emf) on the way onward, by segment
+    """
+
+    recorder: Recorder
+    emf: int
+    after: list[int]
+    branches: list[Branch]
+    stamps: Stamps
+    slots: int
+    steps: list[list[Step]]
+    onward: list[list[Step]]
+    diagonal: list[int]
+    seed: tuple[int, int]
+    ends: list[tuple[int, int]] = field(default_factory=list)
+
+    @property
+    def parts(self) -> list[Part]:
+        return self.recorder.parts
+
+    @property
+    def segments(self) -> list[Segment]:
+        return self.recorder.segments
+
+    @property
+    def names(self) -> list[str]:
+        return self.recorder.names
+
+    @property
+    def driven(self) -> list[bool]:
+        return self.recorder.is_driven
+
+    @property
+    def known(self) -> int:
+        """The node whose voltage is 1: the EMF's, or for a current source a name for its column."""
+        return self.emf if self.emf != GROUND else len(self.names)
+
+    @property
+    def origin(self) -> int:
+        """The known node on the way onward at midband: n0 itself where nothing but a coupling is ahead of it."""
+        resistors = [b for b in self.segments[0].branches if b.series and self.parts[b.groups[0][0]].type == "R"]
+        return self.known if resistors or self.emf == GROUND else self.after[0]
+
+
+def arrange(recorder: Recorder, emf: int) -> Layout:
+    """Turns the recorded stamps into a network ready to be solved."""
+    segments = recorder.segments
+    after = [segment.after for segment in segments]
+    branches = [branch for segment in segments for branch in segment.branches]
+    ties = _ties(segments)
+    rows = balance_rows(recorder)
+    back = Graph(rows)
+    stamps = place(recorder, back.slots)
+    entries = [stamps.where[start:end] for start, end in stamps.ranges]
+    steps: list[list[Step]] = [[] for _ in segments]
+    for index in range(len(segments) - 1, -1, -1):
+        _stand(back, entries[index], ties[index])
+        nodes = [k for k in segments[index].nodes if k != emf]
+        steps[index] = [back.eliminate(k) for k in leaves_first(nodes, _ends(ties[index]), after[index])]
+    diagonal = [back.slots.setdefault((rows[k], k), len(back.slots)) for k in after]
+    layout = Layout(recorder, emf, after, branches, stamps, 0, steps, [], diagonal, (-1, -1))
+    _plan_onward(layout, Graph(rows, slots=back.slots), entries, ties)
+    layout.slots = len(back.slots)
+    return layout
+
+
+def _plan_onward(layout: Layout, graph: Graph, entries: list[list[tuple[int, int]]],
+                 ties: list[list[tuple[int, int, int]]]) -> None:
+    known, first = layout.origin, layout.after[0]
+    if first != known:
+        layout.seed = (graph.enter(first, first), graph.enter(first, known))
+    layout.onward.append([])
+    layout.ends.append((graph.slot(first, first), graph.slot(first, known)))
+    for index in range(1, len(layout.segments)):
+        segment = layout.segments[index]
+        _stand(graph, entries[index], ties[index])
+        nodes = [k for k in segment.nodes if k != segment.after]
+        if segment.after != segment.before and segment.before != known:
+            nodes.append(segment.before)
+        done = [graph.eliminate(k) for k in leaves_first(nodes, _ends(ties[index]), segment.before)]
+        layout.onward.append(done)
+        layout.ends.append((graph.slot(segment.after, segment.after), graph.slot(segment.after, known)))
+
+
+def _ties(segments: list[Segment]) -> list[list[tuple[int, int, int]]]:
+    """Series branches of each segment: (index among all branches, ends)."""
+    result, number = [], 0
+    for segment in segments:
+        result.append([(number + n, b.i, b.j) for n, b in enumerate(segment.branches) if b.series])
+        number += len(segment.branches)
+    return result
+
+
+def _ends(ties: list[tuple[int, int, int]]) -> list[tuple[int, int]]:
+    return [(i, j) for _, i, j in ties]
+
+
+def _stand(graph: Graph, entries: list[tuple[int, int]], ties: list[tuple[int, int, int]]) -> None:
+    for i, j in entries:
+        graph.enter(i, j)
+    for number, i, j in ties:
+        graph.tie(number, i, j)

@@ -1,0 +1,148 @@
+"""The bipolar transistor: its card, its law, its small-signal figures.
+
+Hybrid-pi model as in the textbooks; which formula stands for which figure is fixed by the chain format.
+"""
+
+from __future__ import annotations
+
+from polebook.devices.missing import Lack, settle
+from polebook.devices.num import TWO_PI, Reading, Value, floor_at, power, thermal_voltage
+from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.param import Param
+
+PARAMS = (
+    family_key("bjt"),
+    Param("polarity", "choice", "npn or pnp", default="npn", choices=("npn", "pnp")),
+    FREE_TEXT,
+    Param("beta", "factor", "current gain, collector over base"),
+    Param("early_voltage", "voltage", "Early voltage; absent: no output conductance"),
+    Param("rx", "resistance", "base spreading resistance", sign="nonnegative"),
+    Param("ft", "frequency", "transition frequency, measured at ft_ic"),
+    Param("ft_ic", "current", "collector current at which ft was measured"),
+    Param("cob", "capacitance", "collector-base capacitance, measured at cob_v", sign="nonnegative"),
+    Param("cob_v", "voltage", "collector-base voltage at which cob was measured", sign="nonnegative"),
+    Param("grading", "factor", "grading exponent of the collector junction", sign="nonnegative", default="0.33"),
+    Param("built_in", "voltage", "built-in voltage of the collector junction", default="0.75"),
+    Param("c_be0", "capacitance", "depletion part of cpi", sign="nonnegative", default="0"),
+    Param("ccs", "capacitance", "collector to ground (substrate, case)", role="high", sign="nonnegative"),
+    Param("vbe", "voltage", "base-emitter voltage in use; absent: 0.65 V at 25 °C, less 2 mV a kelvin"),
+    Param("vce_sat", "voltage", "collector-emitter voltage at saturation", sign="nonnegative", default="0.2"),
+    Param("flicker_corner", "frequency", "corner of the base current's flicker noise", sign="nonnegative"),
+    Param("gm", "transconductance", "transconductance at the operating point"),
+    Param("rpi", "resistance", "base-emitter resistance at the operating point"),
+    Param("ro", "resistance", "output resistance at the operating point"),
+    Param("cpi", "capacitance", "base-emitter capacitance at the operating point", role="high", sign="nonnegative"),
+    Param("cmu", "capacitance", "collector-base capacitance at the operating point", role="high", sign="nonnegative"),
+    *RATINGS,
+)
+
+
+def base_emitter_voltage(card: Reading, celsius: Value) -> Value:
+    """vbe in volts, written as for an npn: the card's, else 0.65 V at 25 °C less 2 mV a kelvin (common practice)."""
+    vbe = card("vbe")
+    return 0.65 - 0.002 * (celsius - 25.0) if vbe is None else vbe
+
+
+def current_gain(card: Reading) -> Value | None:
+    """beta of the card, else what its operating-point gm and rpi say together; None where neither stands."""
+    beta = card("beta")
+    if beta is None:
+        gm, rpi = card("gm"), card("rpi")
+        return None if gm is None or rpi is None else gm * rpi
+    return beta
+
+
+def bridge_capacitance(card: Reading, across: Value | None, vbe: Value) -> Value | None:
+    """Cmu in farads at a collector-emitter voltage; at VCB = 0 where `across` is None. None: the card has no cmu.
+
+    Cmu = cob·((1 + cob_v/built_in)/(1 + VCB/built_in))^grading, VCB = across - vbe, not below 0.
+    Raises KeyError where cob stands without cob_v.
+    """
+    cmu, cob = card("cmu"), card("cob")
+    if cmu is not None or cob is None:
+        return cmu
+    cob_v, built_in, grading = card("cob_v"), card("built_in"), card("grading")
+    if cob_v is None:
+        raise KeyError("cob_v")
+    built_in = 0.75 if built_in is None else built_in
+    vcb = 0.0 if across is None else floor_at(across - vbe, 0.0)
+    return cob * power((1.0 + cob_v / built_in) / (1.0 + vcb / built_in), 0.33 if grading is None else grading)
+
+
+def transit_time(card: Reading, celsius: Value) -> Value | None:
+    """Forward transit time in seconds as the card's figures give it, negative ones too; None without ft and ft_ic.
+
+    tau_F = 1/(2·pi·ft) - (c_be0 + cob)/gm(ft_ic), with the card's cmu in place of cob where that is given.
+    """
+    ft, ft_ic = card("ft"), card("ft_ic")
+    if ft is None or ft_ic is None:
+        return None
+    cmu, depletion = card("cmu"), card("c_be0")
+    junction = card("cob") if cmu is None else cmu
+    charged = sum(part for part in (depletion, junction) if part is not None)
+    return 1.0 / (TWO_PI * ft) - charged * thermal_voltage(celsius) / ft_ic
+
+
+def small_signal(
+    card: Reading, current: Value | None, across: Value | None, vbe: Value, temperature_c: Value
+) -> dict[str, Value]:
+    """rx, rpi, ro, gm, cpi, cmu, ccs (SI units; absent ones missing) at a quiescent current and voltage.
+
+    current and across are magnitudes in A and V, None where unknown; any shape. Operating-point figures of the
+    card win. Raises `Missing` where a figure that the card calls for cannot be had.
+    """
+    lacks: list[Lack] = []
+    found: dict[str, Value | None] = {"rx": card("rx"), "ccs": card("ccs")}
+    gm = found["gm"] = _transconductance(card, current, temperature_c, lacks)
+    found["rpi"] = _input_resistance(card, gm, lacks)
+    found["ro"] = _output_resistance(card, current, lacks)
+    try:
+        found["cmu"] = bridge_capacitance(card, across, vbe)
+    except KeyError:
+        lacks.append(Lack("cmu", "cob_v", "cob is measured at cob_v"))
+    found["cpi"] = _diffusion_capacitance(card, gm, temperature_c, lacks)
+    return settle({key: value for key, value in found.items() if value is not None}, lacks)
+
+
+def _transconductance(card: Reading, current: Value | None, celsius: Value, lacks: list[Lack]) -> Value | None:
+    gm = card("gm")
+    if gm is not None:
+        return gm
+    if current is None:
+        lacks.append(Lack("gm", "current", "gm = ic/VT"))
+        return None
+    return current / thermal_voltage(celsius)
+
+
+def _input_resistance(card: Reading, gm: Value | None, lacks: list[Lack]) -> Value | None:
+    rpi, beta = card("rpi"), card("beta")
+    if rpi is not None:
+        return rpi
+    if beta is None:
+        lacks.append(Lack("rpi", "beta", "rpi = beta/gm"))
+        return None
+    return None if gm is None else beta / gm
+
+
+def _output_resistance(card: Reading, current: Value | None, lacks: list[Lack]) -> Value | None:
+    ro, early = card("ro"), card("early_voltage")
+    if ro is not None or early is None:
+        return ro
+    if current is None:
+        lacks.append(Lack("ro", "current", "ro = early_voltage/ic"))
+        return None
+    return early / current
+
+
+def _diffusion_capacitance(card: Reading, gm: Value | None, celsius: Value, lacks: list[Lack]) -> Value | None:
+    """Cpi = gm·tau_F + c_be0, tau_F taken as 0 where it is negative."""
+    cpi, depletion = card("cpi"), card("c_be0")
+    if cpi is not None or card("ft") is None:
+        return depletion if cpi is None else cpi
+    tau = transit_time(card, celsius)
+    if tau is None:
+        lacks.append(Lack("cpi", "ft_ic", "ft is measured at ft_ic"))
+    if tau is None or gm is None:
+        return None
+    diffusion = gm * floor_at(tau, 0.0)
+    return diffusion if depletion is None else diffusion + depletion

@@ -1,0 +1,138 @@
+"""The ledger as plain data, in the schema of `--json`: what is computed by later sections stands as null."""
+
+from __future__ import annotations
+
+from math import atan2, degrees, isfinite, log10, pi
+from typing import Any
+
+from polebook import __version__
+from polebook.ledger.account import line_losses
+from polebook.ledger.book import Ledger, ledger
+from polebook.ledger.lines import Line
+from polebook.solve.fold import fold
+
+LATER = ("rise_time_s", "overshoot_percent", "settling_1_s", "settling_01_s", "sag_percent", "group_delay_s",
+         "group_delay_spread_s", "noise_density", "noise_total_output", "noise_total_input", "noise_from_hz",
+         "noise_to_hz", "noise_figure_db", "supply_current_a", "clips_first", "largest_source", "dynamic_range_db",
+         "noise_margin_db", "full_power_hz")
+LEVERAGE = ("gain", "lower_edge", "upper_edge", "noise")
+__all__ = ["Ledger", "at", "document", "ledger"]
+
+
+def document(of: Ledger) -> dict[str, Any]:
+    """The whole ledger: base SI units at full precision, None where a figure does not apply."""
+    return {
+        "format": 1, "tool": f"polebook {__version__}",
+        "chain": {"title": of.chain.title, "digest": of.chain.digest},
+        "overall": overall(of), "lines": [line(of, one) for one in of.lines], "nodes": nodes(of), "parts": parts(of),
+        "cards": None, "bias": operating(of), "rails": None, "poles": None, "zeros": None, "account": account(of),
+        "targets": [{"name": t.name, "want": t.want, "got": t.got, "margin": t.margin, "met": t.met, "why": t.why}
+                    for t in of.targets],
+        "levels": None, "verdict": None,
+        "cautions": [{"stage": _owner(of, problem.place), "text": f"{problem.what}: {problem.why}; {problem.fix}"}
+                     for problem in of.cautions],
+    }
+
+
+def _owner(of: Ledger, place: object) -> str | None:
+    """Name of the stage, card or table at whose head a place stands."""
+    return next((path for path, known in of.chain.places.items() if known is place and "." not in path), None)
+
+
+def decibels(gain: float | None) -> float | None:
+    """20·log10 of the size of a gain."""
+    return None if not gain or not isfinite(gain) else 20.0 * log10(abs(gain))
+
+
+def overall(of: Ledger) -> dict[str, Any]:
+    solution = of.solution
+    band = solution.band if of.judged else None
+    return {
+        "gain": solution.gain, "gain_db": decibels(solution.gain),
+        "gain_unit": "V/V" if of.chain.source_kind == "voltage" else "V/A",
+        "unstable": None if solution.winding.right is None else of.unstable, "reference_hz": of.reference_hz,
+        "gain_at_reference": of.gain_at_reference, "lower_edge_hz": of.lower_hz, "upper_edge_hz": of.upper_hz,
+        "peaking_db": band.peaking_db if band else None, "octc_upper_hz": solution.constants.upper_hz,
+        "sctc_lower_hz": solution.constants.lower_hz, "node_upper_hz": of.node_upper_hz, "shrinkage": of.shrinkage,
+        **dict.fromkeys(LATER),
+    }
+
+
+def _owned(of: Ledger, shares: dict[int, float], stage: str) -> float | None:
+    if not shares:
+        return None
+    return sum(share for index, share in shares.items() if of.solution.circuit.layout.parts[index].stage == stage)
+
+
+def line(of: Ledger, one: Line) -> dict[str, Any]:
+    return {
+        "name": one.name, "kind": one.kind, "gain": one.gain, "gain_db": decibels(one.gain), "open_gain": one.open_gain,
+        "loading": one.loading, "transfer_ohm": one.transfer_ohm, "k": one.k, "input_ohm": one.input_ohm,
+        "output_ohm": one.output_ohm,
+        "owns_upper": None if one.left_out else _owned(of, of.owns_upper, one.name),
+        "owns_lower": None if one.left_out else _owned(of, of.owns_lower, one.name), "noise_share": None,
+        "bridges": [{"part": b.part, "type": b.type, "value": b.value, "k": b.k, "at_input": b.at_input,
+                     "at_output": b.at_output} for b in one.bridges],
+    }
+
+
+def nodes(of: Ledger) -> list[dict[str, Any]]:
+    upper, lower = of.upper_account, of.lower_account
+    result = []
+    for site in of.sites:
+        room = site.pole_hz / of.equal_pole_hz if site.pole_hz is not None and of.equal_pole_hz else None
+        result.append({
+            "name": site.name, "stage": site.stage, "interstage": site.interstage, "ohm": site.ohm, "farad": site.farad,
+            "pole_hz": site.pole_hz, "lost_upper_db": upper.lost.get(site.name),
+            "allotted_upper_db": upper.allotted.get(site.name), "lost_lower_db": lower.lost.get(site.name),
+            "allotted_lower_db": lower.allotted.get(site.name),
+            "room": None if site.farad is None and site.ohm is not None else room,
+        })
+    return result
+
+
+def parts(of: Ledger) -> list[dict[str, Any]]:
+    net, taus = of.solution.circuit.network, of.solution.constants.by_part
+    result = []
+    for index, part in enumerate(net.layout.parts):
+        if part.type == "gain":
+            continue
+        result.append({
+            "stage": part.stage, "part": part.name, "type": part.type, "role": part.role or None,
+            "value": net.values[index], "tau_s": taus.get(index), "owns_upper": of.owns_upper.get(index),
+            "owns_lower": of.owns_lower.get(index), "noise_share": None, "leverage": dict.fromkeys(LEVERAGE),
+        })
+    return result
+
+
+def operating(of: Ledger) -> list[dict[str, Any]]:
+    circuit = of.solution.circuit
+    result = []
+    for stage in of.chain.stages:
+        for name, card in ((stage.name, stage.device), (f"{stage.name}_upper", stage.upper or stage.device)):
+            point = circuit.points.get(name)
+            if point is None or not card:
+                continue
+            watts = None if point.current is None or point.across is None else point.current * point.across
+            result.append({"stage": name, "device": card, "current_a": point.current, "across_v": point.across,
+                           "control_v": point.control_v, "lower_v": point.lower_v, "output_v": point.output_v,
+                           "dissipation_w": watts, "from": point.origin})
+    return result
+
+
+def account(of: Ledger) -> dict[str, Any]:
+    result = {}
+    for name, one in (("upper", of.upper_account), ("lower", of.lower_account)):
+        result[name] = {"edge_hz": one.edge_hz, "budget_db": 10.0 * log10(2.0), "lost_db": one.total_db,
+                        "left_db": one.left_db}
+    return result
+
+
+def at(of: Ledger, hz: float) -> dict[str, Any]:
+    """Gain, phase and loss of every line at one frequency (Hz)."""
+    gains = fold(of.solution.circuit.network, 2j * pi * hz, "full").gains
+    lost = line_losses(of.solution, hz)
+    return {"hz": hz, "lines": [
+        {"name": segment.name, "gain_db": decibels(abs(gain)),
+         "phase_deg": degrees(atan2(complex(gain).imag, complex(gain).real)), "lost_db": db}
+        for segment, gain, db in zip(of.solution.circuit.layout.segments, gains, lost, strict=True)]}

@@ -1,0 +1,111 @@
+"""What a ledger computes from, each piece when it is first asked for."""
+
+from __future__ import annotations
+
+from functools import cached_property
+from math import inf, log
+
+from polebook.chain.model import Chain
+from polebook.circuit.build import Circuit, circuit
+from polebook.ledger.time_constants import TimeConstants, time_constants
+from polebook.problem import Problem, ProblemsFound
+from polebook.solve.edges import Band, band, first_seed, seed
+from polebook.solve.fold import Folded, NotHeld, fold
+from polebook.solve.inverse import Inverse, inverse
+from polebook.solve.onward import Open, onward
+from polebook.solve.span import span
+from polebook.solve.sweep import Sweep, sweep
+from polebook.solve.transfer import voltages
+from polebook.solve.winding import Winding, winding
+
+MOST_NEPER = 690.0  # a product of gains beyond e^690 has no double
+
+
+class Solution:
+    """The solved chain. Raises ProblemsFound on the first look where its midband network has no solution."""
+
+    def __init__(self, chain: Chain) -> None:
+        self.chain = chain
+        self.circuit: Circuit = circuit(chain)
+        self.midband: Folded = self._fold_midband()
+
+    @property
+    def stable(self) -> bool:
+        """False where a pole has a positive real part; a count that came to nothing is told apart by `winding`."""
+        return not self.winding.right
+
+    @cached_property
+    def gains(self) -> list[float]:
+        """Midband gain of every line, source first; the source's in ohms where it is a current."""
+        return [float(gain) for gain in self.midband.gains]
+
+    @cached_property
+    def gain(self) -> float:
+        """Midband gain of the chain, signed: V/V or V/A."""
+        product = 1.0
+        for gain in self.gains:
+            product *= gain
+        return product
+
+    @cached_property
+    def volts(self) -> list[float]:
+        """Midband voltage of every node for 1 V of EMF or 1 A."""
+        return voltages(self.midband)
+
+    @cached_property
+    def inverse(self) -> Inverse:
+        return inverse(self.midband)
+
+    @cached_property
+    def open_lines(self) -> list[Open]:
+        return onward(self.circuit.network)
+
+    @cached_property
+    def constants(self) -> TimeConstants:
+        return time_constants(self.circuit.network, self.inverse)
+
+    @cached_property
+    def sweep(self) -> Sweep:
+        low, high = span(self.circuit.network, [abs(tau) for tau in self.constants.taus])
+        return sweep(self.circuit.network, low, high, self.gains)
+
+    @cached_property
+    def winding(self) -> Winding:
+        return winding(self.sweep)
+
+    @cached_property
+    def band(self) -> Band:
+        start = first_seed(self.constants.lower_hz, self.constants.upper_hz)
+        hz, clean = seed(self.circuit.network, self.gains, start, self.constants.taus)
+        return band(self.circuit.network, self.gains, self.sweep, hz, clean)
+
+    def _fold_midband(self) -> Folded:
+        try:
+            folded = fold(self.circuit.network, 0.0, "midband")
+        except NotHeld as floating:
+            raise ProblemsFound([self._not_held(floating.node)], "") from None
+        for segment, gain in zip(self.circuit.layout.segments, folded.gains, strict=True):
+            if gain == 0.0 or gain in (inf, -inf) or gain != gain:
+                raise ProblemsFound([self._no_gain(segment.name)], "")
+        if abs(sum(log(abs(gain)) for gain in folded.gains)) > MOST_NEPER:
+            raise ProblemsFound([self._beyond()], "")
+        return folded
+
+    def _not_held(self, node: int) -> Problem:
+        owner, _, terminal = self.circuit.layout.names[node].partition(".")
+        return Problem(
+            self.chain.places.get(owner), f"nothing holds node {terminal} of {owner} at midband",
+            "no conductance leads from it to anywhere, so that its voltage has no value",
+            "give it a resistor (bias, output, load or source resistance), or the card an output resistance "
+            "(early_voltage, channel_slope, ro)")
+
+    def _no_gain(self, owner: str) -> Problem:
+        return Problem(
+            self.chain.places.get(owner), f"the midband gain of {owner} is zero",
+            "nothing of the signal passes it: a device without transconductance (no quiescent current), or an arm that "
+            "cuts the chain", "look at its bias and its parts")
+
+    def _beyond(self) -> Problem:
+        return Problem(self.chain.places.get("source"), "the gain of the chain is beyond what a number can hold",
+                       "the product of the lines' gains passes 1e300 or falls below 1e-300",
+                       "take stages out, or give them less gain")

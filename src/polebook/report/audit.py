@@ -1,0 +1,29 @@
+"""The text of `polebook audit`: one line a target, file by file."""
+
+from __future__ import annotations
+
+from polebook.report.document import Document, Entry, entries
+from polebook.report.look import Look
+from polebook.report.sections import target_row, unstable
+from polebook.report.table import Column, table
+
+
+def audit(file: str, document: Document, look: Look) -> str:
+    """The verdicts on one file."""
+    targets = entries(document, "targets")
+    lines = [look.paint(look.text(file), "head"), *unstable(document, look)]
+    if not targets:
+        return "\n".join(lines if len(lines) > 1 else [*lines, " no targets are set: nothing to judge"]) + "\n"
+    names = ("target", "want", "got", "margin", "", "")
+    columns = [Column(name, right=name in ("want", "got", "margin")) for name in names]
+    lines += table(columns, [target_row(entry, document["overall"]["gain_unit"]) for entry in targets], look)
+    return "\n".join([*lines, _count(targets, look)]) + "\n"
+
+
+def _count(targets: list[Entry], look: Look) -> str:
+    short = sum(entry["met"] is not True for entry in targets)
+    missed = sum(entry["met"] is False for entry in targets)
+    if not short:
+        return look.paint(f" all {len(targets)} met" if len(targets) > 1 else " met", "good")
+    unjudged = f", {short - missed} not judged" if short > missed else ""
+    return look.paint(f" {missed} of {len(targets)} missed{unjudged}", "bad")

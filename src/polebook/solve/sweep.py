@@ -1,0 +1,93 @@
+"""The chain over frequency: a grid that is refined until nothing turns too far between two of its points.
+
+Between neighbours no pivot of the elimination and no line's gain may turn by over a radian, so that no pole
+and no zero near the axis is stepped over. The same grid serves stability, edges and peaking.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from math import log, pi
+
+import numpy as np
+from numpy.typing import NDArray
+
+from polebook.circuit.views import Network, View
+from polebook.solve.fold import Folded, fold
+
+Array = NDArray[np.float64]
+POINTS_A_DECADE = 12
+TURN = 1.0  # rad between neighbours
+LEAP = 1.5  # neper between neighbours
+ROUNDS = 48
+
+
+@dataclass(slots=True)
+class Sweep:
+    """hz (f,) ascending; loss (f,) = ln|H|/|gain| in neper; angles (p, f) and sizes (p, f) of the pivots, in rad and
+    neper; turns (n, f) the angles of the lines' gains."""
+
+    hz: Array
+    loss: Array
+    angles: Array
+    sizes: Array
+    turns: Array
+
+
+def relative(folded: Folded, midband: list[float]) -> Array:
+    """ln|H|/|gain| in neper at the frequencies of a folded network, by the lines' gains so that nothing overflows."""
+    total: Array = np.zeros(1)
+    for gain, reference in zip(folded.gains, midband, strict=True):
+        total = total + np.log(np.abs(gain) / abs(reference))
+    return total
+
+
+def relative_at(net: Network, hz: float, midband: list[float], view: View = "full") -> float:
+    """ln|H|/|gain| in neper at one frequency."""
+    folded = fold(net, 2j * pi * hz, view)
+    return sum(log(abs(gain) / abs(reference)) for gain, reference in zip(folded.gains, midband, strict=True))
+
+
+def sweep(net: Network, low: float, high: float, midband: list[float], view: View = "full") -> Sweep:
+    """Sweeps from low to high (Hz), refined by halves where something turns. Gains at midband, by line."""
+    decades = np.log10(high / low)
+    grid = np.geomspace(low, high, max(8, int(decades * POINTS_A_DECADE) + 1))
+    result = _evaluate(net, grid, midband, view)
+    for _ in range(ROUNDS):
+        coarse = _coarse(result)
+        if not coarse.any():
+            break
+        middle = np.sqrt(result.hz[:-1][coarse] * result.hz[1:][coarse])
+        result = _merge(result, _evaluate(net, middle, midband, view))
+    return result
+
+
+def _evaluate(net: Network, hz: Array, midband: list[float], view: View) -> Sweep:
+    folded = fold(net, 2j * pi * hz, view)
+    shape = hz.shape
+    pivots = np.array([np.broadcast_to(step.across, shape) for taken in folded.taken for step in taken], dtype=complex)
+    gains = np.array([np.broadcast_to(gain, shape) for gain in folded.gains], dtype=complex)
+    sizes = np.log(np.abs(pivots))
+    loss = np.log(np.abs(gains) / np.abs(np.array(midband))[:, None]).sum(axis=0)
+    return Sweep(hz, loss, np.angle(pivots), sizes, np.angle(gains))
+
+
+def wrapped(angles: Array) -> Array:
+    """Differences of neighbours, taken to within half a turn."""
+    step = np.diff(angles, axis=-1)
+    return step - 2 * pi * np.round(step / (2 * pi))
+
+
+def _coarse(s: Sweep) -> NDArray[np.bool_]:
+    turned = (np.abs(wrapped(s.angles)) > TURN).any(axis=0) | (np.abs(wrapped(s.turns)) > TURN).any(axis=0)
+    leapt = (np.abs(np.diff(s.sizes, axis=-1)) > LEAP).any(axis=0)
+    return (turned | leapt) & (np.diff(s.hz) > 1e-13 * s.hz[1:])
+
+
+def _merge(a: Sweep, b: Sweep) -> Sweep:
+    hz = np.concatenate([a.hz, b.hz])
+    order = np.argsort(hz)
+    return Sweep(hz[order], np.concatenate([a.loss, b.loss])[order],
+                 np.concatenate([a.angles, b.angles], axis=1)[:, order],
+                 np.concatenate([a.sizes, b.sizes], axis=1)[:, order],
+                 np.concatenate([a.turns, b.turns], axis=1)[:, order])

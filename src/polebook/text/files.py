@@ -1,0 +1,195 @@
+"""A chain file on the disk: read as text, saved whole or not at all."""
+
+from __future__ import annotations
+
+import errno
+import os
+import secrets
+import stat
+from contextlib import suppress
+from dataclasses import dataclass
+
+from polebook.problem import Place, Problem, ProblemsFound
+from polebook.text.toml import LARGEST, too_large
+
+_NO_BLOCK = getattr(os, "O_NONBLOCK", 0) | getattr(os, "O_CLOEXEC", 0) | getattr(os, "O_NOCTTY", 0)
+_REASONS = {
+    errno.ENOENT: ("there is no such file", "name an existing file"),
+    errno.ENOTDIR: ("a part of its path is a file, not a folder", "name an existing file"),
+    errno.EACCES: ("its permissions, or those of its folder, do not allow it", "change them, or use your own copy"),
+    errno.EPERM: ("the system does not allow it", "use a copy of your own"),
+    errno.EROFS: ("it is on a read-only file system", "save it elsewhere"),
+    errno.ENOSPC: ("the disk is full", "free some space, then save again"),
+    errno.EDQUOT: ("the disk quota is used up", "free some space, then save again"),
+    errno.ELOOP: ("its symbolic links lead in a circle", "name the file itself"),
+    errno.ENAMETOOLONG: ("the name is too long", "use a shorter name"),
+    errno.ENXIO: ("it is a pipe or a device, not a file", "name a file"),
+    errno.EFBIG: ("the file would be larger than is allowed", "raise the limit for the size of files"),
+    errno.EMFILE: ("too many files are open", "close some, then try again"),
+    errno.EIO: ("the disk reports an error", "check the disk"),
+}
+
+
+@dataclass(frozen=True, slots=True)
+class Identity:
+    """What tells whether a file on the disk is still the one that was read."""
+
+    device: int
+    inode: int
+    size: int
+    modified_ns: int
+
+
+@dataclass(frozen=True, slots=True)
+class FileText:
+    """A file as it was read. `newline` is that of its first line ("\\n" for a text without one)."""
+
+    path: str
+    text: str
+    mode: int
+    identity: Identity
+    newline: str
+    read_only: bool
+
+
+def read(path: str | os.PathLike[str]) -> FileText:
+    """The text of the file at `path`, UTF-8, at most 512 KiB. Raises ProblemsFound; never waits on a pipe or device."""
+    name = os.fspath(path)
+    try:
+        _check_kind(name, os.stat(name))  # first, for to open a device may be to set it going
+        handle = os.open(name, os.O_RDONLY | _NO_BLOCK)
+        try:
+            status = os.fstat(handle)
+            _check_kind(name, status)
+            data = _contents(handle)
+        finally:
+            os.close(handle)
+    except (OSError, ValueError) as error:  # ValueError: a NUL in the name
+        raise _failed(name, error, "read") from None
+    if len(data) > LARGEST:
+        raise ProblemsFound([too_large(name, max(status.st_size, len(data)))])
+    text = _decoded(name, data)
+    feed = text.find("\n")
+    identity = Identity(status.st_dev, status.st_ino, status.st_size, status.st_mtime_ns)
+    newline = "\r\n" if feed > 0 and text[feed - 1] == "\r" else "\n"
+    return FileText(name, text, stat.S_IMODE(status.st_mode), identity, newline, not os.access(name, os.W_OK))
+
+
+def save(path: str | os.PathLike[str], text: str) -> None:
+    """Puts `text` in the place of the file at `path`, all of it or nothing. Raises ProblemsFound, the file untouched.
+
+    A new file is written beside the old one, flushed to the disk and renamed over it, so no reader and no power cut
+    meets half a file. Mode and, where allowed, owner stay; of a symbolic link the target is replaced.
+    """
+    name = os.fspath(path)
+    temporary = ""
+    try:
+        target = os.path.realpath(name)
+        status = _existing(name, target)
+        folder, base = os.path.split(target)
+        temporary = os.path.join(folder, f".{base[:100]}.{secrets.token_hex(6)}.new")
+        _write(temporary, text.encode("utf-8"), status)
+        os.replace(temporary, target)
+        temporary = ""
+    except (OSError, ValueError) as error:  # ValueError: a NUL in the name, a lone surrogate in the text
+        raise _failed(name, error, "saved") from None
+    finally:
+        if temporary:
+            _remove(temporary)
+    _flush_folder(folder)
+
+
+def _existing(name: str, target: str) -> os.stat_result | None:
+    """The state of the file to replace; None for a new one."""
+    try:
+        status = os.stat(target)
+    except FileNotFoundError:
+        return None
+    _check_kind(name, status)
+    if not os.access(target, os.W_OK):
+        raise PermissionError(errno.EACCES, "read-only file")
+    return status
+
+
+def _check_kind(name: str, status: os.stat_result) -> None:
+    if stat.S_ISREG(status.st_mode):
+        return
+    if stat.S_ISDIR(status.st_mode):
+        problem = Problem(Place(name), "this is a folder", "a chain file is asked for", "name a file in it")
+    else:
+        problem = Problem(Place(name), "this is a pipe or a device", "a chain file is asked for", "name a file")
+    raise ProblemsFound([problem])
+
+
+def _contents(handle: int) -> bytes:
+    """What the file holds, one byte past the limit at most."""
+    parts: list[bytes] = []
+    room = LARGEST + 1
+    while room > 0 and (part := os.read(handle, room)):
+        parts.append(part)
+        room -= len(part)
+    return b"".join(parts)
+
+
+def _decoded(name: str, data: bytes) -> str:
+    try:
+        return data.decode("utf-8")
+    except UnicodeDecodeError as error:
+        before = data[: error.start]
+        line = before.count(b"\n") + 1
+        column = len(before[before.rfind(b"\n") + 1 :].decode("utf-8")) + 1
+        utf16 = data.startswith((b"\xff\xfe", b"\xfe\xff"))
+        why = f"byte {error.start + 1} of the file, {data[error.start]:#04x}, is not part of a UTF-8 text"
+        problem = Problem(
+            Place(name, line, column), "the file is not UTF-8 text",
+            f"it begins like a text in UTF-16, and {why}" if utf16 else why, "save it as UTF-8 in your editor",
+        )
+        raise ProblemsFound([problem], data.decode("utf-8", "replace")) from None
+
+
+def _write(temporary: str, data: bytes, status: os.stat_result | None) -> None:
+    handle = os.open(temporary, os.O_WRONLY | os.O_CREAT | os.O_EXCL | _NO_BLOCK, 0o666 if status is None else 0o600)
+    try:
+        while data:
+            data = data[os.write(handle, data) :]
+        if status is not None:
+            _take_over(handle, status)
+        os.fsync(handle)
+    finally:
+        os.close(handle)
+
+
+def _take_over(handle: int, status: os.stat_result) -> None:
+    """Owner and mode of the old file; the owner stays another's where the system does not let it be given away."""
+    if os.name != "posix":
+        return
+    if (status.st_uid, status.st_gid) != (os.getuid(), os.getgid()):
+        with suppress(PermissionError):  # an ordinary user saves a colleague's file: it becomes the user's own
+            os.fchown(handle, status.st_uid, status.st_gid)
+    os.fchmod(handle, stat.S_IMODE(status.st_mode))
+
+
+def _remove(temporary: str) -> None:
+    with suppress(OSError, ValueError):  # it was never made; the fault that is told is the one before
+        os.unlink(temporary)
+
+
+def _flush_folder(folder: str) -> None:
+    """So that the rename survives a power cut. The file is in place: a folder that can't be flushed is no failure."""
+    with suppress(OSError):
+        handle = os.open(folder, os.O_RDONLY | _NO_BLOCK)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)
+
+
+def _failed(name: str, error: OSError | ValueError, done: str) -> ProblemsFound:
+    if isinstance(error, UnicodeEncodeError):
+        why, fix = "the text holds half of a character pair, which UTF-8 can't write", "take that character out"
+    elif isinstance(error, OSError):
+        told = (error.strerror or "the system refused").lower()
+        why, fix = _REASONS.get(error.errno or 0, (told, "mend that and try again"))
+    else:
+        why, fix = "its name holds a NUL character", "name an existing file"
+    return ProblemsFound([Problem(Place(name), f"the file can't be {done}", why, fix)])

@@ -1,0 +1,8 @@
+"""Remakes the goldens of this folder from the demo chains: python -m tests.golden"""
+
+from tests.golden.making import CHAINS, GOLDEN, texts
+
+for chain in CHAINS:
+    for name, text in texts(chain).items():
+        (GOLDEN / name).write_text(text, encoding="utf-8")
+        print(name)

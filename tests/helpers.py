@@ -1,0 +1,43 @@
+"""What tests of whole chains share: the program's figures of a chain file, and figures by their names."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+ROOT = Path(__file__).resolve().parent.parent
+DEMOS = ROOT / "chains"
+
+
+def figures(path: str | Path) -> dict[str, Any]:
+    """The program's ledger of a chain file, as the dict of its JSON."""
+    from polebook.ledger.build import document, ledger
+
+    from polebook.chain.read import load
+
+    return document(ledger(load(str(path))))
+
+
+def _row(rows: list[dict[str, Any]], **wanted: str) -> dict[str, Any] | None:
+    return next((r for r in rows if all(r.get(k) == v for k, v in wanted.items())), None)
+
+
+def pick(doc: dict[str, Any], name: str) -> Any:
+    """A figure by its name: `overall.gain`, `account.upper.lost_db`, `Q1.input_ohm`, `n1.pole_hz`, `Q1.mid.pole_hz`,
+    `Q1.cmu.tau_s`, `Q1.cmu.at_input` (of the bridge), `bias.Q1.current_a`."""
+    head, _, key = name.rpartition(".")
+    if head == "overall":
+        return doc["overall"][key]
+    if head.startswith("account."):
+        return doc["account"][head.removeprefix("account.")][key]
+    if head.startswith("bias."):
+        row = _row(doc["bias"], stage=head.removeprefix("bias."))
+        assert row is not None, name
+        return row[key]
+    stage, _, part = head.rpartition(".")
+    line = _row(doc["lines"], name=stage)
+    found = [_row(doc["lines"], name=head), _row(doc["nodes"], name=head), _row(doc["parts"], stage=stage, part=part)]
+    found.append(_row(line["bridges"], part=part) if line else None)
+    rows = [r for r in found if r is not None and key in r]
+    assert rows, f"{name}: no such figure"
+    return rows[0][key]

@@ -1,0 +1,242 @@
+"""One chain, drawn once and solved: midband, time constants, band seed, response, edges, owned shares, winding."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Hashable, Iterable, Mapping
+from typing import Any
+
+import numpy as np
+from scipy.optimize import minimize_scalar
+
+from tests.independent.bias import EMPTY, bias
+from tests.independent.cards import Card
+from tests.independent.draw import Drawing
+from tests.independent.linear import Singular, mp
+from tests.independent.network import GROUND, Element, System, merged
+from tests.independent.quantity import number
+
+TINY = mp.mpf(10) ** -22
+
+
+def crossing(excess: Callable[[Any], Any], lo: Any, hi: Any) -> Any:
+    """The zero between two points of opposite sign, by bracketed secant steps, to some 35 digits."""
+    f_lo, f_hi = excess(lo), excess(hi)
+    for _ in range(100):
+        x = (lo * f_hi - hi * f_lo) / (f_hi - f_lo)
+        f_x = excess(x)
+        if abs(f_x) < mp.mpf(10) ** -35:
+            return x
+        if f_x * f_hi < 0:
+            lo, f_lo = hi, f_hi
+        else:
+            f_lo = f_lo / 2
+        hi, f_hi = x, f_x
+    raise ArithmeticError("no crossing found")
+
+
+class Solved:
+    """One chain: drawn once, then asked figure by figure."""
+
+    def __init__(self, doc: Mapping[str, Any]) -> None:
+        self.doc = doc
+        celsius = number(doc.get("supply", {}).get("temperature", 25))
+        self.cards = {name: Card(table, celsius) for name, table in doc.get("device", {}).items()}
+        self.bias = {s["name"]: dict(EMPTY) for s in doc.get("stage", [])}
+        self.bias |= bias(doc, self.cards)
+        self.drawing = Drawing(doc, self.bias, self.cards)
+        self.elements = self.drawing.elements
+        self.nodes, self.load = self.drawing.nodes, self.drawing.load
+        self.last = len(self.drawing.lines) - 1  # the load's line
+        self.by_current = doc["source"]["kind"] == "current"
+        self.full = System(self.elements)
+        kept, self.find = merged(self.elements)
+        self.mid_elements = kept
+        self.mid = System(kept)
+        self._midband()
+        self.gain = self.v(self.load)
+        if self.gain == 0:
+            raise ValueError("the midband gain is zero")
+
+    # -- midband ----------------------------------------------------------------------------------------------------
+
+    def _drive(self, system: System, find: Any) -> dict[Hashable, Any]:
+        if self.by_current:
+            return system.drive({find(self.nodes[0]): 1}, emf=False)
+        return system.drive({}, emf=True)
+
+    def _midband(self) -> None:
+        """Midband node voltages for a unit source, and the driving-point resistances."""
+        nodes = [k for k in self.mid.unknowns if isinstance(k, str)]
+        drives = [self._drive(self.mid, self.find)] + [{k: mp.mpf(1)} for k in nodes]
+        answers = self.mid.voltages(mp.mpf(0), drives)
+        self.mid_v = answers[0]
+        self.response = dict(zip(nodes, answers[1:], strict=True))
+
+    def v(self, node: str) -> Any:
+        """Midband voltage for a unit source; None at a node that nothing holds."""
+        return self.mid_v.get(self.find(node))
+
+    def ohm(self, node: str) -> Any:
+        node = self.find(node)
+        return mp.mpf(0) if node == GROUND else self.response[node][node]
+
+    def across(self, a: str, b: str) -> Any:
+        """Resistance seen between two nodes of the midband network, or None where one is held by nothing."""
+        a, b = self.find(a), self.find(b)
+        for node in (a, b):
+            if node != GROUND and node not in self.response:
+                return None
+        seen = mp.mpf(0)
+        for node, sign in ((a, 1), (b, -1)):
+            if node != GROUND:
+                r = self.response[node]
+                seen += sign * (r[a] - r[b])
+        return seen
+
+    def part_resistance(self, e: Element) -> Any:
+        """Resistance that a reactive part sees, the others at midband; None where infinite."""
+        if not e.short_at_midband:
+            return self.across(e.a, e.b)
+        kept, find = merged(self.elements, cut=e)
+        a, b = find(e.a), find(e.b)
+        if a == b:
+            return mp.mpf(0)
+        system = System(kept)
+        try:
+            x = system.voltages(mp.mpf(0), [system.drive({a: 1, b: -1}, emf=False)])[0]
+        except Singular:
+            return None
+        return x[a] - x[b]
+
+    def only(self, lines: Iterable[int]) -> System:
+        """The midband network of these lines alone."""
+        wanted = set(lines)
+        return System(e for e in self.mid_elements if e.line in wanted)
+
+    # -- time constants ---------------------------------------------------------------------------------------------
+
+    def time_constants(self) -> dict[tuple[int, str], dict[str, Any]]:
+        """tau and role of each C, L and storage; tau None where it sees 0 or infinite resistance."""
+        out: dict[tuple[int, str], dict[str, Any]] = {}
+        for e in self.elements:
+            if not e.reactive:
+                continue
+            seen = self.part_resistance(e)
+            tau = None
+            if seen is not None and abs(seen) > TINY:
+                tau = e.value / seen if e.kind == "L" else e.value * seen
+            row = out.setdefault(e.key, {"kind": e.kind, "role": e.role, "value": e.value, "tau": None})
+            if tau is not None:
+                row["tau"] = tau if row["tau"] is None else row["tau"] + tau
+        return out
+
+    def seed(self, taus: Mapping[Any, Mapping[str, Any]]) -> tuple[Any, Any, Any]:
+        """Estimates f_H and f_L of the two sums, and the band seed (None: no clean midband)."""
+        high = [t["tau"] for t in taus.values() if t["role"] == "high" and t["tau"] is not None]
+        low = [t["tau"] for t in taus.values() if t["role"] == "low" and t["tau"] is not None]
+        b1 = sum(high, mp.mpf(0))
+        upper = 1 / (2 * mp.pi * b1) if b1 > 0 else None
+        corner = sum((1 / (2 * mp.pi * t) for t in low), mp.mpf(0))
+        lower = corner if corner > 0 else None
+        if upper is not None and lower is not None:
+            at = mp.sqrt(upper * lower)
+        elif upper is not None:
+            at = upper / 1000
+        else:
+            at = 1000 * lower if lower is not None else mp.mpf(1000)
+        if abs(self.h(at)) >= abs(self.gain) / mp.sqrt(2):
+            return upper, lower, at
+        corners = [float(1 / (2 * mp.pi * abs(t))) for t in high + low]
+        first, last = np.log10(min(corners)) - 1, np.log10(max(corners)) + 1
+        grid = 10.0 ** (np.arange(np.ceil(first * 40 - 1e-9), np.floor(last * 40 + 1e-9) + 1) / 40)
+        error = np.abs(np.abs(self.sweep(grid)) / float(abs(self.gain)) - 1)
+        at = mp.mpf(grid[int(np.argmin(error))])
+        return upper, lower, at if abs(self.h(at)) >= abs(self.gain) / mp.sqrt(2) else None
+
+    # -- frequency --------------------------------------------------------------------------------------------------
+
+    def solution(self, f: Any, scaled: Mapping[tuple[int, str], Any] | None = None) -> dict[Hashable, Any]:
+        """Full-network node voltages at f for a unit source, some parts scaled."""
+        system = System(self.elements, scaled) if scaled else self.full
+        s = mp.mpc(0, 2 * mp.pi * f)
+        return system.voltages(s, [self._drive(system, lambda node: node)])[0]
+
+    def h(self, f: Any, scaled: Mapping[tuple[int, str], Any] | None = None) -> Any:
+        return self.solution(f, scaled)[self.load]
+
+    def sweep(self, f: np.ndarray) -> np.ndarray:
+        """H at many frequencies in double precision, to find brackets with."""
+        G, C, unknowns = self.full.dense()
+        right = np.zeros((len(unknowns), 1), complex)
+        for row, value in self._drive(self.full, lambda node: node).items():
+            right[unknowns.index(row), 0] = float(value)
+        A = G + 2j * np.pi * f[:, None, None] * C
+        scale = np.abs(A).max(axis=2, keepdims=True)
+        return np.linalg.solve(A / scale, right / scale)[:, unknowns.index(self.load), 0]
+
+    def range(self, taus: Mapping[Any, Mapping[str, Any]]) -> tuple[float, float]:
+        """Decades that hold every corner with room to spare (log10 Hz)."""
+        corners = [float(1 / (2 * mp.pi * abs(t["tau"]))) for t in taus.values() if t["tau"] is not None]
+        return (np.log10(min(corners)) - 4, np.log10(max(corners)) + 4) if corners else (0.0, 6.0)
+
+    def edge(self, seed: Any, direction: int, reach: float) -> Any:
+        """First crossing of |gain|/sqrt 2 from the seed outward; None where there is none."""
+        start = float(mp.log10(seed))
+        decades = abs(reach - start)
+        grid = 10.0 ** (start + direction * np.linspace(0, decades, max(2, int(decades * 200))))
+        level = np.abs(self.sweep(grid)) / float(abs(self.gain)) * np.sqrt(2) - 1
+        below = np.flatnonzero(level < 0)
+        if not len(below) or below[0] == 0:
+            return None
+        lo, hi = (mp.log(mp.mpf(x)) for x in (grid[below[0] - 1], grid[below[0]]))
+
+        def excess(x: Any) -> Any:
+            return 2 * mp.log(abs(self.h(mp.exp(x)) / self.gain)) + mp.log(2)
+
+        return mp.exp(crossing(excess, lo, hi))
+
+    def owned(self, edge: Any, keys: Iterable[tuple[int, str]]) -> dict[tuple[int, str], Any]:
+        """-∂ln f/∂ln X at an edge, by moving each part a little and asking how far the edge goes."""
+        if edge is None:
+            return dict.fromkeys(keys)
+        step = mp.mpf(10) ** -18
+        here = mp.log(abs(self.h(edge)))
+        slope = (mp.log(abs(self.h(edge * (1 + step)))) - here) / step
+        return {k: (mp.log(abs(self.h(edge, {k: 1 + step}))) - here) / step / slope for k in keys}
+
+    def peaking_db(self, span: tuple[float, float]) -> float:
+        grid = np.linspace(*span, int((span[1] - span[0]) * 100))
+        gain = float(abs(self.gain))
+
+        def level(x: float | np.ndarray) -> np.ndarray:
+            return np.abs(self.sweep(10.0 ** np.atleast_1d(x))) / gain
+
+        at = level(grid)
+        best = float(at.max())
+        top = int(at.argmax())
+        if 0 < top < len(grid) - 1:
+            found = minimize_scalar(
+                lambda x: -float(level(x)[0]), bounds=(grid[top - 1], grid[top + 1]), method="bounded",
+                options={"xatol": 1e-9},
+            )  # fmt: skip
+            best = max(best, -float(found.fun))
+        return max(0.0, 20 * np.log10(best))
+
+    def right_half_plane_poles(self, span: tuple[float, float]) -> int:
+        """Poles with positive real part: (N - Δ/(π/2))/2 with the turn Δ of det(G + jωC)."""
+        big, small = mp.mpf(10) ** 30, mp.mpf(10) ** -30
+        top = int(mp.nint((self.full.log_det(big * 2) - self.full.log_det(big)) / mp.log(2)))
+        at_zero = int(mp.nint((self.full.log_det(small * 2) - self.full.log_det(small)) / mp.log(2)))
+        G, C, _ = self.full.dense()
+
+        def phase(x: np.ndarray) -> np.ndarray:
+            A = G + 2j * np.pi * (10.0**x)[:, None, None] * C
+            A = A / np.abs(A).max(axis=2, keepdims=True)
+            return np.angle(np.linalg.slogdet(A)[0])
+
+        grid = np.linspace(span[0] - 2, span[1] + 2, int((span[1] - span[0] + 4) * 50))
+        turn = np.angle(np.exp(1j * np.diff(phase(grid))))
+        for i in np.flatnonzero(np.abs(turn) > 0.5):
+            fine = np.linspace(grid[i], grid[i + 1], 400)
+            turn[i] = np.angle(np.exp(1j * np.diff(phase(fine)))).sum()
+        return round((top - at_zero - turn.sum() / (np.pi / 2)) / 2)

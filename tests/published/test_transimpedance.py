@@ -1,0 +1,37 @@
+"""Photodiode amplifiers of two operational-amplifier data sheets (Texas Instruments: OPA656, December 2001, revised
+February 2024; OPA657, SBOS197E, page 11). Printed are the usual formulas, exact the two-pole solution."""
+
+from __future__ import annotations
+
+from math import pi, sqrt
+
+from tests.published.checks import each_solver, exact, figures_of, printed
+
+
+@each_solver
+def test_100_kohm_front(read):
+    """f = √(GBW/(2π·RF·C)) leaves CF out of the input's total; with it the edge lies 1.2 % lower."""
+    f = figures_of(read, "TIA-1")
+    formula = sqrt(230e6 / (2 * pi * 100e3 * 23.3e-12))
+    printed(formula, 3.96e6, 0.002)
+    printed(f("overall.upper_edge_hz"), 3.96e6, 0.015)
+    exact(f("overall.upper_edge_hz"), 3915937.8552920874, 1e-7)
+    exact(f("overall.gain"), -100e3)
+    printed(f("n0.pole_hz"), 2.8e6, 0.005)  # 1/(2π·RF·CF)
+    exact(f("n0.pole_hz"), 2802728.4725427297, 1e-7)
+
+
+@each_solver
+def test_100_kohm_front_with_a_larger_capacitor(read):
+    """The same with CF = 0.6 pF, exact."""
+    f = figures_of(read, "TIA-1-0p6")
+    exact(f("overall.upper_edge_hz"), 3697877.93850662, 1e-7)
+
+
+@each_solver
+def test_200_kohm_front(read):
+    """Printed as "approximately 5 MHz" by the formula; the amplifier's 5.2 pF are recalled from memory."""
+    f = figures_of(read, "TIA-2")
+    printed(sqrt(1.6e9 / (2 * pi * 200e3 * 50e-12)), 5e6, 0.05)
+    printed(f("overall.upper_edge_hz"), 5e6, 0.1)
+    exact(f("overall.upper_edge_hz"), 5479628.26916707, 1e-7)
