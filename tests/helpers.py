@@ -11,14 +11,13 @@ DEMOS = ROOT / "chains"
 
 def figures(path: str | Path) -> dict[str, Any]:
     """The program's ledger of a chain file, as the dict of its JSON."""
-    from polebook.ledger.build import document, ledger
-
     from polebook.chain.read import load
+    from polebook.ledger.build import document, ledger
 
     return document(ledger(load(str(path))))
 
 
-def _row(rows: list[dict[str, Any]], **wanted: str) -> dict[str, Any] | None:
+def row_of(rows: list[dict[str, Any]], **wanted: str) -> dict[str, Any] | None:
     return next((r for r in rows if all(r.get(k) == v for k, v in wanted.items())), None)
 
 
@@ -31,13 +30,17 @@ def pick(doc: dict[str, Any], name: str) -> Any:
     if head.startswith("account."):
         return doc["account"][head.removeprefix("account.")][key]
     if head.startswith("bias."):
-        row = _row(doc["bias"], stage=head.removeprefix("bias."))
+        row = row_of(doc["bias"], stage=head.removeprefix("bias."))
         assert row is not None, name
         return row[key]
     stage, _, part = head.rpartition(".")
-    line = _row(doc["lines"], name=stage)
-    found = [_row(doc["lines"], name=head), _row(doc["nodes"], name=head), _row(doc["parts"], stage=stage, part=part)]
-    found.append(_row(line["bridges"], part=part) if line else None)
+    line = row_of(doc["lines"], name=stage)
+    found = [
+        row_of(doc["lines"], name=head),
+        row_of(doc["nodes"], name=head),
+        row_of(doc["parts"], stage=stage, part=part),
+    ]
+    found.append(row_of(line["bridges"], part=part) if line else None)
     rows = [r for r in found if r is not None and key in r]
     assert rows, f"{name}: no such figure"
     return rows[0][key]

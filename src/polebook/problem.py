@@ -23,6 +23,12 @@ class Place:
     column: int = 0
     width: int = 1
 
+    @classmethod
+    def of(cls, text: str, at: int, file: str, width: int = 1) -> Place:
+        """Character `at` of `text`."""
+        begin = text.rfind("\n", 0, at) + 1
+        return cls(file, text.count("\n", 0, at) + 1, at - begin + 1, width)
+
 
 @dataclass(frozen=True, slots=True)
 class Problem:

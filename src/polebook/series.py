@@ -81,5 +81,6 @@ def _rank(value: float, name: str) -> int:
     # the decade from the digits, not from a logarithm, whose rounding may miss it at a power of ten
     mantissa, _, exponent = f"{value:.17e}".partition("e")
     scaled = float(mantissa) * (10 if row[0] < 100 else 100)
+    row = (*row, 10 * row[0])  # the float of a power of ten may lie just below it
     number = min(range(len(row)), key=lambda index: abs(row[index] - scaled))
-    return int(exponent) * len(row) + number
+    return int(exponent) * len(members(name)) + number

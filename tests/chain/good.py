@@ -41,7 +41,12 @@ _LEFT_OUT = {
     "jfet": {"gm_id"},
     "triode": {"rp"},
 }
-_WORDS = {"date": "2026-05-04", "flag": "false", "keys": '["couple"]', "arms": '[{ series_r = "50" }, { shunt_c = "22p" }]'}
+_WORDS = {
+    "date": "2026-05-04",
+    "flag": "false",
+    "keys": '["couple"]',
+    "arms": '[{ series_r = "50" }, { shunt_c = "22p" }]',
+}
 
 
 def example(param: Param) -> str:

@@ -39,11 +39,32 @@ def test_every_key_of_every_kind_is_read():
         for param in KINDS[stage.kind].keys(family).values():
             path = f"{stage.name}.{param.key}"
             if path in chain.given:
-                assert chain.numbers[path] == quantity(DIMENSIONS[param.dimension].example, param.dimension) \
+                assert (
+                    chain.numbers[path] == quantity(DIMENSIONS[param.dimension].example, param.dimension)
                     or param.key == "allot"
+                )
     given = {path.split(".")[-1] for path in chain.given if path.startswith("common-emitter-bjt.")}
-    assert given >= {"ic", "vce", "rb1", "rb2", "rc", "re", "re_bypassed", "ce", "c_peak", "stopper", "rf", "c_rf", "c_comp",
-                     "r_comp", "l_peak", "couple", "stray", "c_load", "allot"}
+    assert given >= {
+        "ic",
+        "vce",
+        "rb1",
+        "rb2",
+        "rc",
+        "re",
+        "re_bypassed",
+        "ce",
+        "c_peak",
+        "stopper",
+        "rf",
+        "c_rf",
+        "c_comp",
+        "r_comp",
+        "l_peak",
+        "couple",
+        "stray",
+        "c_load",
+        "allot",
+    }
     assert chain.title == "every key"
     assert chain.note == "free\ntext"
     assert chain.target_note == "some text"
@@ -65,6 +86,15 @@ def test_every_number_that_the_file_states_has_its_place():
         assert lines[chain.places[name].line - 1].startswith("[")
 
 
+def test_words_and_absent_tables_have_places_too():
+    chain = sound(good.small())
+    assert chain.places["Q1.device"].line == 8
+    assert chain.places["Q1.kind"].line == 7
+    assert chain.places["device.D.family"].line == 12
+    assert chain.places["load"].line == 0
+    assert chain.places["load"].file == "chain.toml"
+
+
 def test_numbers_are_finite_and_are_floats():
     for path, value in sound(EVERYTHING).numbers.items():
         assert type(value) is float, path
@@ -74,8 +104,10 @@ def test_numbers_are_finite_and_are_floats():
 @pytest.mark.parametrize(
     ("path", "value"),
     [
-        ("supply.positive", 0.0), ("supply.negative", 0.0), ("supply.temperature", 25.0), ("target.gain_tolerance", 1.0),
-        ("tolerance.resistor", 0.01), ("tolerance.capacitor", 0.05), ("tolerance.inductor", 0.1), ("tolerance.device", 0.2),
+        ("supply.positive", 0.0), ("supply.negative", 0.0), ("supply.temperature", 25.0),
+        ("target.gain_tolerance", 1.0),
+        ("tolerance.resistor", 0.01), ("tolerance.capacitor", 0.05), ("tolerance.inductor", 0.1),
+        ("tolerance.device", 0.2),
         ("tolerance.beta", 0.5), ("tolerance.matching", 0.0), ("tolerance.supply", 0.0), ("device.D.grading", 0.33),
         ("device.D.built_in", 0.75), ("device.D.vce_sat", 0.2), ("device.D.c_be0", 0.0),
     ],
@@ -87,7 +119,9 @@ def test_defaults(path, value):
 
 
 def test_defaults_of_op_amp_block_and_series():
-    text = good.small(stage=good.stage("noninverting", device="A") + good.stage("block", "gain = 2", name="B"), card=good.OPAMP)
+    text = good.small(
+        stage=good.stage("noninverting", device="A") + good.stage("block", "gain = 2", name="B"), card=good.OPAMP
+    )
     chain = sound(text)
     assert chain.numbers["device.A.a0"] == 1e5
     assert chain.numbers["device.A.rout"] == 50.0
@@ -100,7 +134,8 @@ def test_defaults_of_op_amp_block_and_series():
 
 @pytest.mark.parametrize(
     ("raw", "value", "inverting"),
-    [("-25", -25.0, None), ("25", 25.0, None), ('"20 dB"\ninverting = true', -10.0, True), ('"20dB"\ninverting = false', 10.0, False),
+    [("-25", -25.0, None), ("25", 25.0, None), ('"20 dB"\ninverting = true', -10.0, True),
+     ('"20dB"\ninverting = false', 10.0, False),
      ('"-20 dB"\ninverting = true', -0.1, True)],
 )  # fmt: skip
 def test_the_gain_of_a_block_carries_its_sign(raw, value, inverting):
@@ -111,7 +146,8 @@ def test_the_gain_of_a_block_carries_its_sign(raw, value, inverting):
 
 def test_poles_and_arms_are_numbered_from_one():
     text = good.small(stage=good.BLOCK + 'gain = 1\npoles = ["1M", 2e6]\nlower_poles = [10]\n'
-                      + good.LADDER + 'arms = [ { series_r = "50", series_c = "1u" }, { shunt_c = "22p", shunt_r = 1, role = "low" } ]\n')  # fmt: skip
+                      + good.LADDER + 'arms = [ { series_r = "50", series_c = "1u" },'
+                      ' { shunt_c = "22p", shunt_r = 1, role = "low" } ]\n')  # fmt: skip
     chain = sound(text)
     assert (chain.numbers["B1.poles.1"], chain.numbers["B1.poles.2"]) == (1e6, 2e6)
     assert chain.numbers["B1.lower_poles.1"] == 10.0
@@ -124,18 +160,23 @@ def test_poles_and_arms_are_numbered_from_one():
 
 @pytest.mark.parametrize(
     ("series", "part", "role", "end"),
-    [(True, "series_c", "", "low"), (True, "series_l", "", "high"), (False, "shunt_c", "", "high"), (False, "shunt_l", "", "low"),
+    [(True, "series_c", "", "low"), (True, "series_l", "", "high"), (False, "shunt_c", "", "high"),
+     (False, "shunt_l", "", "low"),
      (True, "series_c", "high", "high"), (False, "shunt_l", "high", "high"), (False, "shunt_r", "low", "")],
 )  # fmt: skip
 def test_roles_of_arms(series, part, role, end):
-    chain = sound(good.small(stage=good.LADDER + 'arms = [ { series_r = 1 } ]\n'))
+    chain = sound(good.small(stage=good.LADDER + "arms = [ { series_r = 1 } ]\n"))
     arm = type(chain.stages[0].arms[0])(1, series, (part,), role)
     assert arm.role_of(part) == end
 
 
 @pytest.mark.parametrize(
     ("polarity", "rails"),
-    [('polarity = "npn"', ("positive", "ground")), ('polarity = "pnp"', ("ground", "positive")), ("", ("positive", "ground"))],
+    [
+        ('polarity = "npn"', ("positive", "ground")),
+        ('polarity = "pnp"', ("ground", "positive")),
+        ("", ("positive", "ground")),
+    ],
 )
 def test_rails_follow_the_polarity(polarity, rails):
     stage = sound(good.small(card=f"{good.CARD}{polarity}\n")).stages[0]
@@ -162,7 +203,10 @@ def test_tolerances_and_free_keys_of_a_stage():
     assert chain.numbers["Q1.tolerance.c_load"] == 0.1
 
 
-@pytest.mark.parametrize("spelled", ['{ "arms.1.series_r" = "1 %" }', "{ arms.1.series_r = 0.01 }", '{ arms = { 1 = { series_r = "1 %" } } }'])
+@pytest.mark.parametrize(
+    "spelled",
+    ['{ "arms.1.series_r" = "1 %" }', "{ arms.1.series_r = 0.01 }", '{ arms = { 1 = { series_r = "1 %" } } }'],
+)
 def test_arms_have_tolerances_of_their_own(spelled):
     text = good.LADDER + f'arms = [ {{ series_r = 50 }} ]\nfree = ["arms.1.series_r"]\ntolerance = {spelled}\n'
     chain = sound(good.small(stage=text))
@@ -171,7 +215,11 @@ def test_arms_have_tolerances_of_their_own(spelled):
 
 
 def test_a_current_source():
-    chain = sound(good.small(source='[source]\nkind = "current"\nlargest = "1u"\n', rest='[target]\ngain = "100k"\nnoise = "1p"\n'))
+    chain = sound(
+        good.small(
+            source='[source]\nkind = "current"\nlargest = "1u"\n', rest='[target]\ngain = "100k"\nnoise = "1p"\n'
+        )
+    )
     assert chain.source_kind == "current"
     assert "source.resistance" not in chain.numbers
     assert chain.numbers["target.gain"] == 1e5
@@ -187,7 +235,8 @@ def test_zero_means_that_a_part_is_not_there():
 
 
 def test_benches_are_read():
-    text = good.small(rest='[[bench]]\ndate = 2026-05-04\nunit = "board 3"\nat = "Q1"\ngain = "58.7 dB"\nlower = "17k"\n'
+    text = good.small(rest='[[bench]]\ndate = 2026-05-04\nunit = "board 3"\nat = "Q1"\ngain = "58.7 dB"\n'
+                      'lower = "17k"\n'
                       'file = "b.csv"\n[[bench]]\nupper = "0.92M"\n')  # fmt: skip
     chain = sound(text)
     first, second = chain.benches
@@ -212,7 +261,9 @@ def test_sixty_four_stages_are_taken():
 
 def test_claims_of_the_whole_budget_are_taken():
     assert sound(good.small(stage=good.STAGE + 'allot = "3.0103 dB"\n'))
-    assert sound(good.small(stage=good.STAGE + 'allot = "3 dB"\n' + good.stage("block", 'gain = 1\nallot = 1\nleft_out = true')))
+    assert sound(
+        good.small(stage=good.STAGE + 'allot = "3 dB"\n' + good.stage("block", "gain = 1\nallot = 1\nleft_out = true"))
+    )
 
 
 def test_load_reads_a_file_and_raises_every_fault(tmp_path):

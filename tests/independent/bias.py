@@ -8,22 +8,43 @@ w = vgk + vak/mu. The squares and powers are solved by Newton's method on u or w
 from __future__ import annotations
 
 from collections.abc import Hashable, Mapping
+from dataclasses import dataclass
 from typing import Any
 
 from tests.independent.cards import Card
-from tests.independent.draw import COMMON_CONTROL, DEVICE_KINDS, FOLLOWERS, KEYS
+from tests.independent.kinds import BIAS_KEYS, COMMON_CONTROL, DEVICE_KINDS, FOLLOWERS, KEYS
 from tests.independent.linear import Singular, mp, solve
 from tests.independent.network import GROUND
 from tests.independent.quantity import number
 
-EMPTY = dict.fromkeys(("current", "across", "upper_across", "control", "lower", "output", "solved"))
+
+@dataclass
+class Bias:
+    """Quiescent figures of a stage's device; of its upper device too where it is a cascode. Voltages are signed,
+    `current` and `across` as for an n-type."""
+
+    current: Any = None
+    across: Any = None
+    control: Any = None
+    lower: Any = None
+    output: Any = None
+    upper: Bias | None = None
+
+    def rows(self, stage: str) -> list[tuple[str, dict[str, Any]]]:
+        """Rows of the ledger's JSON, the upper device's after the lower's."""
+        power = None if self.current is None or self.across is None else self.current * self.across
+        row = {
+            "current_a": self.current, "across_v": self.across, "control_v": self.control,
+            "lower_v": self.lower, "output_v": self.output, "dissipation_w": power,
+        }  # fmt: skip
+        return [(stage, row)] + (self.upper.rows(f"{stage}_upper") if self.upper else [])
 
 
 class Transistor:
     """Where a stage's device hangs in the d.c. network."""
 
-    def __init__(self, stage: Mapping[str, Any], card: Card, b: str, c: str, e: str, cascode: bool) -> None:
-        self.name, self.stage, self.card, self.cascode = stage["name"], stage, card, cascode
+    def __init__(self, stage: Mapping[str, Any], card: Card, b: str, c: str, e: str, upper: Card | None) -> None:
+        self.name, self.stage, self.card, self.upper = stage["name"], stage, card, upper
         self.b, self.c, self.e = b, c, e
         key = KEYS[card.family][0]
         self.stated = mp.mpf(number(stage[key])) if key in stage else None
@@ -36,6 +57,11 @@ class Transistor:
             p = self.card.perveance()
             return (self.card.get("gm_ia") / p) ** (mp.mpf(2) / 3) if p is not None else mp.mpf(1)
         return mp.mpf("0.5") if self.card.family == "jfet" else mp.mpf(1)
+
+    def passed(self) -> Any:
+        """What part of the device's current reaches the stage's output: a bipolar upper device keeps its base's."""
+        beta = self.upper.get("beta") if self.upper and self.upper.family == "bjt" else None
+        return beta / (beta + 1) if beta else mp.mpf(1)
 
     def solvable(self) -> bool:
         """Does the card tell the law of the current?"""
@@ -58,27 +84,26 @@ class Transistor:
         return scale * x * x, 2 * scale * x
 
     def control_to_lower(self, current: Any, across: Any) -> Any:
-        """vbe, vgs or vgk at a known current, signed for the polarity; None where the card does not tell."""
-        card = self.card
-        if card.family == "bjt":
-            return self.sign * card.vbe
-        if card.family == "mosfet":
-            k = card.k_factor(current)
-            if k is None or "vgs_th" not in card.numbers:
-                return None
-            return self.sign * (card.get("vgs_th") + mp.sqrt(2 * current / k))
-        if card.family == "jfet":
-            if "idss" not in card.numbers or not ("vgs_off" in card.numbers or "gm_id" in card.numbers):
-                return None
-            return self.sign * card.pinch_off() * (mp.sqrt(current / card.get("idss")) - 1)
-        p = card.perveance()
-        if p is None or across is None:
-            return None
-        return (current / p) ** (mp.mpf(2) / 3) - across / self._mu()
+        return control_to_lower(self.card, self.sign, current, across)
 
-    def _mu(self) -> Any:
-        n = self.card.numbers
-        return n["mu"] if "mu" in n else n["gm"] * n["rp"]
+
+def control_to_lower(card: Card, sign: int, current: Any, across: Any) -> Any:
+    """vbe, vgs or vgk at a known current, signed for the polarity; None where the card does not tell."""
+    if card.family == "bjt":
+        return sign * card.vbe
+    if card.family == "mosfet":
+        k = card.k_factor(current)
+        if k is None or "vgs_th" not in card.numbers:
+            return None
+        return sign * (card.get("vgs_th") + mp.sqrt(2 * current / k))
+    if card.family == "jfet":
+        if "idss" not in card.numbers or not ("vgs_off" in card.numbers or "gm_id" in card.numbers):
+            return None
+        return sign * card.pinch_off() * (mp.sqrt(current / card.get("idss")) - 1)
+    p = card.perveance()
+    if p is None or across is None:
+        return None
+    return (current / p) ** (mp.mpf(2) / 3) - across / card.mu()
 
 
 class DirectNetwork:
@@ -168,7 +193,7 @@ class DirectNetwork:
         out_rail, low_rail = (GROUND if r == "ground" else r for r in (out_rail, low_rail))
         at = a
         if kind in COMMON_CONTROL:
-            biased = any(k in stage for k in ("rb1", "rb2", "rg1", "rg2", "rg"))
+            biased = any(k in stage for k in BIAS_KEYS)
             at = f"{name}.g" if biased else GROUND
         for key, rail in (("rb1", "positive"), ("rb2", GROUND), ("rg1", "positive"), ("rg2", GROUND), ("rg", GROUND)):
             self._r(at, rail, stage, key)
@@ -189,7 +214,8 @@ class DirectNetwork:
             self._r(c, out_rail, stage, r_out)
         if "c_rf" not in stage:
             self._r(b, c, stage, "rf")
-        self.devices.append(Transistor(stage, card, b, c, e, kind == "cascode"))
+        upper = self.cards[stage.get("upper", stage["device"])] if kind == "cascode" else None
+        self.devices.append(Transistor(stage, card, b, c, e, upper))
         return e if kind in FOLLOWERS else c
 
     # -- solution ---------------------------------------------------------------------------------------------------
@@ -245,18 +271,18 @@ class DirectNetwork:
             if t.stated is not None or not t.solvable():
                 current = t.stated if t.stated is not None else mp.mpf(0)
                 base = current / t.card.get("beta") if t.card.get("beta") else mp.mpf(0)
-                for node, i in ((t.c, current), (t.b, base), (t.e, -current - base)):
+                for node, i in ((t.c, current * t.passed()), (t.b, base), (t.e, -current - base)):
                     add(node, None, one * i)
             elif t.card.family == "bjt":
                 share = 1 / t.card.get("beta")
-                for node, i in ((t.c, mp.mpf(1)), (t.b, share), (t.e, -1 - share)):
+                for node, i in ((t.c, t.passed()), (t.b, share), (t.e, -1 - share)):
                     add(node, t.unknown, one * i)
                 add(t.unknown, t.b, mp.mpf(1))
                 add(t.unknown, t.e, mp.mpf(-1))
                 add(t.unknown, None, -one * t.card.vbe)
             else:
                 current, slope = t.law(t.guess)
-                for node, turn in ((t.c, 1), (t.e, -1)):
+                for node, turn in ((t.c, t.passed()), (t.e, -1)):
                     add(node, t.unknown, turn * one * slope)
                     add(node, None, turn * one * (current - slope * t.guess))
                 self._control_law(t, one, add)
@@ -278,13 +304,13 @@ class DirectNetwork:
             add(t.unknown, None, n.pinch_off())
             add(t.unknown, t.unknown, -n.pinch_off())
         else:
-            add(t.unknown, t.c, one / t._mu())
-            add(t.unknown, t.e, -one / t._mu())
+            add(t.unknown, t.c, one / n.mu())
+            add(t.unknown, t.e, -one / n.mu())
             add(t.unknown, t.unknown, mp.mpf(-1))
 
 
-def bias(doc: Mapping[str, Any], cards: Mapping[str, Card]) -> dict[str, dict[str, Any]]:
-    """For each device stage: current, across, upper_across, control, lower, output (signed volts), solved."""
+def bias(doc: Mapping[str, Any], cards: Mapping[str, Card]) -> dict[str, Bias]:
+    """The bias of each device stage."""
     network = DirectNetwork(doc, cards)
     if not network.devices:
         return {}
@@ -293,36 +319,48 @@ def bias(doc: Mapping[str, Any], cards: Mapping[str, Card]) -> dict[str, dict[st
     except Singular:
         x = {}
     held = network.held()
-    return {t.name: _row(t, x, held) for t in network.devices}
+    return {t.name: _of(t, x, held) for t in network.devices}
 
 
-def _row(t: Transistor, x: Mapping[Hashable, Any], held: set[str]) -> dict[str, Any]:
+def _of(t: Transistor, x: Mapping[Hashable, Any], held: set[str]) -> Bias:
     def volt(node: str) -> Any:
         return x.get(node) if node in held else None
 
-    row = dict(EMPTY)
-    card = t.card
+    family = t.card.family
     if t.stated is not None:
-        row["current"], row["solved"] = t.stated, False
+        current = t.stated
     elif not t.solvable() or not x or t.b not in held:
-        return row
+        return Bias(control=volt(t.b) if family != "bjt" else None)
     else:
-        row["current"] = x[t.unknown] if card.family == "bjt" else t.law(x[t.unknown])[0]
-        row["solved"] = True
-    row["lower"], row["output"], row["control"] = volt(t.e), volt(t.c), volt(t.b)
-    stated = t.stage.get(KEYS[card.family][1])
-    stated = mp.mpf(number(stated)) if stated is not None else None
-    if t.cascode:
-        if stated is not None:
-            row["across"] = stated
-            if row["output"] is not None and row["lower"] is not None:
-                row["upper_across"] = t.sign * (row["output"] - row["lower"]) - stated
-    else:
-        row["across"] = stated
-        if stated is None and row["output"] is not None and row["lower"] is not None:
-            row["across"] = t.sign * (row["output"] - row["lower"])
-    if t.stated is not None and row["lower"] is not None:
-        step = t.control_to_lower(t.stated, row["across"])
+        current = x[t.unknown] if family == "bjt" else t.law(x[t.unknown])[0]
+    out = Bias(current, None, volt(t.b), volt(t.e), volt(t.c))
+    key = KEYS[family][1]
+    stated = mp.mpf(number(t.stage[key])) if key in t.stage else None
+    if t.upper is not None:
+        out.upper = _upper(t, out, stated)
+        out.output = None
+    if stated is not None:
+        out.across = stated
+        if out.output is None and out.lower is not None:
+            out.output = out.lower + t.sign * stated
+    elif out.output is not None and out.lower is not None:
+        out.across = t.sign * (out.output - out.lower)
+    if t.stated is not None and out.lower is not None:
+        step = t.control_to_lower(t.stated, out.across)
         if step is not None:
-            row["control"] = row["lower"] + step
-    return row
+            out.control = out.lower + step
+    return out
+
+
+def _upper(t: Transistor, lower: Bias, stated: Any) -> Bias:
+    """A cascode's upper device: what the rails leave above the stated voltage of the lower one."""
+    out = Bias(current=lower.current * t.passed(), output=lower.output)
+    if stated is None or lower.lower is None:
+        return out
+    out.lower = lower.lower + t.sign * stated
+    if out.output is not None:
+        out.across = t.sign * (out.output - out.lower)
+    step = control_to_lower(t.upper, t.sign, out.current, out.across)
+    if step is not None:
+        out.control = out.lower + step
+    return out

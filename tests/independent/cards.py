@@ -53,6 +53,10 @@ class Card:
     def triode_gm(self) -> Any:
         return self.numbers["gm"] if "gm" in self.numbers else self.numbers["mu"] / self.numbers["rp"]
 
+    def mu(self) -> Any:
+        n = self.numbers
+        return n["mu"] if "mu" in n else n["gm"] * n["rp"]
+
     def small_signal(self, current: Any, across: Any) -> dict[str, Any]:
         """gm, rpi, ro (absent = infinite), rx and the capacitances by the ledger's part names."""
         return {"bjt": self._bjt, "mosfet": self._fet, "jfet": self._fet, "triode": self._triode}[self.family](
@@ -110,6 +114,5 @@ class Card:
         gm = self.triode_gm()
         if "gm_ia" in n and current is not None:
             gm = gm * (current / n["gm_ia"]) ** (mp.mpf(1) / 3)
-        mu = n["mu"] if "mu" in n else n["gm"] * n["rp"]
-        out = {"gm": gm, "ro": mu / gm}
+        out = {"gm": gm, "ro": self.mu() / gm}
         return out | {k: n[k] for k in ("cgk", "cga", "cak") if k in n}

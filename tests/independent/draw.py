@@ -5,37 +5,26 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
+from tests.independent.bias import Bias
 from tests.independent.cards import NAMES, Card
+from tests.independent.kinds import BIAS_KEYS, COMMON_CONTROL, DEVICE_KINDS, FOLLOWERS, KEYS
 from tests.independent.linear import mp
 from tests.independent.network import GROUND, Element
 from tests.independent.quantity import number
-
-INVERTING = ("common-emitter", "common-source", "common-cathode")
-FOLLOWERS = ("emitter-follower", "source-follower", "cathode-follower")
-COMMON_CONTROL = ("common-base", "common-gate", "common-grid")
-DEVICE_KINDS = (*INVERTING, *FOLLOWERS, *COMMON_CONTROL, "cascode")
-
-KEYS = {  # key of each place by family: current, across, output resistor, lower, lower bypassed, its bypass, control
-    "bjt": ("ic", "vce", "rc", "re", "re_bypassed", "ce", "cb"),
-    "mosfet": ("id", "vds", "rd", "rs", "rs_bypassed", "cs", "cg"),
-    "jfet": ("id", "vds", "rd", "rs", "rs_bypassed", "cs", "cg"),
-    "triode": ("ia", "vak", "ra", "rk", "rk_bypassed", "ck", "cg"),
-}
-BIAS_KEYS = ("rb1", "rb2", "rg1", "rg2", "rg")
 
 
 class Drawing:
     """Elements, the interstage nodes, which node is whose site, and the bridges of each stage."""
 
-    def __init__(
-        self, doc: Mapping[str, Any], bias: Mapping[str, Mapping[str, Any]], cards: Mapping[str, Card]
-    ) -> None:
+    def __init__(self, doc: Mapping[str, Any], bias: Mapping[str, Bias], cards: Mapping[str, Card]) -> None:
         self.doc, self.bias, self.cards = doc, bias, cards
         self.elements: list[Element] = []
         self.sites: dict[str, str] = {}  # full-network node -> site name
         self.nodes: list[str] = []  # n0 ... nN as nodes of the network
         self.names: list[str] = []  # n0 ... nN as listed (a stage of one node repeats the lower name)
         self.bridges: dict[int, list[tuple[str, str, Any, str, str]]] = {}  # line -> part, type, value, input, output
+        self.arm_nodes: list[tuple[str, str]] = []  # a node between the parts of a shunt arm, after where it hangs
+        self.storages: set[str] = set()  # nodes that stand for the storages gbw, f2, pole1 ...
         self.controls: dict[int, str] = {}  # line -> node on which rf or r_bridge ends
         self.line = 0
         self.stage: Mapping[str, Any] = {}
@@ -48,6 +37,8 @@ class Drawing:
         self.line, self.stage = len(self.lines), {}
         self.load = self._load(doc.get("load", {}))
         self.lines.append(("load", "load"))
+        for hangs_from, node in self.arm_nodes:
+            self.site(self.sites[hangs_from], node)
 
     # -- small tools ------------------------------------------------------------------------------------------------
 
@@ -62,6 +53,8 @@ class Drawing:
     def put(
         self, kind: str, part: str, a: str, b: str, value: Any, role: str = "", c: str = GROUND, d: str = GROUND
     ) -> None:
+        if kind == "tau" and role == "high":
+            self.storages.add(a)
         if value is not None and value != 0 and a != b:
             self.elements.append(Element(kind, self.line, part, a, b, value, role, c, d))
 
@@ -183,7 +176,7 @@ class Drawing:
         card = self.cards[stage["device"]]
         family = card.family
         own = self.bias[name]
-        figures = card.small_signal(own["current"], own["across"])
+        figures = card.small_signal(own.current, own.across)
         c_in, c_bridge = NAMES[family][:2]
         if kind in FOLLOWERS:
             out = self.at("e")
@@ -210,7 +203,8 @@ class Drawing:
         out = self.at("c")
         if kind == "cascode":
             upper_card = self.cards[stage.get("upper", stage["device"])]
-            upper = upper_card.small_signal(own["current"], own["upper_across"])
+            above_bias = own.upper or Bias()
+            upper = upper_card.small_signal(above_bias.current, above_bias.across)
             middle = self.at("mid")
             inner = self._device(card, figures, "", b, middle, e)
             above = self._device(upper_card, upper, "_upper", GROUND, out, middle)
@@ -350,6 +344,7 @@ class Drawing:
                 standing = [k for k in ("shunt_r", "shunt_l", "shunt_c") if k in parts and self.value(arm, k)]
                 for k in standing:
                     far = GROUND if k == standing[-1] else self.at(f"arm{i}{k[-1]}")
+                    self.arm_nodes.append((node, far))
                     self.put(k[-1].upper(), label[k], end, far, self.value(arm, k), roles[k])
                     end = far
         return node

@@ -11,7 +11,9 @@ from collections.abc import Hashable, Iterable, Mapping
 from pathlib import Path
 from typing import Any
 
-from tests.independent.draw import DEVICE_KINDS
+import numpy as np
+
+from tests.independent.kinds import DEVICE_KINDS
 from tests.independent.linear import Singular, mp
 from tests.independent.network import GROUND
 from tests.independent.quantity import number
@@ -34,7 +36,7 @@ def plain(x: Any) -> Any:
         return {k: plain(v) for k, v in x.items()}
     if isinstance(x, list):
         return [plain(v) for v in x]
-    return float(x) if isinstance(x, mp.mpf) else x
+    return float(x) if isinstance(x, mp.mpf | np.floating) else x
 
 
 def db(ratio: Any) -> Any:
@@ -50,6 +52,9 @@ class Oracle(Solved):
         """A of line k from a solution: V(n0), V(n_k)/V(n_{k-1}), V(load)/V(n_N)."""
         ends = [*self.nodes, self.load]
         return x[node(ends[k])] / (x[node(ends[k - 1])] if k else 1)
+
+    def left_out(self, k: int) -> bool:
+        return 0 < k < self.last and bool(self.doc["stage"][k - 1].get("left_out"))
 
     def open_gain(self, k: int) -> Any:
         system = self.only(range(k + 1))
@@ -94,9 +99,6 @@ class Oracle(Solved):
     def holds(self, k: int, rows: Rows) -> bool:
         """Does stage k hold its input node?"""
         kind = self.drawing.lines[k][1]
-        stage = self.doc["stage"][k - 1]
-        if stage.get("left_out"):
-            return False
         if kind == "transimpedance":
             return True
         if k not in self.drawing.controls:
@@ -109,14 +111,17 @@ class Oracle(Solved):
 
     def site_rows(self) -> dict[str, dict[str, Any]]:
         """ohm, farad, pole_hz of every site."""
-        members: dict[str, list[str]] = {}
+        interstage = list(dict.fromkeys(self.drawing.names))
+        inner = [site for site in self.drawing.sites.values() if site not in interstage]
+        members: dict[str, list[str]] = {site: [] for site in [*interstage, *inner]}
         taken: set[str] = set()
-        for node, site in self.drawing.sites.items():
-            members.setdefault(site, [])
-            at = self.find(node)
-            if at != GROUND and at in self.response and at not in taken:
-                taken.add(at)
-                members[site].append(at)
+        # one midband node may belong to two sites (a coil or a coupling joins them): the interstage one has it
+        for site, own in members.items():
+            for node in (n for n, s in self.drawing.sites.items() if s == site):
+                at = self.find(node)
+                if at != GROUND and at in self.response and at not in taken:
+                    taken.add(at)
+                    own.append(at)
         heads = {name: node for node, name in zip(self.nodes, self.drawing.names, strict=True)}
         out = {}
         for site, nodes in members.items():
@@ -131,16 +136,21 @@ class Oracle(Solved):
             head = heads.get(site) or next(n for n, s in self.drawing.sites.items() if s == site)
             ohm = self.ohm(head) if self.find(head) in self.response else None
             real = ohm is not None and ohm >= mp.mpf("1e-9")
+            storage = head in self.drawing.storages
             out[site] = {
-                "ohm": ohm,
-                "farad": tau / ohm if real else None,
+                "ohm": None if storage else ohm,
+                "farad": tau / ohm if real and not storage else None,
                 "pole_hz": 1 / (2 * mp.pi * tau) if tau > 0 else None,
                 "real": real,
             }
         return out
 
     def _capacitance(self, node: str) -> Any:
-        """Grounded capacitance plus Σ C·(1 - V_j/V_i) at a midband node."""
+        """Grounded capacitance plus Σ C·(1 - V_j/V_i) at a midband node.
+
+        Terms below zero (a capacitance driven beyond its own node's swing, as at a follower's output) are not
+        counted: with them a resistor of 1 µΩ that parts two nodes of a site would move its pole.
+        """
         total = mp.mpf(0)
         for e in self.elements:
             if e.kind not in ("C", "tau") or e.role != "high":
@@ -151,7 +161,7 @@ class Oracle(Solved):
             other = b if node == a else a
             if other != GROUND and other not in self.response:
                 continue
-            total += e.value * (1 - self.mid_v[other] / self.mid_v[node])
+            total += max(mp.mpf(0), e.value * (1 - self.mid_v[other] / self.mid_v[node]))
         return total
 
     # -- the document -----------------------------------------------------------------------------------------------
@@ -162,7 +172,7 @@ class Oracle(Solved):
         unstable = self.right_half_plane_poles(span) > 0
         upper_estimate, lower_estimate, seed = self.seed(taus)
         edges: dict[str, Any] = {"upper": None, "lower": None}
-        if seed is not None and not unstable:
+        if not unstable and self.clean(seed):
             edges = {"upper": self.edge(seed, 1, span[1]), "lower": self.edge(seed, -1, span[0])}
         owned = {end: self.owned(edges[end], taus) for end in edges}
         sites = self.site_rows()
@@ -207,7 +217,7 @@ class Oracle(Solved):
         low, high = mp.log(min(poles)) - 3, mp.log(min(poles)) + mp.mpf("0.1")
         return mp.exp(crossing(loss, low, high))
 
-    def line_rows(self, owned: Mapping[str, Mapping[tuple[int, str], Any]]) -> Rows:
+    def line_rows(self, owned: Mapping[str, Mapping[tuple[int, str], Any] | None]) -> Rows:
         rows = []
         for k, (name, kind) in enumerate(self.drawing.lines):
             bridges = self.bridge_rows(k)
@@ -216,17 +226,19 @@ class Oracle(Solved):
                 "name": name, "kind": kind, "gain": gain, "gain_db": db(gain), "open_gain": opened,
                 "loading": None if opened is None else gain / opened,
                 "transfer_ohm": None, "k": self.line_k(bridges), "bridges": bridges,
-                "input_ohm": None, "output_ohm": None,
+                "input_ohm": None, "output_ohm": None, "owns_upper": None, "owns_lower": None,
             }  # fmt: skip
+            if self.left_out(k):
+                rows.append(row | {"open_gain": None, "loading": None})
+                continue
             if k:
                 row["input_ohm"] = self.driving_point(range(k, self.last + 1), self.nodes[k - 1])
-            if k < self.last:
-                row["output_ohm"] = self.driving_point(range(k + 1), self.nodes[k])
+            row["output_ohm"] = self.driving_point(range(k + 1), [*self.nodes, self.load][k])
             if 0 < k < self.last and self.holds(k, bridges):
                 row["transfer_ohm"] = gain * row["input_ohm"]
             for end in ("upper", "lower"):
-                some = [v for (line, _), v in owned[end].items() if line == k]
-                row[f"owns_{end}"] = None if any(v is None for v in some) else sum(some, mp.mpf(0))
+                if owned[end] is not None:
+                    row[f"owns_{end}"] = sum((v for (line, _), v in owned[end].items() if line == k), mp.mpf(0))
             rows.append(row)
         return rows
 
@@ -288,7 +300,10 @@ class Oracle(Solved):
         rows = []
         names = interstage + (["load"] if self.load != self.nodes[-1] else [])
         for name in names + [s for s in sites if s not in interstage]:
-            site = sites.get(name, {"ohm": None, "farad": None, "pole_hz": None, "real": False})
+            site = sites.get(name, {"farad": mp.mpf(0), "pole_hz": None, "real": False})
+            if name == "load":  # its capacitance is counted at the last node, with which it is one at midband
+                site["ohm"] = self.ohm(self.load)
+                site["farad"] = mp.mpf(0) if site["ohm"] >= mp.mpf("1e-9") else None
             room = None
             if at is not None and counted and site["pole_hz"] is not None and site["real"]:
                 room = site["pole_hz"] / (at / mp.sqrt(mp.mpf(2) ** (mp.mpf(1) / len(counted)) - 1))
@@ -310,7 +325,8 @@ class Oracle(Solved):
                 {
                     "stage": self.drawing.lines[line][0], "part": part, "type": row["kind"], "role": row["role"],
                     "value": row["value"], "tau_s": row["tau"],
-                    "owns_upper": owned["upper"][key], "owns_lower": owned["lower"][key],
+                    "owns_upper": owned["upper"] and owned["upper"][key],
+                    "owns_lower": owned["lower"] and owned["lower"][key],
                 }
             )  # fmt: skip
         for e in self.elements:
@@ -322,11 +338,6 @@ class Oracle(Solved):
         rows = []
         for stage in self.doc.get("stage", []):
             if stage["kind"] in DEVICE_KINDS and not stage.get("left_out"):
-                b = self.bias[stage["name"]]
-                rows.append(
-                    {
-                        "stage": stage["name"], "current_a": b["current"], "across_v": b["across"],
-                        "control_v": b["control"], "lower_v": b["lower"], "output_v": b["output"],
-                    }
-                )  # fmt: skip
+                for name, row in self.bias[stage["name"]].rows(stage["name"]):
+                    rows.append({"stage": name} | row)
         return rows

@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 from scipy.optimize import minimize_scalar
 
-from tests.independent.bias import EMPTY, bias
+from tests.independent.bias import Bias, bias
 from tests.independent.cards import Card
 from tests.independent.draw import Drawing
 from tests.independent.linear import Singular, mp
@@ -41,7 +41,7 @@ class Solved:
         self.doc = doc
         celsius = number(doc.get("supply", {}).get("temperature", 25))
         self.cards = {name: Card(table, celsius) for name, table in doc.get("device", {}).items()}
-        self.bias = {s["name"]: dict(EMPTY) for s in doc.get("stage", [])}
+        self.bias = {s["name"]: Bias() for s in doc.get("stage", [])}
         self.bias |= bias(doc, self.cards)
         self.drawing = Drawing(doc, self.bias, self.cards)
         self.elements = self.drawing.elements
@@ -63,6 +63,10 @@ class Solved:
         if self.by_current:
             return system.drive({find(self.nodes[0]): 1}, emf=False)
         return system.drive({}, emf=True)
+
+    def drive_full(self) -> dict[Hashable, Any]:
+        """A unit source on the full network."""
+        return self._drive(self.full, lambda node: node)
 
     def _midband(self) -> None:
         """Midband node voltages for a unit source, and the driving-point resistances."""
@@ -131,7 +135,7 @@ class Solved:
         return out
 
     def seed(self, taus: Mapping[Any, Mapping[str, Any]]) -> tuple[Any, Any, Any]:
-        """Estimates f_H and f_L of the two sums, and the band seed (None: no clean midband)."""
+        """Estimates f_H and f_L of the two sums, and the band seed."""
         high = [t["tau"] for t in taus.values() if t["role"] == "high" and t["tau"] is not None]
         low = [t["tau"] for t in taus.values() if t["role"] == "low" and t["tau"] is not None]
         b1 = sum(high, mp.mpf(0))
@@ -144,14 +148,17 @@ class Solved:
             at = upper / 1000
         else:
             at = 1000 * lower if lower is not None else mp.mpf(1000)
-        if abs(self.h(at)) >= abs(self.gain) / mp.sqrt(2):
+        if self.clean(at):
             return upper, lower, at
         corners = [float(1 / (2 * mp.pi * abs(t))) for t in high + low]
         first, last = np.log10(min(corners)) - 1, np.log10(max(corners)) + 1
         grid = 10.0 ** (np.arange(np.ceil(first * 40 - 1e-9), np.floor(last * 40 + 1e-9) + 1) / 40)
         error = np.abs(np.abs(self.sweep(grid)) / float(abs(self.gain)) - 1)
-        at = mp.mpf(grid[int(np.argmin(error))])
-        return upper, lower, at if abs(self.h(at)) >= abs(self.gain) / mp.sqrt(2) else None
+        return upper, lower, mp.mpf(grid[int(np.argmin(error))])
+
+    def clean(self, f: Any) -> bool:
+        """|H| at the band seed reaches |gain|/sqrt 2: there is a midband to take edges from."""
+        return bool(abs(self.h(f)) >= abs(self.gain) / mp.sqrt(2))
 
     # -- frequency --------------------------------------------------------------------------------------------------
 
@@ -168,7 +175,7 @@ class Solved:
         """H at many frequencies in double precision, to find brackets with."""
         G, C, unknowns = self.full.dense()
         right = np.zeros((len(unknowns), 1), complex)
-        for row, value in self._drive(self.full, lambda node: node).items():
+        for row, value in self.drive_full().items():
             right[unknowns.index(row), 0] = float(value)
         A = G + 2j * np.pi * f[:, None, None] * C
         scale = np.abs(A).max(axis=2, keepdims=True)
@@ -195,10 +202,10 @@ class Solved:
 
         return mp.exp(crossing(excess, lo, hi))
 
-    def owned(self, edge: Any, keys: Iterable[tuple[int, str]]) -> dict[tuple[int, str], Any]:
+    def owned(self, edge: Any, keys: Iterable[tuple[int, str]]) -> dict[tuple[int, str], Any] | None:
         """-∂ln f/∂ln X at an edge, by moving each part a little and asking how far the edge goes."""
         if edge is None:
-            return dict.fromkeys(keys)
+            return None
         step = mp.mpf(10) ** -18
         here = mp.log(abs(self.h(edge)))
         slope = (mp.log(abs(self.h(edge * (1 + step)))) - here) / step

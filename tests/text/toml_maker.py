@@ -6,10 +6,32 @@ import random
 
 NAMES = ["rc", "re_bypassed", "a-b", "7", '"a b"', "'x.y'", '"µ"', '"q\\"t"', '"\\u0041"', "stage", "tolerance", '""']
 SCALARS = [
-    "0", "-12", "1_000", "0x1F", "1e3", "6.02e-23", "nan", "-inf", "true", "false", "2026-05-04", "2026-05-04 07:32:00Z",
-    "2026-05-04T07:32:00.5-01:00", "07:32:00", '"4k7"', "'4k7'", '""', "''", '"[[stage]] # no comment"', "'a = \"b\"'",
-    '"tab\\t quote\\" end\\\\"', '"""\nlong "" [x]\n# no comment\n"""', "'''\nraw \\ ''\n[[stage]]\n'''", '"""""ends in two"""""',
-    '"""a\\\n   folded"""', '"\\U0001F600 😀"',
+    "0",
+    "-12",
+    "1_000",
+    "0x1F",
+    "1e3",
+    "6.02e-23",
+    "nan",
+    "-inf",
+    "true",
+    "false",
+    "2026-05-04",
+    "2026-05-04 07:32:00Z",
+    "2026-05-04T07:32:00.5-01:00",
+    "07:32:00",
+    '"4k7"',
+    "'4k7'",
+    '""',
+    "''",
+    '"[[stage]] # no comment"',
+    "'a = \"b\"'",
+    '"tab\\t quote\\" end\\\\"',
+    '"""\nlong "" [x]\n# no comment\n"""',
+    "'''\nraw \\ ''\n[[stage]]\n'''",
+    '"""""ends in two"""""',
+    '"""a\\\n   folded"""',
+    '"\\U0001F600 😀"',
 ]
 COMMENTS = ["# plain", "# [[stage]] 'x", '# """ { [', "#", "#\t“”"]
 
@@ -83,7 +105,9 @@ class Maker:
         return "[" + gap + f"{gap},{gap}".join(items) + gap + tail + gap + "]"
 
     def filler(self) -> None:
-        self.lines += self.rng.choice([[], [""], ["", "  "], [self.rng.choice(COMMENTS)], ["", self.rng.choice(COMMENTS)]])
+        self.lines += self.rng.choice(
+            [[], [""], ["", "  "], [self.rng.choice(COMMENTS)], ["", self.rng.choice(COMMENTS)]]
+        )
 
     def indent(self) -> str:
         return self.rng.choice(["", "", "  ", "\t"])

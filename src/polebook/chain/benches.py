@@ -7,7 +7,7 @@ from collections.abc import Collection
 from polebook.chain import rows
 from polebook.chain.desk import Desk, Owner
 from polebook.chain.model import Bench
-from polebook.chain.sections import of_source_kind
+from polebook.chain.sections import gain_unit, of_source_kind
 from polebook.chain.suggest import listed
 from polebook.chain.tables import BENCH
 from polebook.refusal import quoted
@@ -21,6 +21,7 @@ def read(desk: Desk, raw: object, names: Collection[str], source_kind: str) -> t
         owner = Owner(("bench", at), f"bench.{number}", f"bench {number}")
         desk.mark(owner.prefix, owner.path)
         row = rows.read(desk, table, owner, of_source_kind(BENCH, source_kind))
+        gain_unit(desk, table, source_kind, owner)
         where = row.texts.get("at", "")
         if where and where not in names:
             near = desk.near(where, names)

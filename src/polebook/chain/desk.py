@@ -28,7 +28,7 @@ class Owner:
 
     def number(self, key: str) -> str:
         """Number path of `key`."""
-        return f"{self.prefix}.{key}"
+        return f"{self.prefix}.{key}" if self.prefix else key
 
 
 class Desk:
@@ -57,11 +57,12 @@ class Desk:
         self.places[name] = self.place(path)
 
     def put(self, name: str, value: float, path: TextPath | None) -> None:
-        """A number as read; `path` is None for a default."""
+        """A number as read, its place marked; `path` is None for a default."""
         self.numbers[name] = value
         if path is not None:
             self.given.add(name)
-            self.mark(name, path)
+            if name not in self.places:
+                self.mark(name, path)
 
     def near(self, word: str, known: Iterable[str]) -> str:
         """The nearest known word, "" where none is near."""

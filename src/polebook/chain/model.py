@@ -76,7 +76,8 @@ class Chain:
              file gives and of every default that CHAIN_FORMAT states as a number. A key that is absent
              and has no default is absent here too.
     given    the paths that the file itself states (no defaults)
-    places   path -> where its value stands in the file; also "Q1" (the stage's header), "device.D"
+    places   path -> where its value stands in the file, of words too; also "Q1" (the stage's header), "device.D",
+             "bench.1", and "source", "load", "supply", "target", "preferred", "tolerance" (line 0 where absent)
     """
 
     path: str

@@ -60,6 +60,7 @@ def nearest_key(desk: Desk, key: str, known: Iterable[str]) -> str:
 
 def _value(desk: Desk, raw: object, param: Param, owner: Owner, row: Row) -> None:
     path = (*owner.path, param.key)
+    desk.mark(owner.number(param.key), path)
     if param.dimension in DIMENSIONS:
         value = values.number(desk, raw, param, owner, path)
         if value is not None:

@@ -32,8 +32,7 @@ def section(desk: Desk, top: Table, name: str, params: tuple[Param, ...] | None 
     table = rows.as_table(desk, top[name], name) if name in top else {}
     if table is None:
         return Row()
-    if name in top:
-        desk.mark(name, (name,))
+    desk.mark(name, (name,))
     return rows.read(desk, table, owner_of(name), SECTIONS[name] if params is None else params)
 
 
@@ -110,6 +109,18 @@ def of_source_kind(params: tuple[Param, ...], kind: str) -> tuple[Param, ...]:
     return tuple(replace(p, sign="positive") if p.key == "resistance" else p for p in changed)
 
 
+def gain_unit(desk: Desk, table: object, source_kind: str, owner: Owner) -> None:
+    """The gain of a chain with a current source is in V/A: V/V, which its dimension would take, is a fault."""
+    raw = table.get("gain") if isinstance(table, dict) else None
+    if source_kind == "current" and isinstance(raw, str) and raw.rstrip().endswith("V/V"):
+        desk.fault(
+            (*owner.path, "gain"),
+            f"{quoted(raw)} is not a gain in V/A",
+            f"gain of {owner.words} is counted from a current source, so its unit is V/A (the ohm) or dB",
+            f'write it in V/A: gain = "{raw.strip().removesuffix("V/V").strip()}"',
+        )
+
+
 def load(desk: Desk, top: Table) -> None:
     """[load]."""
     section(desk, top, "load")
@@ -127,6 +138,7 @@ def load(desk: Desk, top: Table) -> None:
 def target(desk: Desk, top: Table, source_kind: str) -> Row:
     """[target], in the units of the source's kind."""
     row = section(desk, top, "target", of_source_kind(TARGET, source_kind))
+    gain_unit(desk, top.get("target"), source_kind, owner_of("target"))
     low, high = desk.numbers.get("target.noise_from"), desk.numbers.get("target.noise_to")
     if low is not None and high is not None and low >= high:
         desk.fault(

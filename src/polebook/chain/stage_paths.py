@@ -89,5 +89,5 @@ def _in_tolerance(name: str, path: TextPath, key: str, stage: Data, kind: Kind |
         return Located(inner, f"{name}.tolerance.{key}", Param(key, "share", "", sign="nonnegative"))
     known = stage_lists.tolerance_keys(kind, family, _arms(stage))
     if key not in known:
-        raise no_key(key, known, f"the tolerances of stage {name}")
+        raise no_key(key, known, f"tolerance of stage {name}")
     return Located(inner, f"{name}.tolerance.{key}", Param(key, "share", "", sign="nonnegative"))

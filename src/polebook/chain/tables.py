@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from types import MappingProxyType
 
 from polebook.param import Param
+from polebook.series import NAMES as SERIES_NAMES
 
 FORMAT = 1
 MOST_STAGES = 64
@@ -13,7 +14,6 @@ MOST_ARMS = 256  # of one ladder
 MOST_POLES = 64  # of one list of a block
 BUDGET_DB = 3.010299956639812  # 10·log10(2): what the nodes of a chain may lose together at an edge
 
-SERIES = ("E3", "E6", "E12", "E24", "E48", "E96", "E192")
 SHAPES = ("normal", "uniform")
 
 _NOTE = Param("note", "text", "free text")
@@ -82,9 +82,9 @@ SETTINGS = frozenset({"gain_tolerance", "pulse", "reference", "noise_from", "noi
 """Keys of [target] that are no target themselves."""
 
 PREFERRED = (
-    Param("resistor", "choice", "series that resistors snap to", default="E24", choices=SERIES),
-    Param("capacitor", "choice", "series that capacitors snap to", default="E12", choices=SERIES),
-    Param("inductor", "choice", "series that inductors snap to", default="E12", choices=SERIES),
+    Param("resistor", "choice", "series that resistors snap to", default="E24", choices=SERIES_NAMES),
+    Param("capacitor", "choice", "series that capacitors snap to", default="E12", choices=SERIES_NAMES),
+    Param("inductor", "choice", "series that inductors snap to", default="E12", choices=SERIES_NAMES),
 )
 
 TOLERANCE = (

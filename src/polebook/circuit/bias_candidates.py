@@ -58,7 +58,9 @@ def candidates(group: Group, cols: Columns) -> tuple[list[int], list[int]]:
     balances = [cols.voltage[node] for node in group.nodes if node not in silent]
     laws = [n + b + k for k, device in enumerate(group.devices) if not device.current or device.fed_lower]
     stated = [n + b + k for k, device in enumerate(group.devices) if device.current and not device.fed_lower]
-    return [*balances, *range(n, n + b), *laws], [*range(n + b + d, n + b + 2 * d), *stated]
+    loose = {node for island in islands(group) if not island.anchored for node in island.nodes}
+    across = [n + b + d + k for k, device in enumerate(group.devices) if device.output in loose]
+    return [*balances, *range(n, n + b), *laws], [*across, *stated]
 
 
 def _closed(group: Group, island: Island) -> bool:

@@ -99,5 +99,5 @@ def solution(plan: Compiled, get: Get) -> Solution:
         Nonlinear(u, i, characteristic(device.family), at.factor)
         for device, at, u, i in zip(group.devices, values.laws, cols.drive, cols.current, strict=True) if u >= 0
     ]
-    found, converged = solve_rows(_rows(group, cols, plan.choice, values), plan.order, devices)
+    found, converged = solve_rows(_rows(group, cols, plan.choice, values), plan.order, devices, len(group.nodes))
     return Solution(plan, values, found, converged)

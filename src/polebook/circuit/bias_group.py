@@ -60,7 +60,7 @@ class Numbers:
 
 
 def groups(net: Network) -> list[Group]:
-    """The groups of a network, by their first device, those without one left out."""
+    """The groups of a network that hold a device or end at an amplifier's input, by the first of these."""
     parent: dict[int, int] = {}
 
     def root(node: int) -> int:
@@ -77,6 +77,9 @@ def groups(net: Network) -> list[Group]:
     for device in net.devices:
         free = [n for n in (device.control, device.lower, device.output) if not net.level(n)]
         gathered.setdefault(root(free[0]) if free else -1 - len(gathered), ([], []))[1].append(device)
+    for amplifier in net.amplifiers:
+        if not net.level(amplifier.input):
+            gathered.setdefault(root(amplifier.input), ([], []))
     for resistor in net.resistors:
         free = [n for n in (resistor.a, resistor.b) if not net.level(n)]
         if free and root(free[0]) in gathered:

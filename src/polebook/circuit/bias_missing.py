@@ -8,7 +8,7 @@ from polebook.circuit.bias_compile import Compiled
 from polebook.circuit.bias_laws import lacking
 from polebook.stages.base import GROUP, TERMINALS, slot_key
 
-_BIAS_KEYS = {"bjt": "rb1 and rb2", "mosfet": "rg1 and rg2", "jfet": "rg", "triode": "rg"}
+BIAS_KEYS = {"bjt": "rb1 and rb2", "mosfet": "rg1 and rg2", "jfet": "rg", "triode": "rg"}
 
 
 def missing(plan: Plan, chain: Chain) -> dict[str, tuple[str, ...]]:
@@ -32,7 +32,7 @@ def _alternatives(plan: Plan, part: Compiled, k: int, chain: Chain) -> tuple[str
     if keys:
         ways.append(f"{' and '.join(keys)} on card {device.card}")
     if device.name in plan.floating:
-        ways.append(f"{_BIAS_KEYS[device.family]} at its {terminals['control']}")
+        ways.append(f"{BIAS_KEYS[device.family]} at its {terminals['control']}")
     if device.fed_lower:
         ways.append(f"{slot_key('r_low', device.family)} at its {terminals['lower']}")
     coupled = f"{device.name}.couple" in chain.numbers

@@ -26,7 +26,8 @@ class Nonlinear:
     factor: Value
 
 
-def solve_rows(rows: list[Row], order: Order, devices: Sequence[Nonlinear]) -> tuple[dict[int, Value], Value]:
+def solve_rows(rows: list[Row], order: Order, devices: Sequence[Nonlinear],
+               voltages: int) -> tuple[dict[int, Value], Value]:
     """Column -> value, and whether every row holds to 1e-12 of its terms (a bool; an array of them for arrays).
 
     A fixed number of steps, no branch on a value, so that complex steps and arrays pass. Rows are used up.
@@ -44,7 +45,7 @@ def solve_rows(rows: list[Row], order: Order, devices: Sequence[Nonlinear]) -> t
             if column != RHS and column != pivot.column:
                 total = total - value * found[column]
         found[pivot.column] = total / row[pivot.column]
-    return found, holds(kept, found)
+    return found, holds(kept, found, voltages)
 
 
 def newton(rows: list[Row], order: Order, devices: Sequence[Nonlinear]) -> dict[int, Value]:
@@ -112,8 +113,11 @@ def _gauss(matrix: list[list[Value]], right: list[Value]) -> list[Value]:
     return right
 
 
-def holds(rows: list[Row], found: dict[int, Value]) -> Value:
-    """Whether every row's terms cancel to 1e-12 of their sum."""
+def holds(rows: list[Row], found: dict[int, Value], voltages: int) -> Value:
+    """Whether every row's terms cancel to 1e-12 of their sum, a voltage counting as a volt more than it is.
+
+    The first `voltages` columns are voltages. Without that volt a network in which nothing flows could not hold.
+    """
     result: Value = True
     for row in rows:
         rest = -row.get(RHS, 0.0)
@@ -123,5 +127,7 @@ def holds(rows: list[Row], found: dict[int, Value]) -> Value:
                 term = value * found[column]
                 rest = rest + term
                 size = size + abs(term)
+                if column < voltages:
+                    size = size + abs(value)
         result = result & (abs(rest) <= RESIDUAL * size)
     return result

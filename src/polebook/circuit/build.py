@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from polebook.chain.model import Chain, Stage
 from polebook.circuit import bias, terminals
 from polebook.circuit.bias import Operating
+from polebook.circuit.bias_missing import missing as missing_currents
 from polebook.circuit.figures import stage_figures
 from polebook.circuit.layout import Layout, arrange
 from polebook.circuit.recorder import Collector, Recorder
@@ -17,6 +18,8 @@ from polebook.devices.missing import Lack
 from polebook.problem import Problem, ProblemsFound
 from polebook.stages.registry import KINDS, STAMPS
 from polebook.stages.stamper import Given, Stamper, Value
+
+CURRENT_KEYS = {"bjt": "ic", "triode": "ia"}  # else id
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,12 +105,11 @@ def _problem(chain: Chain, plan: bias.Plan, stage: Stage, lack: Lack) -> Problem
     place = chain.places.get(stage.name)
     card = chain.cards[stage.device]
     if lack.of_stage:
-        reasons = bias.missing(plan, chain).get(stage.name, "")
-        why = f"{lack.why}, and the current cannot be solved" + (f": {reasons}" if reasons else "")
-        key = {"bjt": "ic", "triode": "ia"}.get(card.family, "id")
-        return Problem(place, f"{lack.figure} of stage {stage.name} cannot be had", why,
-                       f"state the quiescent current ({key}) of the stage, or give the card {card.name} its {lack.figure}")
+        ways = missing_currents(plan, chain).get(stage.name, ())
+        key = CURRENT_KEYS.get(card.family, "id")
+        return Problem(
+            place, f"{lack.figure} of stage {stage.name} cannot be had",
+            f"{lack.why}, and the quiescent current cannot be solved",
+            f"give {', or '.join(ways) or key}; or give card {card.name} its {lack.figure} at the operating point")
     return Problem(chain.places.get(f"device.{card.name}", place), f"card {card.name} lacks {lack.key}",
                    f"stage {stage.name} needs {lack.figure}: {lack.why}", f"add {lack.key} to [device.{card.name}]")
-
-

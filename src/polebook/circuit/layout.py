@@ -22,7 +22,8 @@ class Layout:
     onward    elimination from source to load at midband, by segment (none for the source)
     diagonal  slot of the admittance at each `after`
     seed      slots of (n0, n0) and (n0, emf) that start the way onward; -1 where n0 is the EMF itself
-    ends      slots of (after, after) and (after, emf) on the way onward, by segment
+    origins   the known node that each segment's way onward starts from
+    ends      slots of (after, after) and (after, origin) on the way onward, by segment
     """
 
     recorder: Recorder
@@ -36,6 +37,7 @@ class Layout:
     diagonal: list[int]
     seed: tuple[int, int]
     ends: list[tuple[int, int]] = field(default_factory=list)
+    origins: list[int] = field(default_factory=list)
 
     @property
     def parts(self) -> list[Part]:
@@ -79,7 +81,8 @@ def arrange(recorder: Recorder, emf: int) -> Layout:
     for index in range(len(segments) - 1, -1, -1):
         _stand(back, entries[index], ties[index])
         nodes = [k for k in segments[index].nodes if k != emf]
-        steps[index] = [back.eliminate(k) for k in leaves_first(nodes, _ends(ties[index]), after[index])]
+        order = leaves_first(nodes, _ends(ties[index]), after[index], recorder.is_driven)
+        steps[index] = [back.eliminate(k) for k in order]
     diagonal = [back.slots.setdefault((rows[k], k), len(back.slots)) for k in after]
     layout = Layout(recorder, emf, after, branches, stamps, 0, steps, [], diagonal, (-1, -1))
     _plan_onward(layout, Graph(rows, slots=back.slots), entries, ties)
@@ -89,20 +92,24 @@ def arrange(recorder: Recorder, emf: int) -> Layout:
 
 def _plan_onward(layout: Layout, graph: Graph, entries: list[list[tuple[int, int]]],
                  ties: list[list[tuple[int, int, int]]]) -> None:
-    known, first = layout.origin, layout.after[0]
-    if first != known:
-        layout.seed = (graph.enter(first, first), graph.enter(first, known))
-    layout.onward.append([])
-    layout.ends.append((graph.slot(first, first), graph.slot(first, known)))
-    for index in range(1, len(layout.segments)):
-        segment = layout.segments[index]
-        _stand(graph, entries[index], ties[index])
-        nodes = [k for k in segment.nodes if k != segment.after]
-        if segment.after != segment.before and segment.before != known:
-            nodes.append(segment.before)
-        done = [graph.eliminate(k) for k in leaves_first(nodes, _ends(ties[index]), segment.before)]
-        layout.onward.append(done)
-        layout.ends.append((graph.slot(segment.after, segment.after), graph.slot(segment.after, known)))
+    """The way from source to load; behind an ideal output it begins anew, since nothing ahead of it is felt there."""
+    origin, first = layout.origin, layout.after[0]
+    if first != origin:
+        layout.seed = (graph.enter(first, first), graph.enter(first, origin))
+    for index, segment in enumerate(layout.segments):
+        if index and layout.driven[segment.before]:
+            origin = segment.before
+        if index:
+            _stand(graph, entries[index], ties[index])
+            nodes = [k for k in segment.nodes if k != segment.after]
+            if segment.after != segment.before and segment.before != origin:
+                nodes.append(segment.before)
+            order = leaves_first(nodes, _ends(ties[index]), segment.before, layout.driven)
+            layout.onward.append([graph.eliminate(k) for k in order])
+        else:
+            layout.onward.append([])
+        layout.origins.append(origin)
+        layout.ends.append((graph.slot(segment.after, segment.after), graph.slot(segment.after, origin)))
 
 
 def _ties(segments: list[Segment]) -> list[list[tuple[int, int, int]]]:

@@ -63,7 +63,8 @@ class Recorder:
             self._segment.transfers.append(Transfer(self._part(part, "gm", "", value), output, lower, plus, minus))
 
     def amplifier(self, node: int, plus: int, minus: int, gain: Value) -> None:
-        self._segment.drives.append(Drive(node, plus, minus, self._part(f"gain of {self.names[node]}", "gain", "", gain)))
+        part = self._part(f"gain of {self.names[node]}", "gain", "", gain)
+        self._segment.drives.append(Drive(node, plus, minus, part))
 
     def lag(self, part: str, node: int, tau: Value) -> None:
         self._segment.storages.append(Storage(self._part(part, "tau", "high", tau), node))

@@ -26,7 +26,7 @@ class Step:
     takes        the parent's own row takes the branch's current
     near         neighbours at that moment
     cols, col_slots        columns j with the slot of (k, j); the parent's is the last of them where there is one
-    rows, row_slots        rows i with the slot of (i, k); those behind all nodes only sum currents (placing.balance_rows)
+    rows, row_slots        rows i with the slot of (i, k); numbers behind the nodes' are rows that only sum currents
     targets                for each row i the slots of (i, j), j by `cols`
     parent_slots           slots of (b's row of currents, j), j by `cols`; empty where nobody sums them
     """
@@ -95,7 +95,8 @@ class Graph:
         targets = tuple(tuple(self.enter(i, j) for j in cols) for i in rows)
         sums = self.balance[parent] if parent != GROUND else -1
         parent_slots = tuple(self.enter(sums, j) for j in cols) if sums >= 0 else ()
-        return Step(k, diag, branch, parent, parent != GROUND and sums == parent, self._close_ranks(k), tuple(cols), tuple(col_slots), rows,
+        takes = parent != GROUND and sums == parent
+        return Step(k, diag, branch, parent, takes, self._close_ranks(k), tuple(cols), tuple(col_slots), rows,
                     row_slots, targets, parent_slots)
 
     def _use_tie(self, k: int) -> tuple[int, int]:
@@ -116,8 +117,8 @@ class Graph:
         return tuple(sorted(near))
 
 
-def leaves_first(nodes: list[int], ties: list[tuple[int, int]], last: int) -> list[int]:
-    """An order in which every node has at most one unused series branch when its turn comes.
+def leaves_first(nodes: list[int], ties: list[tuple[int, int]], last: int, driven: list[bool]) -> list[int]:
+    """An order in which every node has at most one unused series branch when its turn comes, a driven one none.
 
     nodes are those to eliminate, ties the ends of the series branches (to other nodes or ground as well);
     `last` is taken as late as the branches allow.
@@ -129,7 +130,8 @@ def leaves_first(nodes: list[int], ties: list[tuple[int, int]], last: int) -> li
                 ends[a].append(b)
     result: list[int] = []
     while ends:
-        k = min((n for n, others in ends.items() if len(others) <= 1), key=lambda n: (n == last, -n))
+        free = (k for k, others in ends.items() if len(others) <= (0 if driven[k] else 1))
+        k = min(free, key=lambda n: (n == last, -n))
         for other in ends.pop(k):
             if other in ends:
                 ends[other].remove(k)

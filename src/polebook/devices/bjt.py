@@ -6,7 +6,7 @@ Hybrid-pi model as in the textbooks; which formula stands for which figure is fi
 from __future__ import annotations
 
 from polebook.devices.missing import Lack, settle
-from polebook.devices.num import TWO_PI, Reading, Value, floor_at, power, thermal_voltage
+from polebook.devices.num import TWO_PI, Reading, Value, floor_at, power, ratio, thermal_voltage
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
 from polebook.param import Param
 
@@ -25,7 +25,7 @@ PARAMS = (
     Param("built_in", "voltage", "built-in voltage of the collector junction", default="0.75"),
     Param("c_be0", "capacitance", "depletion part of cpi", sign="nonnegative", default="0"),
     Param("ccs", "capacitance", "collector to ground (substrate, case)", role="high", sign="nonnegative"),
-    Param("vbe", "voltage", "base-emitter voltage in use; absent: 0.65 V at 25 °C, less 2 mV a kelvin"),
+    Param("vbe", "voltage", "base-emitter voltage at 25 °C, falling by 2 mV a kelvin", default="0.65"),
     Param("vce_sat", "voltage", "collector-emitter voltage at saturation", sign="nonnegative", default="0.2"),
     Param("flicker_corner", "frequency", "corner of the base current's flicker noise", sign="nonnegative"),
     Param("gm", "transconductance", "transconductance at the operating point"),
@@ -38,9 +38,9 @@ PARAMS = (
 
 
 def base_emitter_voltage(card: Reading, celsius: Value) -> Value:
-    """vbe in volts, written as for an npn: the card's, else 0.65 V at 25 °C less 2 mV a kelvin (common practice)."""
+    """vbe in volts, written as for an npn: the card's (0.65 V) at 25 °C, less 2 mV a kelvin (common practice)."""
     vbe = card("vbe")
-    return 0.65 - 0.002 * (celsius - 25.0) if vbe is None else vbe
+    return (0.65 if vbe is None else vbe) - 0.002 * (celsius - 25.0)
 
 
 def current_gain(card: Reading) -> Value | None:
@@ -121,7 +121,7 @@ def _input_resistance(card: Reading, gm: Value | None, lacks: list[Lack]) -> Val
     if beta is None:
         lacks.append(Lack("rpi", "beta", "rpi = beta/gm"))
         return None
-    return None if gm is None else beta / gm
+    return None if gm is None else ratio(beta, gm)
 
 
 def _output_resistance(card: Reading, current: Value | None, lacks: list[Lack]) -> Value | None:
@@ -131,7 +131,7 @@ def _output_resistance(card: Reading, current: Value | None, lacks: list[Lack]) 
     if current is None:
         lacks.append(Lack("ro", "current", "ro = early_voltage/ic"))
         return None
-    return early / current
+    return ratio(early, current)
 
 
 def _diffusion_capacitance(card: Reading, gm: Value | None, celsius: Value, lacks: list[Lack]) -> Value | None:

@@ -7,7 +7,7 @@ Both follow Id = k/2·u² with the overdrive u = Vgs - cut-off: for the mosfet c
 from __future__ import annotations
 
 from polebook.devices.missing import Lack, settle
-from polebook.devices.num import Reading, Value, floor_at, sqrt, step
+from polebook.devices.num import Reading, Value, floor_at, ratio, sqrt, step
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
 from polebook.param import Param
 
@@ -137,7 +137,7 @@ def _output_resistance(card: Reading, current: Value | None, lacks: list[Lack]) 
     if current is None:
         lacks.append(Lack("ro", "current", "ro = 1/(channel_slope·id)"))
         return None
-    return 1.0 / (slope * current)
+    return ratio(1.0, slope * current)
 
 
 def _difference(card: Reading, key: str, total: str, lacks: list[Lack]) -> Value | None:

@@ -58,3 +58,13 @@ def step(x: Value) -> Value:
     if isinstance(x, float | int | complex):
         return 1.0 if x.real > 0.0 else 0.0
     return (x.real > 0.0) * 1.0
+
+
+def ratio(a: Value, b: Value) -> Value:
+    """a/b, infinite where b is 0: a resistance that a device cut off does not have."""
+    if isinstance(b, float | int | complex):
+        return a / b if b != 0.0 else a.real * math.inf
+    import numpy as np
+
+    with np.errstate(divide="ignore"):
+        return np.divide(a, b)

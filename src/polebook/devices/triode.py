@@ -7,7 +7,7 @@ P = gm_ia/(1.5·gm_ia/gm)^1.5. Then gm goes with the cube root of ia, and mu sta
 from __future__ import annotations
 
 from polebook.devices.missing import Lack, settle
-from polebook.devices.num import Reading, Value, floor_at, power, sqrt
+from polebook.devices.num import Reading, Value, floor_at, power, ratio, sqrt
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
 from polebook.param import Param
 
@@ -76,7 +76,7 @@ def small_signal(card: Reading, current: Value | None) -> dict[str, Value]:
     if mu is None:
         lacks.append(Lack("ro", "mu", "ro = mu/gm"))
     else:
-        found["ro"] = None if gm is None else mu / gm
+        found["ro"] = None if gm is None else ratio(mu, gm)
     return settle({key: value for key, value in found.items() if value is not None}, lacks)
 
 

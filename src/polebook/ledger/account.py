@@ -13,10 +13,11 @@ from polebook.solve.fold import fold
 
 BUDGET_DB = 10.0 * log10(2.0)
 FORMULAS = (
-    Formula("nodes.lost_upper_db", "-20·log10(|A(f_a)|/|A|) of the line into the node, f_a the target edge, else the exact one",
-            "definition"),
+    Formula("nodes.lost_upper_db", "-20·log10(|A(f_a)|/|A|) of the line into the node; f_a is the target edge, "
+                                   "else the exact one", "definition"),
     Formula("nodes.lost_lower_db", "the same at the lower edge", "definition"),
-    Formula("nodes.allotted_upper_db", "the node's allot, else an even share of what is left of 10·log10(2) dB", "definition"),
+    Formula("nodes.allotted_upper_db", "the node's allot, else an even share of what is left of 10·log10(2) dB",
+            "definition"),
     Formula("account.upper.lost_db", "sum over the nodes: the chain's loss at f_a", "definition"),
     Formula("account.upper.left_db", "budget - lost", "definition"),
 )
@@ -37,7 +38,7 @@ class Account:
 
 
 def holding(of: Solution, split: dict[str, list[Bridge]]) -> set[str]:
-    """Stages that hold their input node: transimpedance ones, and those whose bridge resistor makes most of its load."""
+    """Stages that hold their input node: transimpedance, or with a bridge resistor that makes most of its load."""
     result = set()
     for segment in of.circuit.layout.segments[1:]:
         if segment.kind == "transimpedance" and segment.after != segment.before:

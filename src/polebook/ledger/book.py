@@ -6,7 +6,7 @@ from functools import cached_property
 from math import pi
 
 from polebook.chain.model import Chain
-from polebook.circuit import bias
+from polebook.circuit import bias_cautions
 from polebook.ledger import account as accounts
 from polebook.ledger.account import Account
 from polebook.ledger.cautions import cautions
@@ -128,7 +128,8 @@ class Ledger:
     @cached_property
     def cautions(self) -> list[Problem]:
         circuit = self.solution.circuit
-        return [*bias.cautions(circuit.plan, self.chain, circuit.points), *cautions(self.solution, self.judged)]
+        return [*bias_cautions.cautions(circuit.plan, self.chain, dict(circuit.points)),
+                *cautions(self.solution, self.judged)]
 
 
 def ledger(chain: Chain) -> Ledger:

@@ -24,8 +24,9 @@ def _safety(of: Solution) -> list[Problem]:
     if max(abs(rails[0]), abs(rails[1]), rails[0] - rails[1]) > TOUCH_V:
         result.append(_caution(
             of, "supply", "rails above 60 V d.c. can injure or kill",
-            "above 60 V d.c. bare parts must not be within reach (IEC 61140, EN 60204-1); capacitors stay charged after "
-            "the supply is off", "follow your local codes, and leave the work to people licensed for it where those ask it"))
+            "above 60 V d.c. bare parts must not be within reach (IEC 61140, EN 60204-1); capacitors stay charged "
+            "after the supply is off",
+            "follow your local codes, and leave the work to people licensed for it where those ask it"))
     if any(card.family == "triode" for card in of.chain.cards.values() if _used(of, card.name)):
         result.append(_caution(
             of, "supply", "valve stages run hot and at high voltage",
@@ -42,24 +43,29 @@ def _stability(of: Solution) -> Problem:
     right = of.winding.right
     if right is None:
         return _caution(of, "source", "stability could not be told",
-                        "the winding of the determinant came out no whole number, so edges and what rests on them are left out",
+                        "the winding of the determinant came out no whole number, so edges and what rests on them "
+                        "are left out",
                         "look for values many decades apart, or parts that all but cancel")
     return _caution(of, "source", "the chain is unstable",
-                    f"{right} of its poles {'has' if right == 1 else 'have'} a positive real part (winding count): it will "
-                    "oscillate, and it has no edges", "look at the loops: bridges, feedback, and what they are loaded with")
+                    f"{right} of its poles {'has' if right == 1 else 'have'} a positive real part (winding count): "
+                    "it will oscillate, and it has no edges",
+                    "look at the loops: bridges, feedback, and what they are loaded with")
 
 
 def _band(of: Solution) -> list[Problem]:
     band, constants = of.band, of.constants
     if not band.clean:
         return [_caution(of, "source", "no clean midband",
-                         "at no frequency does the whole network come within 3 dB of the midband gain, so there are no edges",
+                         "at no frequency does the whole network come within 3 dB of the midband gain, so that "
+                         "there are no edges",
                          "part the low-role and high-role corners, or look for an arm in the wrong role")]
     result = []
-    for name, estimate, exact in (("upper", constants.upper_hz, band.upper_hz), ("lower", constants.lower_hz, band.lower_hz)):
+    ends = (("upper", constants.upper_hz, band.upper_hz), ("lower", constants.lower_hz, band.lower_hz))
+    for name, estimate, exact in ends:
         if estimate is not None and exact is not None and abs(estimate / exact - 1.0) > BLIND:
             result.append(_caution(
-                of, "source", f"the {name}-edge estimate from time constants is {estimate / exact:.2g} times the exact edge",
+                of, "source",
+                f"the {name}-edge estimate from time constants is {estimate / exact:.2g} times the exact edge",
                 "the sum of time constants is blind to complex poles, and to corners that lie together",
                 "go by the exact edge"))
     return result

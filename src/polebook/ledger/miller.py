@@ -7,8 +7,8 @@ from dataclasses import dataclass
 from polebook.ledger.formula import Formula
 from polebook.ledger.solution import Solution
 
-MILLER = "J. M. Miller, Dependence of the input impedance of a three-electrode vacuum tube upon the load in the plate " \
-         "circuit, Scientific Papers of the Bureau of Standards 15, 1920 (from memory)"
+MILLER = "J. M. Miller, Dependence of the input impedance of a three-electrode vacuum tube upon the load in the " \
+         "plate circuit, Scientific Papers of the Bureau of Standards 15, 1920 (from memory)"
 FORMULAS = (
     Formula("bridges.k", "K = V(output side)/V(input side), loaded, at midband", MILLER),
     Formula("bridges.at_input", "C·(1 - K), or R/(1 - K)", MILLER),
@@ -54,14 +54,13 @@ def halves(type_: str, value: float, k: float | None) -> tuple[float | None, flo
     """(at the input, at the output) of a bridging C (F) or R (Ω) with the gain K across it; exact where K is taken."""
     if k is None:
         return None, None
-    shares = (1.0 - k, 1.0 - 1.0 / k if k else None)
-    result = []
-    for share in shares:
-        if share is None or abs(share) < NOTHING:
-            result.append(None)
-        else:
-            result.append(value * share if type_ == "C" else value / share)
-    return result[0], result[1]
+    return _half(type_, value, 1.0 - k), _half(type_, value, 1.0 - 1.0 / k) if k else None
+
+
+def _half(type_: str, value: float, share: float) -> float | None:
+    if abs(share) < NOTHING:
+        return None
+    return value * share if type_ == "C" else value / share
 
 
 def leading(of_stage: list[Bridge]) -> Bridge | None:

@@ -11,8 +11,8 @@ from polebook.solve.fold import fold
 from polebook.solve.transfer import adjoint, branch_currents, voltages
 from polebook.stages.stamper import GROUND
 
-HOMOGENEITY = "implicit derivative of |H(f)| = |gain|/sqrt 2; all C, L and tau times λ scale every f by 1/λ, so that the " \
-              "shares sum to 1 (Euler's theorem on homogeneous functions)"
+HOMOGENEITY = "implicit derivative of |H(f)| = |gain|/sqrt 2; all C, L and tau times λ scale every f by 1/λ, so " \
+              "that the shares sum to 1 (Euler's theorem on homogeneous functions)"
 FORMULAS = (
     Formula("parts.owns_upper", "-d ln f_H/d ln X of the exact upper edge", HOMOGENEITY),
     Formula("parts.owns_lower", "-d ln f_L/d ln X of the exact lower edge", HOMOGENEITY),
@@ -64,13 +64,11 @@ def branch_changes(net: Network, number: int, s: complex) -> list[tuple[int, com
     reactive = [index for group in branch.groups for index in group if net.layout.parts[index].type != "R"]
     if not reactive:
         return result
-    groups = []
-    for group in branch.groups:
-        groups.append([(index, _admittance(net, index, s)) for index in group])
-    total = sum(1.0 / sum(y for _, y in group) for group in groups)
-    for group in groups:
-        z = 1.0 / sum(y for _, y in group)
-        for index, y in group:
+    groups = [[(index, _admittance(net, index, s)) for index in group] for group in branch.groups]
+    total = sum(1.0 / sum(y for _, y in parallel) for parallel in groups)
+    for parallel in groups:
+        z = 1.0 / sum(y for _, y in parallel)
+        for index, y in parallel:
             kind = net.layout.parts[index].type
             if kind != "R":
                 change = -z * z * (y if kind == "C" else -y)

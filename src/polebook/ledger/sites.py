@@ -15,8 +15,8 @@ from polebook.stages.stamper import GROUND
 SHRINKAGE = "product of buffered one-pole stages (P. R. Gray, P. J. Hurst, S. H. Lewis and R. G. Meyer, Analysis and " \
             "Design of Analog Integrated Circuits, 5th ed., Wiley, eq. 7.128 for two; from memory)"
 FORMULAS = (
-    Formula("nodes.pole_hz", "f_S = 1/(2·pi·tau_S), tau_S = sum of R_i·C_i over the site's nodes, C_i with its Miller halves",
-            "definition"),
+    Formula("nodes.pole_hz", "f_S = 1/(2·pi·tau_S), tau_S = sum of R_i·C_i over the site's nodes, C_i with its "
+                             "Miller halves", "definition"),
     Formula("nodes.ohm", "driving-point resistance at the interstage node, midband", "definition"),
     Formula("nodes.farad", "tau_S/R", "definition"),
     Formula("nodes.room", "f_S/(f_a/sqrt(2^(1/n) - 1)), n the interstage sites with a pole", SHRINKAGE),
@@ -122,7 +122,7 @@ class _Lumped:
             if node == GROUND or group == self.root[GROUND]:
                 continue
             name = self.names[node]
-            if farad <= 0.0 or abs(volts[node]) < FAINT * loudest[name]:
+            if abs(volts[node]) < FAINT * loudest[name]:
                 left_out.setdefault(name, []).append(layout.names[node])
             else:
                 taus[name] = taus.get(name, 0.0) + self.ohm(node) * farad
@@ -134,7 +134,11 @@ class _Lumped:
         return taus, left_out
 
     def _farads(self, volts: list[float]) -> dict[int, float]:
-        """Capacitance of each midband node to ground, with the Miller halves of what floats; 0 where it hears nothing."""
+        """Capacitance of each midband node to ground, with the Miller halves of what floats; 0 where it hears nothing.
+
+        A half below zero (the output half of a follower's bridge) is of no use for an estimate and is left away, save
+        the input half of a bridge: so a resistor of a microhm between two nodes of a site moves nothing.
+        """
         layout, net, root = self.of.circuit.layout, self.of.circuit.network, self.root
         farads: dict[int, float] = {}
         for branch in layout.branches:
@@ -143,8 +147,10 @@ class _Lumped:
                 continue
             for own, other in ((branch.i, branch.j), (branch.j, branch.i)):
                 if root[own] != root[other] and own != GROUND:
-                    share = net.values[index] * (1.0 - volts[other] / volts[own]) if volts[own] else 0.0
-                    farads[root[own]] = farads.get(root[own], 0.0) + share
+                    share = 1.0 - volts[other] / volts[own] if volts[own] else 0.0
+                    if share < 0.0 and not (branch.bridge and own == branch.i):
+                        share = 0.0
+                    farads[root[own]] = farads.get(root[own], 0.0) + net.values[index] * share
         return farads
 
 

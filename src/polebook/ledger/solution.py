@@ -71,7 +71,7 @@ class Solution:
 
     @cached_property
     def winding(self) -> Winding:
-        return winding(self.sweep)
+        return winding(self.sweep, self.circuit.layout)
 
     @cached_property
     def band(self) -> Band:

@@ -44,7 +44,8 @@ class Got:
 
 def targets(chain: Chain, got: Got) -> list[Target]:
     """One for each target key that the file states."""
-    return [judge(chain, name, chain.numbers[f"target.{name}"], got) for name in NAMES if f"target.{name}" in chain.given]
+    stated = [name for name in NAMES if f"target.{name}" in chain.given]
+    return [judge(chain, name, chain.numbers[f"target.{name}"], got) for name in stated]
 
 
 def judge(chain: Chain, name: str, want: float, got: Got) -> Target:

@@ -9,8 +9,8 @@ from math import exp, log, sqrt
 import numpy as np
 
 from polebook.circuit.views import Network
-from polebook.solve.root import Function, bracketed_maximum, bracketed_root
 from polebook.solve.fold import fold
+from polebook.solve.root import Function, bracketed_maximum, bracketed_root
 from polebook.solve.sweep import Array, Sweep, relative, relative_at
 
 HALF_POWER = -0.5 * log(2.0)  # neper
@@ -101,5 +101,6 @@ def _peak(at: Function, x: Array, loss: Array) -> float:
     best = top
     for k in np.nonzero(loss > top - 0.1)[0]:
         if 0 < k < len(loss) - 1 and loss[k] >= max(loss[k - 1], loss[k + 1]):
-            best = max(best, bracketed_maximum(at, tuple(x[k - 1:k + 2].tolist()), tuple(loss[k - 1:k + 2].tolist()))[1])
+            a, b, c = x[k - 1:k + 2].tolist()
+            best = max(best, bracketed_maximum(at, (a, b, c), tuple(loss[k - 1:k + 2].tolist()))[1])
     return max(0.0, best * DECIBEL)

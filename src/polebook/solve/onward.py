@@ -26,7 +26,6 @@ def onward(net: Network) -> list[Open]:
     a: list[Value] = [0.0] * layout.slots
     entries = entry_values(net, 0.0, "midband")
     series = series_values(net, 0.0, "midband")
-    origin = layout.origin
     result = [_source(net, a, entries, series)]
     for index in range(1, len(layout.segments)):
         segment = layout.segments[index]
@@ -37,6 +36,7 @@ def onward(net: Network) -> list[Open]:
             taken = [eliminate(a, step, series) for step in layout.onward[index]]
         except NotHeld:
             raise NotHeld(segment.before) from None
+        origin = layout.origins[index]
         own, reach = (a[slot] for slot in layout.ends[index])
         driven = layout.driven[segment.after] or segment.after == origin
         output = 0.0 if driven else _ohm(own)

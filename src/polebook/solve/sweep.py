@@ -20,6 +20,7 @@ POINTS_A_DECADE = 12
 TURN = 1.0  # rad between neighbours
 LEAP = 1.5  # neper between neighbours
 ROUNDS = 48
+NARROW = 1e-13  # relative distance at which neighbours are left as they are
 
 
 @dataclass(slots=True)
@@ -81,7 +82,7 @@ def wrapped(angles: Array) -> Array:
 def _coarse(s: Sweep) -> NDArray[np.bool_]:
     turned = (np.abs(wrapped(s.angles)) > TURN).any(axis=0) | (np.abs(wrapped(s.turns)) > TURN).any(axis=0)
     leapt = (np.abs(np.diff(s.sizes, axis=-1)) > LEAP).any(axis=0)
-    return (turned | leapt) & (np.diff(s.hz) > 1e-13 * s.hz[1:])
+    return (turned | leapt) & (np.diff(s.hz) > NARROW * s.hz[1:])
 
 
 def _merge(a: Sweep, b: Sweep) -> Sweep:

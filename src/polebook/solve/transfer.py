@@ -1,7 +1,8 @@
 """Node voltages of a folded network, and its adjoint: what a current into any node does at the output.
 
 Between them they give the derivative of the transfer to any element by one product (the adjoint network;
-S. W. Director and R. A. Rohrer, 1969, from memory):  dH = -(u_i - u_j)·(v_i - v_j)·dy  for an admittance y between i and j.
+S. W. Director and R. A. Rohrer, 1969, from memory): for an admittance y between i and j
+dH = -(u_i - u_j)·(v_i - v_j)·dy, for an impedance z in a branch that carries r and q in the two solutions dH = r·q·dz.
 """
 
 from __future__ import annotations

@@ -1,9 +1,9 @@
 """Stability by the winding of the determinant: no pole is computed for it, and no eigenvalue trusted.
 
-The determinant D(s) of the network is, up to factors without zeros on the right, the product of the pivots of
-the elimination. With the turn Δ of arg D(jω) from 0+ to infinity and D growing as ω^n0 below and ω^n1 above,
-the number of zeros with positive real part is ((n1 - n0) - Δ/(π/2))/2 (argument principle). n1 - n0 is the
-number of finite poles that are not at s = 0.
+The determinant D(s) of the network is the product of the pivots of the elimination and of the denominators of
+its branches. With the turn Δ of arg D(jω) from 0+ to infinity and D growing as ω^n0 below and ω^n1 above, the
+number of zeros with positive real part is ((n1 - n0) - Δ/(π/2))/2 (argument principle), and n1 - n0 the number
+of finite poles that are not at s = 0. The denominators are passive, so that they add to both alike.
 """
 
 from __future__ import annotations
@@ -11,25 +11,52 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import log, pi
 
-from polebook.solve.sweep import Sweep, wrapped
+import numpy as np
+
+from polebook.circuit.layout import Layout
+from polebook.solve.sweep import NARROW, Array, Sweep, wrapped
 
 
 @dataclass(frozen=True, slots=True)
 class Winding:
-    """finite poles not at 0, right: how many have a positive real part, None where the count came out no integer."""
+    """finite: poles not at 0; right: how many have a positive real part. None where the count is no whole number."""
 
     finite: int | None
     right: int | None
 
 
-def winding(s: Sweep) -> Winding:
+def winding(s: Sweep, layout: Layout) -> Winding:
     """Counts poles from a sweep that reaches well below and above all of them."""
-    turn = float(wrapped(s.angles).sum()) / (pi / 2)
+    turn = float(_turns(s).sum()) / (pi / 2)
     total = s.sizes.sum(axis=0)
     below = float(total[1] - total[0]) / log(s.hz[1] / s.hz[0])
     above = float(total[-1] - total[-2]) / log(s.hz[-1] / s.hz[-2])
-    finite = above - below
-    right = (finite - turn) / 2
-    if abs(finite - round(finite)) > 0.1 or abs(right - round(right)) > 0.1 or round(right) < 0:
+    grown = above - below
+    right = (grown - turn) / 2
+    whole = abs(grown - round(grown)) < 0.1 and abs(right - round(right)) < 0.1
+    if not whole or round(right) < 0:
         return Winding(None, None)
-    return Winding(round(finite), round(right))
+    return Winding(round(grown) + _hidden(layout), round(right))
+
+
+def _turns(s: Sweep) -> Array:
+    """Turn of arg D between neighbours, rad.
+
+    Where a pivot still turns within a hair's breadth, a zero of it lies on the axis and a pole of another one with
+    it (a lossless trap): only their sum has a direction there.
+    """
+    each = wrapped(s.angles)
+    narrow = np.diff(s.hz) <= 4 * NARROW * s.hz[1:]
+    result: Array = each.sum(axis=0)
+    result[narrow] -= 2 * pi * np.round(result[narrow] / (2 * pi))
+    return result
+
+
+def _hidden(layout: Layout) -> int:
+    """Degree of the denominators of branches of several parts, roots at s = 0 left aside."""
+    count = 0
+    for branch in layout.branches:
+        types = [layout.parts[index].type for group in branch.groups for index in group]
+        if len(types) > 1:
+            count += sum(kind in "CL" for kind in types)
+    return count

@@ -75,7 +75,15 @@ def _amplifier(st: Stamper, figures: Figures, p: int, n: int, o: int) -> None:
 
 
 def _output(st: Stamper, given: Given, o: int) -> int:
-    out = st.series("out", o, "out", [("r_out", "R", given.number("r_out"))])
+    """r_out from o to the stage's output; o may be driven, then r_out is an admittance from it."""
+    r_out = given.number("r_out")
+    if st.stands(given.figures.get("rout")):
+        out = st.series("out", o, "out", [("r_out", "R", r_out)])
+    elif st.stands(r_out):
+        out = st.node("out", "out")
+        st.resistor("r_out", o, out, r_out)
+    else:
+        out = o
     output_capacitance(st, given, out)
     return out
 

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import errno
 import os
-import secrets
 import stat
 from contextlib import suppress
 from dataclasses import dataclass
@@ -87,7 +86,7 @@ def save(path: str | os.PathLike[str], text: str) -> None:
         target = os.path.realpath(name)
         status = _existing(name, target)
         folder, base = os.path.split(target)
-        temporary = os.path.join(folder, f".{base[:100]}.{secrets.token_hex(6)}.new")
+        temporary = os.path.join(folder, f".{base[:100]}.{os.urandom(6).hex()}.new")
         _write(temporary, text.encode("utf-8"), status)
         os.replace(temporary, target)
         temporary = ""

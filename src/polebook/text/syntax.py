@@ -66,12 +66,6 @@ class _Told:
     at: int = -1
 
 
-def place_of(text: str, at: int, file: str, width: int = 1) -> Place:
-    """Character `at` of `text` as a place."""
-    begin = text.rfind("\n", 0, at) + 1
-    return Place(file, text.count("\n", 0, at) + 1, at - begin + 1, width)
-
-
 def syntax_problem(text: str, file: str, error: str) -> Problem:
     """The problem that `error`, the message of a TOML parser on `text`, is about."""
     lines = [line.removesuffix("\r") for line in text.split("\n")]
@@ -85,7 +79,7 @@ def syntax_problem(text: str, file: str, error: str) -> Problem:
     fault = _Fault(message, text, lines, min(line, len(lines)), column)
     told = next((told for tell in _TELLERS if (told := tell(fault))), None) or _unknown(fault)
     if told.at >= 0:
-        place = place_of(text, told.at, file, told.width)
+        place = Place.of(text, told.at, file, told.width)
     else:
         width = told.width or (1 if told.column else len(fault.token))
         place = Place(file, fault.line, told.column or fault.column, max(width, 1))
@@ -148,7 +142,7 @@ def _earlier(fault: _Fault) -> int:
 
 def _string(fault: _Fault) -> _Told | None:
     """A text that is not closed, or holds what a text can't."""
-    ends = ("Unterminated string", "Expected \"'", "Illegal character '\\n'")
+    ends = ("Unterminated string", "Expected \"'", "Illegal character '\\n'", "Found invalid character '\\n'")
     if fault.message.startswith(ends) and (match := _open_string(fault.text)):
         if match[0].startswith(('"""', "'''")):
             return _Told("this text is never closed", f"it ends at the next {match[0][:3]}, and there is none",
@@ -160,7 +154,8 @@ def _string(fault: _Fault) -> _Told | None:
     if fault.message.startswith(("Illegal character", "Found invalid character")):
         name = fault.message.rpartition("character ")[2].strip("'")
         return _Told(f"a control character, {name}, stands here",
-                     "a chain file is plain text with tabs and line ends only", "take the character out")
+                     "a chain file is plain text with tabs and line ends only", "take the character out",
+                     fault.column)
     if fault.message.startswith("Unescaped '\\'"):
         return _Told("a backslash in double quotes begins an escape, and this is none",
                      'known are \\n \\t \\" \\\\ \\uXXXX',

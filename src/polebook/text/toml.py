@@ -6,7 +6,6 @@ import tomllib
 from typing import Any
 
 from polebook.problem import Place, Problem
-from polebook.text.syntax import place_of, syntax_problem
 from polebook.text.tokens import ROUGH
 
 LARGEST = 512 * 1024  # bytes of UTF-8
@@ -21,6 +20,8 @@ def read(text: str, file: str) -> tuple[dict[str, Any] | None, list[Problem]]:
     try:
         return tomllib.loads(text), []
     except ValueError as error:  # a syntax fault, or an integer with thousands of digits
+        from polebook.text.syntax import syntax_problem  # deferred: saves its patterns' 3 ms where there is none
+
         return None, [syntax_problem(text, file, str(error))]
 
 
@@ -31,7 +32,7 @@ def over_limits(text: str, file: str) -> Problem | None:
         return too_large(file, size)
     if "\0" in text:
         return Problem(
-            place_of(text, text.index("\0"), file), "the text holds a NUL character",
+            Place.of(text, text.index("\0"), file), "the text holds a NUL character",
             "a chain file is plain text, and a NUL never stands in one", "take it out, or save the file as UTF-8 again",
         )
     if text.startswith("\ufeff"):
@@ -61,7 +62,7 @@ def _over_nested(text: str, file: str) -> Problem | None:
             dotted = False
             if parts > MOST_PARTS:
                 return Problem(
-                    place_of(text, match.start(), file, len(match[0])), f"a key of more than {MOST_PARTS} dotted parts",
+                    Place.of(text, match.start(), file, len(match[0])), f"a key of more than {MOST_PARTS} dotted parts",
                     "no key of a chain file has over three, and long ones can take a parser seconds",
                     "write the key with fewer dots, or put the text in quotes if it is a value",
                 )
@@ -73,7 +74,7 @@ def _over_nested(text: str, file: str) -> Problem | None:
             depth += 1
             if depth > DEEPEST:
                 return Problem(
-                    place_of(text, match.start(), file), f"brackets are nested over {DEEPEST} deep",
+                    Place.of(text, match.start(), file), f"brackets are nested over {DEEPEST} deep",
                     "nothing in a chain file needs over four, and deep nesting can take a parser seconds",
                     "close the brackets that are still open before this one",
                 )
