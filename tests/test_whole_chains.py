@@ -47,7 +47,10 @@ def test_there_are_chains_to_compare():
 
 @by_name(CHAINS + PUBLISHED_CHAINS)
 def test_every_figure(path):
-    wrong = [d for d in differences(program(path), independent(path)[1]) if not d.error <= d.limit]
+    theirs = dict(independent(path)[1])
+    if path in PUBLISHED_CHAINS:
+        del theirs["bias"]  # drawn for signals alone, without supplies
+    wrong = [d for d in differences(program(path), theirs) if not d.error <= d.limit]
     assert not wrong, "\n".join(map(str, wrong))
 
 

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
     from polebook.chain.model import Chain
-    from polebook.ledger.build import Ledger
+    from polebook.ledger.book import Ledger
 
 __version__ = "0.1.0"
 __all__ = ["__version__", "ledger_of", "load"]

@@ -141,7 +141,7 @@ class Oracle(Solved):
                 "ohm": None if storage else ohm,
                 "farad": tau / ohm if real and not storage else None,
                 "pole_hz": 1 / (2 * mp.pi * tau) if tau > 0 else None,
-                "real": real,
+                "real": real or storage,
             }
         return out
 

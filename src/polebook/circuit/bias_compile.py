@@ -99,5 +99,7 @@ def solution(plan: Compiled, get: Get) -> Solution:
         Nonlinear(u, i, characteristic(device.family), at.factor)
         for device, at, u, i in zip(group.devices, values.laws, cols.drive, cols.current, strict=True) if u >= 0
     ]
-    found, converged = solve_rows(_rows(group, cols, plan.choice, values), plan.order, devices, len(group.nodes))
+    floors = {column: 1.0 for column in cols.voltage.values()}
+    floors.update((column, 1.0 / ohms) for column, ohms in zip(cols.branch, values.branches, strict=True))
+    found, converged = solve_rows(_rows(group, cols, plan.choice, values), plan.order, devices, floors)
     return Solution(plan, values, found, converged)

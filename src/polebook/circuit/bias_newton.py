@@ -27,7 +27,7 @@ class Nonlinear:
 
 
 def solve_rows(rows: list[Row], order: Order, devices: Sequence[Nonlinear],
-               voltages: int) -> tuple[dict[int, Value], Value]:
+               floors: dict[int, Value]) -> tuple[dict[int, Value], Value]:
     """Column -> value, and whether every row holds to 1e-12 of its terms (a bool; an array of them for arrays).
 
     A fixed number of steps, no branch on a value, so that complex steps and arrays pass. Rows are used up.
@@ -45,7 +45,7 @@ def solve_rows(rows: list[Row], order: Order, devices: Sequence[Nonlinear],
             if column != RHS and column != pivot.column:
                 total = total - value * found[column]
         found[pivot.column] = total / row[pivot.column]
-    return found, holds(kept, found, voltages)
+    return found, holds(kept, found, floors)
 
 
 def newton(rows: list[Row], order: Order, devices: Sequence[Nonlinear]) -> dict[int, Value]:
@@ -113,10 +113,11 @@ def _gauss(matrix: list[list[Value]], right: list[Value]) -> list[Value]:
     return right
 
 
-def holds(rows: list[Row], found: dict[int, Value], voltages: int) -> Value:
-    """Whether every row's terms cancel to 1e-12 of their sum, a voltage counting as a volt more than it is.
+def holds(rows: list[Row], found: dict[int, Value], floors: dict[int, Value]) -> Value:
+    """Whether every row's terms cancel to 1e-12 of their sum, an unknown counting as its floor more than it is.
 
-    The first `voltages` columns are voltages. Without that volt a network in which nothing flows could not hold.
+    Without the floors (a volt, and what it drives through a resistor) a network in which nothing flows could
+    not hold.
     """
     result: Value = True
     for row in rows:
@@ -127,7 +128,7 @@ def holds(rows: list[Row], found: dict[int, Value], voltages: int) -> Value:
                 term = value * found[column]
                 rest = rest + term
                 size = size + abs(term)
-                if column < voltages:
-                    size = size + abs(value)
+                if column in floors:
+                    size = size + abs(value * floors[column])
         result = result & (abs(rest) <= RESIDUAL * size)
     return result

@@ -12,6 +12,21 @@ from polebook.stages.stamper import GROUND
 
 
 @dataclass(slots=True)
+class Onward:
+    """One segment's part of the way from source to load.
+
+    origin     the known node, of 1 V
+    end        slots of (after, after) and (after, origin)
+    resistive  (series branch, slot of (k, k), slot of (k, origin)) of resistors that leave the known node
+    """
+
+    steps: list[Step] = field(default_factory=list)
+    origin: int = GROUND
+    end: tuple[int, int] = (-1, -1)
+    resistive: list[tuple[int, int, int]] = field(default_factory=list)
+
+
+@dataclass(slots=True)
 class Layout:
     """Topology, once. Lists by segment hold the source first, then each stage, then the load.
 
@@ -19,11 +34,9 @@ class Layout:
     after     interstage node behind each segment; a wire repeats the one before it
     branches  every branch of every segment, in order
     steps     elimination from load to source, by segment
-    onward    elimination from source to load at midband, by segment (none for the source)
+    onward    elimination from source to load at midband, by segment
     diagonal  slot of the admittance at each `after`
     seed      slots of (n0, n0) and (n0, emf) that start the way onward; -1 where n0 is the EMF itself
-    origins   the known node that each segment's way onward starts from
-    ends      slots of (after, after) and (after, origin) on the way onward, by segment
     """
 
     recorder: Recorder
@@ -33,11 +46,9 @@ class Layout:
     stamps: Stamps
     slots: int
     steps: list[list[Step]]
-    onward: list[list[Step]]
+    onward: list[Onward]
     diagonal: list[int]
     seed: tuple[int, int]
-    ends: list[tuple[int, int]] = field(default_factory=list)
-    origins: list[int] = field(default_factory=list)
 
     @property
     def parts(self) -> list[Part]:
@@ -97,19 +108,52 @@ def _plan_onward(layout: Layout, graph: Graph, entries: list[list[tuple[int, int
     if first != origin:
         layout.seed = (graph.enter(first, first), graph.enter(first, origin))
     for index, segment in enumerate(layout.segments):
-        if index and layout.driven[segment.before]:
-            origin = segment.before
+        onward = Onward()
         if index:
-            _stand(graph, entries[index], ties[index])
-            nodes = [k for k in segment.nodes if k != segment.after]
-            if segment.after != segment.before and segment.before != origin:
-                nodes.append(segment.before)
-            order = leaves_first(nodes, _ends(ties[index]), segment.before, layout.driven)
-            layout.onward.append([graph.eliminate(k) for k in order])
+            if layout.driven[segment.before]:
+                origin = segment.before
+                graph.forget_row(origin)
+            origin = _plan_segment(layout, graph, segment, (entries[index], ties[index]), origin, onward)
+        onward.origin = origin
+        onward.end = (graph.slot(segment.after, segment.after), graph.slot(segment.after, origin))
+        layout.onward.append(onward)
+
+
+def _plan_segment(layout: Layout, graph: Graph, segment: Segment,
+                  stands: tuple[list[tuple[int, int]], list[tuple[int, int, int]]], origin: int, onward: Onward) -> int:
+    """Steps of one segment; returns the known node that is left.
+
+    A known node takes no part in the tree of series branches: a resistor that leaves it is carried as an admittance,
+    a short (a coupling at midband) makes the node behind it the known one.
+    """
+    entries, ties = stands
+    nodes = [k for k in segment.nodes if k != segment.after]
+    if segment.after != segment.before and segment.before != origin:
+        nodes.append(segment.before)
+    passed: list[int] = []
+    leaving = [tie for tie in ties if origin in tie[1:]]
+    while leaving:
+        branch, i, j = leaving.pop()
+        other = j if i == origin else i
+        if _shorted(layout, branch):
+            passed.append(origin)
+            nodes = [k for k in (*nodes, origin) if k != other]
+            origin = other
+            leaving = [tie for tie in ties if origin in tie[1:] and tie[0] != branch]
         else:
-            layout.onward.append([])
-        layout.origins.append(origin)
-        layout.ends.append((graph.slot(segment.after, segment.after), graph.slot(segment.after, origin)))
+            ties = [tie for tie in ties if tie[0] != branch]
+            onward.resistive.append((branch, graph.enter(other, other), graph.enter(other, origin)))
+    _stand(graph, entries, ties)
+    driven = [flag and k not in passed for k, flag in enumerate(layout.driven)]
+    order = leaves_first(nodes, _ends(ties), segment.before, driven)
+    onward.steps = [graph.eliminate(k) for k in order]
+    return origin
+
+
+def _shorted(layout: Layout, branch: int) -> bool:
+    """Whether a series branch is a short at midband."""
+    parts = [layout.parts[index] for index in layout.branches[branch].groups[0]]
+    return any((part.type, part.role) in (("C", "low"), ("L", "high")) for part in parts)
 
 
 def _ties(segments: list[Segment]) -> list[list[tuple[int, int, int]]]:

@@ -69,6 +69,11 @@ class Graph:
         """Slot of the entry (i, j), whether it stands or not."""
         return self.slots.setdefault((i, j), len(self.slots))
 
+    def forget_row(self, k: int) -> None:
+        """The row of a node whose voltage is taken as known."""
+        for j in self.columns.pop(k, set()):
+            self.rows[j].discard(k)
+
     def tie(self, branch: int, i: int, j: int) -> None:
         """A series branch between two nodes (either may be ground)."""
         for a, b in ((i, j), (j, i)):

@@ -79,11 +79,11 @@ def seen(net: Network, z: Inverse, number: int, branch: Branch, group: tuple[int
     if branch.single and not branch.series and part.type == "C":
         return float(z.at(branch.i, branch.j))
     around = z.loops.get(number) if branch.series else _loop(net, z, branch, index)
-    if around is None:
-        return None
     others = admittances(net, branch, tuple(k for k in group if k != index), 0.0, "midband")
     if others is None:
         return None  # another part of the group is a short
+    if around is None:
+        return 1.0 / others if others else None  # only its neighbours in the group close a path
     shorted = (part.type == "C") == (part.role == "low")
     rest = around if shorted or not others else around - 1.0 / others
     total = others + (1.0 / rest if rest else inf)

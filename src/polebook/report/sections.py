@@ -28,7 +28,12 @@ def heading(document: Document, file: str, look: Look) -> list[str]:
 
 def unstable(document: Document, look: Look) -> list[str]:
     """Instability is told before any figure."""
-    if not document["overall"]["unstable"]:
+    unstable = document["overall"]["unstable"]
+    if unstable is None:
+        return paragraph(
+            "Whether the chain is stable could not be told: edges and what rests on them are left out.", look, "bad"
+        )
+    if not unstable:
         return []
     text = "The chain is unstable: it would oscillate. Edges, account and targets have no meaning."
     return paragraph(text, look, "bad")
@@ -96,7 +101,9 @@ def _how(document: Document, part: Entry) -> str:
     """The part's value, what it counts as where it bridges a stage, and its time constant."""
     text = value = _whole(show.eng(part["value"], show.UNIT_OF_TYPE[part["type"]]))
     bridge = bridge_of(document, part["stage"], part["part"])
-    if bridge is not None and bridge[1]["at_input"] is not None:
+    # where the stage holds its input node, what the part counts as there is huge and tells nothing
+    held = {line["name"] for line in entries(document, "lines") if line["transfer_ohm"] is not None}
+    if bridge is not None and bridge[1]["at_input"] is not None and part["stage"] not in held:
         at, split = bridge
         unit = show.UNIT_OF_TYPE[split["type"]]
         counts = _whole(show.eng(split["at_input"], unit))

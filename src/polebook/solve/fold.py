@@ -97,7 +97,7 @@ def eliminate(a: list[Value], step: Step, series: list[Value]) -> Taken:
     for x, slots in zip(a_ik, step.targets, strict=True):
         for slot, t_j in zip(slots, t, strict=True):
             a[slot] = a[slot] + x * t_j
-    if step.takes:
+    if step.parent_slots:
         for slot, x in zip(step.parent_slots, a_kj, strict=True):
             a[slot] = a[slot] + p * x
         last = step.parent_slots[-1]

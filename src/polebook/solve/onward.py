@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from polebook.circuit.elements import Segment
 from polebook.circuit.views import Network, entry_values, series_values
-from polebook.solve.fold import NotHeld, eliminate, local_voltages
+from polebook.solve.fold import NotHeld, Taken, eliminate, local_voltages
 from polebook.stages.stamper import GROUND, Value
 
 
@@ -32,23 +33,34 @@ def onward(net: Network) -> list[Open]:
         start, end = layout.stamps.ranges[index]
         for entry in range(start, end):
             a[layout.stamps.slot_of[entry]] += entries[entry]
+        way = layout.onward[index]
+        for branch, own_slot, reach_slot in way.resistive:
+            a[own_slot] += 1.0 / series[branch]
+            a[reach_slot] -= 1.0 / series[branch]
         try:
-            taken = [eliminate(a, step, series) for step in layout.onward[index]]
+            taken = [eliminate(a, step, series) for step in way.steps]
         except NotHeld:
             raise NotHeld(segment.before) from None
-        origin = layout.origins[index]
-        own, reach = (a[slot] for slot in layout.ends[index])
+        origin = way.origin
+        own, reach = (a[slot] for slot in way.end)
         driven = layout.driven[segment.after] or segment.after == origin
         output = 0.0 if driven else _ohm(own)
         if segment.after == segment.before:
             result.append(Open(1.0, output))
             continue
-        gain = None
-        if own != 0.0:
-            v = local_voltages(taken, {origin: 1.0, segment.after: -reach / own})
-            gain = v[segment.after] / v[segment.before]
-        result.append(Open(gain, output))
+        result.append(Open(_gain(segment, taken, origin, own, reach), output))
     return result
+
+
+def _gain(segment: Segment, taken: list[Taken], origin: int, own: float, reach: float) -> float | None:
+    """V(after)/V(before) with the known node at 1 V."""
+    known: dict[int, Value] = {origin: 1.0}
+    if segment.after != origin:
+        if own == 0.0:
+            return None
+        known[segment.after] = -reach / own
+    v = local_voltages(taken, known)
+    return float(v[segment.after] / v[segment.before])
 
 
 def _ohm(siemens: float) -> float | None:
