@@ -5,8 +5,7 @@ from __future__ import annotations
 import pytest
 
 from polebook.circuit import bias
-from polebook.circuit.bias_cautions import cautions
-from polebook.circuit.bias_missing import missing
+from polebook.circuit.bias import cautions, missing
 from tests.circuit.bias_cases import JFET, NMOS, NPN, OPAMP, PNP, TRIODE, chain
 
 DIVIDER = {"kind": "common-emitter", "device": "D", "couple": 1e-6, "rb1": 47e3, "rb2": 10e3, "re": 1100.0,

@@ -246,3 +246,43 @@ def test_long_direct_coupled_rows_are_solved(count):
         nodes[f"Q{k + 1}"] = (before, "p" if sign > 0 else "0", lower)
         before = lower
     agree(found, net, nodes)
+
+
+def test_what_nothing_settles_spoils_no_neighbour():
+    stages = [
+        {"kind": "common-emitter", "device": "A", "couple": 1e-6, "re": 1000.0, "rc": 1000.0},  # its base floats
+        {"kind": "emitter-follower", "device": "A", "re": 1000.0},
+        {"kind": "common-source", "device": "J", "couple": 1e-8, "rg": 1e6, "rs": 470.0, "rd": 2200.0},
+    ]
+    found = points(stages, {"A": NPN, "J": JFET})
+    assert found["Q1"].current is None and found["Q2"].current is None and found["Q2"].output_v == 12
+    assert found["Q3"].current > 0 and all(point.converged is True for point in found.values())
+
+
+def test_a_stated_neighbour_does_not_settle_a_floating_base():
+    stages = [
+        {"kind": "common-emitter", "device": "A", "couple": 1e-6, "re": 1000.0, "rc": 1000.0},
+        {"kind": "emitter-follower", "device": "A", "re": 1000.0, "ic": 5e-3},
+    ]
+    found = points(stages, {"A": NPN})
+    assert found["Q1"].current is None and found["Q1"].output_v is None
+    assert found["Q2"].control_v == pytest.approx(5e-3 * 151 / 150 * 1000 + 0.65, rel=1e-12)
+
+
+def test_ends_where_nothing_flows():
+    ladder = {"name": "L1", "kind": "ladder", "arms": [{"shunt_c": 1e-9}, {"series_r": 9240.0}, {"series_r": 3.3}]}
+    stage = {"kind": "common-base", "device": "B", "couple": 1e-6, "rc": 130.0, "re": 2e4}
+    assert points([stage, ladder], {"B": PNP})["Q1"].converged is True
+    dead = {"kind": "source-follower", "device": "M", "couple": 1e-8, "rg": 1e6}
+    fed = {"kind": "emitter-follower", "device": "A", "re": 1000.0}
+    found = points([dead, fed], {"M": NMOS, "A": NPN})
+    assert found["Q1"].current == 0 and found["Q1"].converged is True
+
+
+def test_a_large_feedback_resistor_beside_amperes():
+    stages = [
+        {"kind": "emitter-follower", "device": "B", "couple": 1e-6, "rb1": 4410.0, "re": 1730.0, "lower_to": "ground"},
+        {"kind": "common-emitter", "device": "A", "rb1": 35300.0, "rc": 12600.0, "rf": 591e3},
+    ]
+    found = points(stages, {"A": NPN, "B": PNP}, supply={"positive": 250, "negative": -12})
+    assert found["Q1"].converged is True and found["Q1"].lower_v == pytest.approx(0.65, rel=1e-13)

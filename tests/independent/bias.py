@@ -161,6 +161,7 @@ class DirectNetwork:
         self.fixed[out] = mp.mpf(number(stage["vout"])) if "vout" in stage else middle
         if kind == "block":
             self._r(a, GROUND, stage, "rin")
+            self._r(a, out, stage, "r_bridge")
         elif kind == "noninverting":
             self._r(a, GROUND, stage, "r_bias")
         elif kind == "inverting":

@@ -37,12 +37,6 @@ def _pivot(rows: Rows, count: dict[Hashable, set[Hashable]], live: set[Hashable]
 
 def solve(matrix: Rows, rights: list[dict[Hashable, Any]]) -> list[dict[Hashable, Any]]:
     """x of matrix·x = right for each right-hand side (sparse: row -> value). Raises Singular."""
-    answers, _ = eliminate(matrix, rights)
-    return answers
-
-
-def eliminate(matrix: Rows, rights: list[dict[Hashable, Any]]) -> tuple[list[dict[Hashable, Any]], Any]:
-    """As `solve`, and the product of the pivots' magnitudes: |det|."""
     unknowns = {c for row in matrix.values() for c in row}
     if len(unknowns) != len(matrix):
         raise Singular
@@ -57,12 +51,10 @@ def eliminate(matrix: Rows, rights: list[dict[Hashable, Any]]) -> tuple[list[dic
             count[c].add(r)
     live = set(rows)
     order: list[tuple[Hashable, Hashable]] = []
-    det = mp.mpf(1)
     while live:
         r, c = _pivot(rows, count, live)
         row = rows[r]
         pivot = row[c]
-        det *= abs(pivot)
         order.append((r, c))
         live.discard(r)
         for k in row:
@@ -97,4 +89,4 @@ def eliminate(matrix: Rows, rights: list[dict[Hashable, Any]]) -> tuple[list[dic
                     total = total - value * x[k]
             x[c] = total / row[c]
         answers.append(x)
-    return answers, det
+    return answers

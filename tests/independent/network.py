@@ -8,7 +8,7 @@ from typing import Any
 
 import numpy as np
 
-from tests.independent.linear import Rows, Singular, eliminate, mp, solve
+from tests.independent.linear import Rows, Singular, mp, solve
 
 GROUND = "0"
 
@@ -134,10 +134,6 @@ class System:
         for answer in answers:
             answer[GROUND] = mp.mpf(0)
         return answers
-
-    def log_det(self, s: Any) -> Any:
-        """ln |det(G + sC)|."""
-        return mp.log(eliminate(self.rows(s), [])[1])
 
     def dense(self) -> tuple[np.ndarray, np.ndarray, list[Hashable]]:
         """G, C (double precision, n×n) and the unknowns in their order."""

@@ -130,9 +130,7 @@ class Oracle(Solved):
             for node in nodes:
                 if abs(self.mid_v[node]) < mp.mpf("1e-12") * greatest or greatest == 0:
                     continue
-                farad = self._capacitance(node)
-                if farad > 0:
-                    tau += self.response[node][node] * farad
+                tau += self.response[node][node] * self._capacitance(node)
             head = heads.get(site) or next(n for n, s in self.drawing.sites.items() if s == site)
             ohm = self.ohm(head) if self.find(head) in self.response else None
             real = ohm is not None and ohm >= mp.mpf("1e-9")
@@ -148,8 +146,9 @@ class Oracle(Solved):
     def _capacitance(self, node: str) -> Any:
         """Grounded capacitance plus Σ C·(1 - V_j/V_i) at a midband node.
 
-        Terms below zero (a capacitance driven beyond its own node's swing, as at a follower's output) are not
-        counted: with them a resistor of 1 µΩ that parts two nodes of a site would move its pole.
+        Terms below zero (a capacitance driven beyond its own node's swing, as at a follower's output) are left away,
+        save the input half of a bridge: where nodes with a sum below zero were left out instead, a resistor of 1 µΩ
+        between two nodes of a site would move its pole.
         """
         total = mp.mpf(0)
         for e in self.elements:
@@ -161,7 +160,10 @@ class Oracle(Solved):
             other = b if node == a else a
             if other != GROUND and other not in self.response:
                 continue
-            total += max(mp.mpf(0), e.value * (1 - self.mid_v[other] / self.mid_v[node]))
+            factor = 1 - self.mid_v[other] / self.mid_v[node]
+            bridges = self.drawing.bridges.get(e.line, [])
+            if factor > 0 or any(part == e.part and self.find(end) == node for part, _, _, end, _ in bridges):
+                total += e.value * factor
         return total
 
     # -- the document -----------------------------------------------------------------------------------------------
@@ -169,7 +171,7 @@ class Oracle(Solved):
     def document(self) -> dict[str, Any]:
         taus = self.time_constants()
         span = self.range(taus)
-        unstable = self.right_half_plane_poles(span) > 0
+        unstable = bool(self.right_half_plane_poles(span))
         upper_estimate, lower_estimate, seed = self.seed(taus)
         edges: dict[str, Any] = {"upper": None, "lower": None}
         if not unstable and self.clean(seed):
@@ -279,7 +281,7 @@ class Oracle(Solved):
         return account, losses
 
     def allotted(self, lost: Mapping[str, Any], own: Mapping[str, Any]) -> dict[str, Any]:
-        claimed = {node: mp.mpf(v) for node, v in own.items() if lost.get(node) is not None}
+        claimed = {node: mp.mpf(v) for node, v in own.items() if node in lost}
         sharing = [node for node, v in lost.items() if v is not None and node not in claimed]
         rest = HALF_POWER - sum(claimed.values(), mp.mpf(0))
         return claimed | {node: rest / len(sharing) for node in sharing}
@@ -289,7 +291,7 @@ class Oracle(Solved):
         if "allot" in self.doc["source"]:
             own["n0"] = number(self.doc["source"]["allot"], "allot")
         for k, stage in enumerate(self.doc.get("stage", []), 1):
-            if "allot" in stage:
+            if "allot" in stage and not stage.get("left_out"):
                 own[self.drawing.names[k]] = number(stage["allot"], "allot")
         if "allot" in self.doc.get("load", {}):
             own["load"] = number(self.doc["load"]["allot"], "allot")

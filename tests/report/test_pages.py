@@ -77,6 +77,19 @@ def test_missing_figures_are_dashes_and_missing_sections_are_left_out():
         assert "nan" not in text
 
 
+def test_a_figure_that_is_no_number_is_a_dash_everywhere():
+    def spoil(value):
+        if isinstance(value, dict):
+            return {key: spoil(item) for key, item in value.items()}
+        if isinstance(value, list):
+            return [spoil(item) for item in value]
+        return math.nan if isinstance(value, float) else value
+
+    for name in PAGES:
+        assert "nan" not in drawn(spoil(document()), name)
+    assert "nan" not in audit("two.toml", spoil(document()), Look())
+
+
 def test_a_file_without_targets_says_so():
     assert "no targets are set" in drawn(document() | {"targets": []})
 

@@ -46,7 +46,8 @@ def candidates(group: Group, cols: Columns) -> tuple[list[int], list[int]]:
 
     A stated current without a resistor at its lower terminal comes from a current source there: the balance of
     that node says nothing, the device's law does. An island without a resistor to a held node is balanced by
-    its devices only where some feed current in and some take it out; else one balance of it is left away.
+    its devices only where some feed current in and some take it out; else one balance of it is left away. There
+    a stated across voltage, and the law of a stated current, say where its nodes stand.
     """
     n, b, d = len(group.nodes), len(group.branches), len(group.devices)
     silent: set[int] = set()
@@ -57,10 +58,10 @@ def candidates(group: Group, cols: Columns) -> tuple[list[int], list[int]]:
             silent.add(_open_end(group, island))
     balances = [cols.voltage[node] for node in group.nodes if node not in silent]
     laws = [n + b + k for k, device in enumerate(group.devices) if not device.current or device.fed_lower]
-    stated = [n + b + k for k, device in enumerate(group.devices) if device.current and not device.fed_lower]
     loose = {node for island in islands(group) if not island.anchored for node in island.nodes}
     across = [n + b + d + k for k, device in enumerate(group.devices) if device.output in loose]
-    return [*balances, *range(n, n + b), *laws], [*across, *stated]
+    stated = [n + b + k for k, device in enumerate(group.devices) if device.current and device.control in loose]
+    return [*balances, *range(n, n + b), *laws], [*across, *(row for row in stated if row not in laws)]
 
 
 def _closed(group: Group, island: Island) -> bool:

@@ -5,11 +5,11 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from polebook.chain.model import Chain
-from polebook.circuit.bias import Operating, Plan, compared
 from polebook.circuit.bias_laws import reading
 from polebook.circuit.bias_missing import BIAS_KEYS, missing
 from polebook.circuit.bias_network import Device
 from polebook.circuit.bias_region import region
+from polebook.circuit.bias_solution import Operating, Plan, compared
 from polebook.devices import ratings
 from polebook.problem import Problem
 from polebook.quantity import engineering
@@ -19,8 +19,14 @@ APART = 0.2  # share by which a stated and a solved figure may differ
 
 
 def cautions(plan: Plan, chain: Chain, operating: dict[str, Operating]) -> list[Problem]:
-    """Every caution of the bias, stage by stage. `operating` holds plain floats: the solution at the file's values."""
-    points = {**operating, **compared(plan, chain.get, operating)}
+    """Every caution of the bias, stage by stage.
+
+    `operating` holds plain floats, the solution at the file's values. Where `solve` was not asked to compare, the
+    comparison of stated currents is made here.
+    """
+    points = operating
+    if all(point.solved_current is None for point in operating.values()):
+        points = {**operating, **compared(plan, chain.get, operating)}
     lacking = missing(plan, chain)
     found: list[Problem] = []
     for device in (device for part in plan.groups for device in part.group.devices):

@@ -5,13 +5,15 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from polebook.circuit.bias_candidates import without_idle_sources
-from polebook.circuit.bias_group import Columns, Group, Numbers, assemble, columns
+from polebook.circuit.bias_group import RHS, Columns, Group, Numbers, assemble, columns
 from polebook.circuit.bias_laws import Get, characteristic, law
 from polebook.circuit.bias_network import MIDWAY, Paths
-from polebook.circuit.bias_newton import Nonlinear, solve_rows
+from polebook.circuit.bias_newton import Nonlinear, holds, solve_rows
 from polebook.circuit.bias_order import Order, order
 from polebook.circuit.bias_rank import Choice, choose
 from polebook.devices.num import Value
+
+CURRENT_FLOOR = 1e-3  # A
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,17 +47,23 @@ class Solution:
 
 
 def compiled(group: Group, get: Get) -> Compiled:
-    """Plans a group at the file's own values. A drive that no row is left for loses its law and is planned anew."""
+    """Plans a group at the file's own values.
+
+    A drive that nothing settles, or that no row is left for, loses its law, and the group is planned anew: so no
+    step of Newton ever runs on what has no answer.
+    """
     group = without_idle_sources(group)
     lawful = [law(device, get).drop is not None for device in group.devices]
     while True:
         cols = columns(group, lawful)
         choice = choose(group, cols, lawful)
-        rows = _rows(group, cols, choice, numbers(group, get))
-        plan = order(rows, choice.rows, cols, group)
-        if not plan.stuck:
-            return Compiled(group, cols, choice, plan)
-        lawful = [known and u not in plan.stuck for known, u in zip(lawful, cols.drive, strict=True)]
+        idle = {u for u in cols.drive if u >= 0 and u not in choice.settled}
+        if not idle:
+            plan = order(_rows(group, cols, choice, numbers(group, get)), choice.rows, cols, group)
+            if not plan.stuck:
+                return Compiled(group, cols, choice, plan)
+            idle |= plan.stuck
+        lawful = [known and u not in idle for known, u in zip(lawful, cols.drive, strict=True)]
 
 
 def level(name: str, get: Get) -> Value:
@@ -99,7 +107,19 @@ def solution(plan: Compiled, get: Get) -> Solution:
         Nonlinear(u, i, characteristic(device.family), at.factor)
         for device, at, u, i in zip(group.devices, values.laws, cols.drive, cols.current, strict=True) if u >= 0
     ]
-    floors = {column: 1.0 for column in cols.voltage.values()}
-    floors.update((column, 1.0 / ohms) for column, ohms in zip(cols.branch, values.branches, strict=True))
-    found, converged = solve_rows(_rows(group, cols, plan.choice, values), plan.order, devices, floors)
-    return Solution(plan, values, found, converged)
+    rows = _rows(group, cols, plan.choice, values)
+    found = solve_rows([dict(row) for row in rows], plan.order, devices)
+    kept = [row for row in rows if all(column in plan.choice.settled for column in row if column != RHS)]
+    return Solution(plan, values, found, holds(kept, found, _floors(plan, values, found)))
+
+
+def _floors(plan: Compiled, values: Numbers, found: dict[int, Value]) -> dict[int, Value]:
+    """What rounding alone may leave of an unknown: that of the group's voltages, and of the currents they drive."""
+    cols = plan.cols
+    volts: Value = 1.0
+    for column in cols.voltage.values():
+        volts = volts + abs(found[column])
+    floors = dict.fromkeys(cols.voltage.values(), volts)
+    floors.update((column, volts / ohms) for column, ohms in zip(cols.branch, values.branches, strict=True))
+    floors.update((i, CURRENT_FLOOR) for i, u in zip(cols.current, cols.drive, strict=True) if i >= 0 and u < 0)
+    return floors

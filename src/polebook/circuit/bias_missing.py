@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 from polebook.chain.model import Chain
-from polebook.circuit.bias import Plan
 from polebook.circuit.bias_compile import Compiled
 from polebook.circuit.bias_laws import lacking
+from polebook.circuit.bias_solution import Plan
 from polebook.stages.base import GROUP, TERMINALS, slot_key
 
 BIAS_KEYS = {"bjt": "rb1 and rb2", "mosfet": "rg1 and rg2", "jfet": "rg", "triode": "rg"}

@@ -26,13 +26,11 @@ class Nonlinear:
     factor: Value
 
 
-def solve_rows(rows: list[Row], order: Order, devices: Sequence[Nonlinear],
-               floors: dict[int, Value]) -> tuple[dict[int, Value], Value]:
-    """Column -> value, and whether every row holds to 1e-12 of its terms (a bool; an array of them for arrays).
+def solve_rows(rows: list[Row], order: Order, devices: Sequence[Nonlinear]) -> dict[int, Value]:
+    """Column -> value. A fixed number of steps, no branch on a value, so that complex steps and arrays pass.
 
-    A fixed number of steps, no branch on a value, so that complex steps and arrays pass. Rows are used up.
+    Rows are used up.
     """
-    kept = [dict(row) for row in rows]
     for pivot in order.linear:
         clear(rows, pivot)
     for pivot in order.drives:
@@ -45,7 +43,7 @@ def solve_rows(rows: list[Row], order: Order, devices: Sequence[Nonlinear],
             if column != RHS and column != pivot.column:
                 total = total - value * found[column]
         found[pivot.column] = total / row[pivot.column]
-    return found, holds(kept, found, floors)
+    return found
 
 
 def newton(rows: list[Row], order: Order, devices: Sequence[Nonlinear]) -> dict[int, Value]:

@@ -1,8 +1,9 @@
 """In which order the rows of a group are eliminated: worked out once, at the file's own values.
 
-The order then serves floats, arrays and complex numbers alike, with no branch on a value. Ends of resistor trees
-go first, node by its resistor's row and resistor by its node's balance: the resistor then stands in series with
-what lies behind it, and conductances of very different size are never subtracted.
+The order then serves floats, arrays and complex numbers alike, with no branch on a value. A resistor between two
+free nodes goes first, as a conductance; but where it is small, end after end of the trees of such resistors goes,
+node by its resistor's row and resistor by its node's balance: it then stands in series with what lies behind it,
+and a large conductance never swallows a small one.
 """
 
 from __future__ import annotations
@@ -14,6 +15,7 @@ from polebook.circuit.bias_group import RHS, Columns, Group, Row
 
 AMPERE_WEIGHT = 1e-3  # a milliampere weighs as much as a volt where pivots are compared
 NEGLIGIBLE = 1e-12
+SMALL_OHM = 100.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -52,7 +54,11 @@ def order(rows: list[Row], places: tuple[int, ...], cols: Columns, group: Group)
     nonlinear = {*drives, *(i for i, u in zip(cols.current, cols.drive, strict=True) if u >= 0)}
     active = set(range(len(rows)))
     linear = []
-    for row, column in _tree_ends(places, cols, group):
+    row_of = {place: k for k, place in enumerate(places)}
+    branch_rows = [row_of[len(group.nodes) + k] for k in range(len(group.branches))]
+    small = [abs(rows[row][column]) < SMALL_OHM for row, column in zip(branch_rows, cols.branch, strict=True)]
+    large = [(row, column) for row, column, s in zip(branch_rows, cols.branch, small, strict=True) if not s]
+    for row, column in [*large, *_tree_ends(row_of, small, cols, group)]:
         linear.append(_step(rows, active, active, row, column))
     done = {pivot.column for pivot in linear}
     for column in (k for k in range(cols.count) if k not in nonlinear and k not in done):
@@ -91,12 +97,11 @@ def _best(rows: list[Row], active: set[int], column: int, cols: Columns) -> int:
     return min((k for k, weight in weights.items() if weight >= enough), key=lambda k: len(rows[k]))
 
 
-def _tree_ends(places: tuple[int, ...], cols: Columns, group: Group) -> list[tuple[int, int]]:
-    """(row, column) pairs that take the ends of resistor trees inward, node and resistor by turns."""
-    row_of = {place: k for k, place in enumerate(places)}
+def _tree_ends(row_of: dict[int, int], small: list[bool], cols: Columns, group: Group) -> list[tuple[int, int]]:
+    """(row, column) pairs that take the ends of trees of small resistors inward, node and resistor by turns."""
     first_branch = len(group.nodes)
     open_ways: dict[int, list[int]] = {node: [] for node in group.nodes}
-    for k, branch in enumerate(group.branches):
+    for k, branch in ((k, branch) for k, branch in enumerate(group.branches) if small[k]):
         open_ways[branch.a].append(k)
         open_ways[branch.b].append(k)
     pairs = []

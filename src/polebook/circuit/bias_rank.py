@@ -68,7 +68,7 @@ class Choice:
 
 
 @dataclass(slots=True)
-class _Basis:
+class Basis:
     """Rows reduced one by one, each with its leading column, coefficient 1 there."""
 
     leads: list[tuple[int, dict[int, int]]]
@@ -97,11 +97,10 @@ class _Basis:
 def choose(group: Group, cols: Columns, lawful: Sequence[bool]) -> Choice:
     """The rows of a group that settle as much as can be settled, in the order of their right to be heard.
 
-    Balances and laws come first; a stated across voltage and the law of a device whose current is stated serve
-    only where the resistors leave a node open.
+    Balances and laws come first; what else is stated serves only where these leave a node open.
     """
     rows = _generic(group, cols, lawful)
-    basis = _Basis([])
+    basis = Basis([])
     first, later = candidates(group, cols)
     taken = [k for k in (*first, *later) if rows[k] and basis.take(rows[k])]
     settled = frozenset(k for k in range(cols.count) if not basis.rest({k: 1}))

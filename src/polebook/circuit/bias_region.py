@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from polebook.circuit.bias import Operating
 from polebook.circuit.bias_laws import Get
+from polebook.circuit.bias_solution import Operating
 from polebook.devices import fet
 from polebook.quantity import engineering
 

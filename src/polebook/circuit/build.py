@@ -37,7 +37,7 @@ def circuit(chain: Chain) -> Circuit:
     """Solves the bias, and lays out the network. Raises ProblemsFound where a needed figure cannot be had."""
     plan = bias.plan(chain)
     get = chain.numbers.get
-    points = bias.solve(plan, get, compare=True)
+    points = bias.solve(plan, get)
     recorder = Recorder()
     lacks = _stamp_source(recorder, chain, get)
     for stage in chain.stages:

@@ -5,9 +5,7 @@ from __future__ import annotations
 import os
 import sys
 from collections.abc import Sequence
-from difflib import get_close_matches
 from importlib import import_module
-from pathlib import Path
 
 from polebook import __version__
 from polebook.cli.command import FAULT, INTERRUPTED, NO_READER, Command, Usage
@@ -97,6 +95,8 @@ def _command(argv: list[str], out: Out) -> tuple[str, list[str]]:
         raise Usage(f'polebook: no option "{first}" stands before a command', "polebook --help lists the commands")
     if _names_a_file(first):
         return "show", argv
+    from difflib import get_close_matches  # deferred: only a misspelt command pays for it
+
     near = get_close_matches(first, COMMANDS, n=1)
     fix = f"did you mean polebook {near[0]}?" if near else "polebook --help lists the commands"
     raise Usage(f'polebook: "{first}" is neither a command nor a file here', fix)
@@ -106,10 +106,7 @@ def _names_a_file(text: str) -> bool:
     """A file that is here, or what can only be meant as one."""
     if os.sep in text or text.endswith(".toml"):
         return True
-    try:
-        return Path(text).exists()
-    except (OSError, ValueError):  # a name too long for the system, or with a NUL in it
-        return False
+    return os.path.exists(text)
 
 
 def _abandon_output() -> None:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import log10, pi
 
-from polebook.ledger.formula import Formula
+from polebook.formula import Formula
 from polebook.ledger.miller import Bridge
 from polebook.ledger.sites import interstage_names
 from polebook.ledger.solution import Solution

@@ -21,10 +21,11 @@ __all__ = ["Ledger", "at", "document", "ledger"]
 
 def document(of: Ledger) -> dict[str, Any]:
     """The whole ledger: base SI units at full precision, None where a figure does not apply."""
+    owners = by_stage(of, of.owns_upper), by_stage(of, of.owns_lower)
     return {
         "format": 1, "tool": f"polebook {__version__}",
         "chain": {"title": of.chain.title, "digest": of.chain.digest},
-        "overall": overall(of), "lines": [line(of, one) for one in of.lines], "nodes": nodes(of), "parts": parts(of),
+        "overall": overall(of), "lines": [line(one, *owners) for one in of.lines], "nodes": nodes(of), "parts": parts(of),
         "cards": None, "bias": operating(of), "rails": None, "poles": None, "zeros": None, "account": account(of),
         "targets": [{"name": t.name, "want": t.want, "got": t.got, "margin": t.margin, "met": t.met, "why": t.why}
                     for t in of.targets],
@@ -58,19 +59,24 @@ def overall(of: Ledger) -> dict[str, Any]:
     }
 
 
-def _owned(of: Ledger, shares: dict[int, float], stage: str) -> float | None:
+def by_stage(of: Ledger, shares: dict[int, float]) -> dict[str, float]:
+    """Shares of the parts summed by stage; empty where there is no edge. A stage without C and L owns 0."""
     if not shares:
-        return None
-    return sum(share for index, share in shares.items() if of.solution.circuit.layout.parts[index].stage == stage)
+        return {}
+    layout = of.solution.circuit.layout
+    sums = {segment.name: 0.0 for segment in layout.segments}
+    for index, share in shares.items():
+        sums[layout.parts[index].stage] += share
+    return sums
 
 
-def line(of: Ledger, one: Line) -> dict[str, Any]:
+def line(one: Line, upper: dict[str, float], lower: dict[str, float]) -> dict[str, Any]:
     return {
         "name": one.name, "kind": one.kind, "gain": one.gain, "gain_db": decibels(one.gain), "open_gain": one.open_gain,
         "loading": one.loading, "transfer_ohm": one.transfer_ohm, "k": one.k, "input_ohm": one.input_ohm,
         "output_ohm": one.output_ohm,
-        "owns_upper": None if one.left_out else _owned(of, of.owns_upper, one.name),
-        "owns_lower": None if one.left_out else _owned(of, of.owns_lower, one.name), "noise_share": None,
+        "owns_upper": None if one.left_out else upper.get(one.name),
+        "owns_lower": None if one.left_out else lower.get(one.name), "noise_share": None,
         "bridges": [{"part": b.part, "type": b.type, "value": b.value, "k": b.k, "at_input": b.at_input,
                      "at_output": b.at_output} for b in one.bridges],
     }

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from polebook.ledger.formula import Formula
+from polebook.formula import Formula
 from polebook.ledger.miller import Bridge, leading
 from polebook.ledger.solution import Solution
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from polebook.ledger.formula import Formula
+from polebook.formula import Formula
 from polebook.ledger.solution import Solution
 
 MILLER = "J. M. Miller, Dependence of the input impedance of a three-electrode vacuum tube upon the load in the " \

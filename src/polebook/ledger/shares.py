@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from math import pi
 
 from polebook.circuit.views import Network
-from polebook.ledger.formula import Formula
+from polebook.formula import Formula
 from polebook.solve.fold import fold
 from polebook.solve.transfer import adjoint, branch_currents, voltages
 from polebook.stages.stamper import GROUND

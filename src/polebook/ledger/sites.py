@@ -7,7 +7,7 @@ from math import pi, sqrt
 
 from polebook.circuit.layout import Layout
 from polebook.circuit.views import impedance
-from polebook.ledger.formula import Formula
+from polebook.formula import Formula
 from polebook.ledger.solution import Solution
 from polebook.solve.root import bracketed_root
 from polebook.stages.stamper import GROUND

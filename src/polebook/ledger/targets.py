@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from math import log10
 
 from polebook.chain.model import Chain
-from polebook.ledger.formula import Formula
+from polebook.formula import Formula
 
 FORMULAS = (
     Formula("targets.margin", "(want - got)/want where less is better, (got - want)/want where more is; "

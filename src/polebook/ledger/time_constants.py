@@ -7,7 +7,7 @@ from math import inf, isfinite, pi
 
 from polebook.circuit.elements import Branch
 from polebook.circuit.views import Network, admittances, impedance
-from polebook.ledger.formula import Formula
+from polebook.formula import Formula
 from polebook.solve.inverse import Inverse
 
 COCHRAN_GRABEL = "B. L. Cochran and A. Grabel, A method for the determination of the transfer function of electronic " \

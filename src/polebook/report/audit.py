@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from polebook.report.document import Document, Entry, entries
+from polebook.report.document import Document, Entry, entries, finite
 from polebook.report.look import Look
 from polebook.report.sections import target_row, unstable
 from polebook.report.table import Column, table
@@ -10,6 +10,7 @@ from polebook.report.table import Column, table
 
 def audit(file: str, document: Document, look: Look) -> str:
     """The verdicts on one file."""
+    document = finite(document)
     targets = entries(document, "targets")
     lines = [look.paint(look.text(file), "head"), *unstable(document, look)]
     if not targets:

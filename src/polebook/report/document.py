@@ -3,10 +3,22 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from math import isfinite
 from typing import Any
 
 Document = Mapping[str, Any]  # as json.loads gives it: LEDGER.md's schema
 Entry = Mapping[str, Any]
+
+
+def finite(value: Any) -> Any:
+    """`value`, a document or a piece of one, with None for every number that is not finite."""
+    if isinstance(value, float):
+        return value if isfinite(value) else None
+    if isinstance(value, Mapping):
+        return {key: finite(item) for key, item in value.items()}
+    if isinstance(value, list | tuple):
+        return [finite(item) for item in value]
+    return value
 
 
 def entries(document: Document, section: str) -> list[Entry]:

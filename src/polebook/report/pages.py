@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 
 from polebook.report import sections, tables
-from polebook.report.document import Document
+from polebook.report.document import Document, finite
 from polebook.report.look import Look
 
 Section = Callable[[Document, Look], list[str]]
@@ -44,6 +44,7 @@ PAGES: dict[str, tuple[Section, ...]] = {
 
 def page(document: Document, name: str, look: Look, file: str) -> str:
     """The page `name` of PAGES as text that ends with a line break. A frequency asked for with --at comes last."""
+    document = finite(document)
     blocks = [sections.heading(document, file, look), sections.unstable(document, look)]
     blocks += [section(document, look) for section in PAGES[name]]
     if document.get("at"):

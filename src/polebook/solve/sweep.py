@@ -8,14 +8,17 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from math import log, pi
+from typing import TYPE_CHECKING, TypeAlias
 
 import numpy as np
-from numpy.typing import NDArray
 
 from polebook.circuit.views import Network, View
 from polebook.solve.fold import Folded, fold
 
-Array = NDArray[np.float64]
+if TYPE_CHECKING:  # numpy.typing costs 5 ms at start-up
+    from numpy.typing import NDArray
+
+Array: TypeAlias = "NDArray[np.float64]"
 POINTS_A_DECADE = 12
 TURN = 1.0  # rad between neighbours
 LEAP = 1.5  # neper between neighbours

@@ -1,0 +1,65 @@
+"""What README and DEVELOPERS promise: commands that are there, an excerpt that is printed, names that stand."""
+
+import re
+import shutil
+
+import pytest
+
+from polebook.cli.main import COMMANDS, load, main
+from tests.cli.helpers import LISTENER, ROOT
+
+README = (ROOT / "README.md").read_text(encoding="utf-8")
+DEVELOPERS = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
+# the indented lines: what a reader is told to type, less the explanation beside it
+TYPED = [re.split(r" {2,}", line.strip())[0] for line in README.splitlines() if re.match(r" {4}\S", line)]
+
+
+def test_the_excerpt_is_what_the_first_command_prints(capsys):
+    (excerpt,) = re.findall(r"```\n(.*?)```", README, re.DOTALL)
+    assert "bash .ci/polebook show chains/wire-break-listener.toml" in TYPED
+    assert main(["show", str(LISTENER)]) == 0
+    printed = capsys.readouterr().out
+    blocks = excerpt.rstrip().split("\n\n")
+    assert len(blocks) == 2
+    for block in blocks:
+        assert block in printed
+
+
+@pytest.mark.parametrize("line", [line for line in TYPED if line.startswith("polebook ")])
+def test_every_command_of_the_readme_runs(line, capsys, tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    shutil.copy(LISTENER, tmp_path / "FILE")
+    words = [word.removesuffix("...") for word in line.split()[1:]]
+    assert main(words) == (1 if words[0] == "audit" else 0)
+    assert capsys.readouterr().err == ""
+
+
+def test_every_command_is_in_the_readme():
+    told = {line.split()[1] for line in TYPED if line.startswith("polebook ")}
+    assert told == {*COMMANDS, "FILE"}
+    assert all(load(name).about for name in COMMANDS)
+
+
+def test_the_remedy_that_the_readme_names_is_one(tmp_path):
+    assert "`polebook unset chains/wire-break-listener.toml Q2.c_comp`" in README
+    copy = str(shutil.copy(LISTENER, tmp_path / "chain.toml"))
+    assert main(["audit", copy]) == 1
+    assert main(["unset", copy, "Q2.c_comp"]) == 0
+    assert main(["audit", copy]) == 0
+
+
+def test_the_test_command_is_the_one_that_ci_runs():
+    assert "bash .ci/test" in TYPED
+    assert "bash .ci/test" in (ROOT / ".ci" / "run").read_text(encoding="utf-8")
+
+
+def test_every_file_that_the_documents_name_is_there():
+    named = re.findall(r"`((?:\.ci|src|tests|chains|report|cli|stages|devices|ledger)/[\w./-]*)`", README + DEVELOPERS)
+    assert len(named) > 8
+    for name in named:
+        assert (ROOT / name).exists() or (ROOT / "src" / "polebook" / name).exists(), name
+
+
+def test_every_package_has_its_line_among_the_layers():
+    packages = {path.name for path in (ROOT / "src" / "polebook").iterdir() if (path / "__init__.py").exists()}
+    assert {f"{name}/" for name in packages} <= set(DEVELOPERS.split())
