@@ -36,7 +36,8 @@ def main() -> None:
     for _ in range(15):
         audit.append(timed(AUDIT))
         numpy.append(timed(NUMPY))
-    print(f"audit {median(audit):.0f} ms, import numpy {median(numpy):.0f} ms, ratio {median(audit) / median(numpy):.2f}")
+    ours, bare = median(audit), median(numpy)
+    print(f"audit {ours:.0f} ms, import numpy {bare:.0f} ms, ratio {ours / bare:.2f}")
     loaded = subprocess.run([sys.executable, "-c", LOADED, AUDIT[-1]], capture_output=True, check=False, text=True)
     print("loaded beside it:", loaded.stderr.strip().splitlines()[-1])
 

@@ -53,20 +53,24 @@ def test_scaling_all_storages_scales_every_frequency(name: str) -> None:
 
 def _figures(doc: dict) -> dict:
     """Gains, resistances, poles, shares and losses by name: what a microhm must not move."""
-    found = {(key,): doc["overall"][key] for key in ("gain", "lower_edge_hz", "upper_edge_hz", "peaking_db", "node_upper_hz",
-                                                     "octc_upper_hz", "sctc_lower_hz")}
+    overall = ("gain", "lower_edge_hz", "upper_edge_hz", "peaking_db", "node_upper_hz", "octc_upper_hz",
+               "sctc_lower_hz")
+    of_line = ("gain", "open_gain", "input_ohm", "owns_upper", "owns_lower", "k")
+    of_node = ("ohm", "farad", "pole_hz", "lost_upper_db", "lost_lower_db")
+    of_part = ("tau_s", "owns_upper", "owns_lower")
+    found = {(key,): doc["overall"][key] for key in overall}
     for row in doc["lines"]:
-        found |= {(row["name"], key): row[key] for key in ("gain", "open_gain", "input_ohm", "owns_upper", "owns_lower", "k")}
+        found |= {(row["name"], key): row[key] for key in of_line}
     for row in doc["nodes"]:
-        found |= {(row["name"], key): row[key] for key in ("ohm", "farad", "pole_hz", "lost_upper_db", "lost_lower_db")}
+        found |= {(row["name"], key): row[key] for key in of_node}
     for row in doc["parts"]:
-        found |= {(row["stage"], row["part"], key): row[key] for key in ("tau_s", "owns_upper", "owns_lower")}
+        found |= {(row["stage"], row["part"], key): row[key] for key in of_part}
     return found
 
 
 @pytest.mark.parametrize("name", BY_NAME)
 def test_a_microhm_stopper_moves_nothing(name: str) -> None:
-    """Also before a 1 GΩ gate (jfet-electrometer): shares and dB by less than 1e-6, all else by less than 1e-6 of itself."""
+    """Also before a 1 GΩ gate (jfet-electrometer): shares and dB by under 1e-6, all else by under 1e-6 of itself."""
     original = chain(name)
     before = _figures(document(ledger(original)))
     tried = 0
@@ -105,7 +109,8 @@ def test_values_by_complex_step_are_their_derivatives(name: str) -> None:
 @pytest.mark.parametrize("name", ["six-stage", "jfet-electrometer", "valves", "mosfets", "blocks"])
 def test_arrays_of_values_are_the_floats_side_by_side(name: str) -> None:
     of = circuit(chain(name))
-    paths = [p for p in sorted(of.chain.given & set(of.chain.numbers)) if not p.startswith(("target.", "tolerance.", "bench."))]
+    numbers = sorted(of.chain.given & set(of.chain.numbers))
+    paths = [path for path in numbers if not path.startswith(("target.", "tolerance.", "bench."))]
     factors = np.array([0.97, 1.0, 1.04])
     together = values(of, {p: of.chain.numbers[p] * factors for p in paths})
     for k, factor in enumerate(factors):

@@ -109,6 +109,7 @@ beta = 100
 
 
 def test_a_gain_beyond_all_numbers_is_refused() -> None:
-    stages = "".join(f'[[stage]]\nname = "B{k}"\nkind = "block"\ngain = "120 dB"\ninverting = false\n' for k in range(64))
+    block = 'kind = "block"\ngain = "120 dB"\ninverting = false\n'
+    stages = "".join(f'[[stage]]\nname = "B{k}"\n{block}' for k in range(64))
     problem = problem_of(f'format = 1\n[source]\nkind = "voltage"\nresistance = 0\n{stages}')
     assert "beyond" in problem.what

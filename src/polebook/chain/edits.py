@@ -34,8 +34,22 @@ def unset(text: str, file: str, path: str) -> tuple[Edit, list[Problem]]:
     """The edit that takes the key at `path` out, and the faults that the file then still has; raises as `set_value`."""
     before = reading_of(text, file)
     found = locate(path, _content(before, text))
+    if not _stands(_content(before, text), found.path):
+        raise PathRefused(f"{file} gives no {path}", "only what the file gives can be taken out of it",
+                          "name a key that it gives; an absent one has its default already")
     edit = splice.unset(text, found.path, file)
     return edit, _judged(before, edit.apply(text), file)
+
+
+def _stands(data: Any, path: tuple[str | int, ...]) -> bool:
+    for step in path:
+        if isinstance(step, int):
+            if not isinstance(data, list) or step >= len(data):
+                return False
+        elif not isinstance(data, Mapping) or step not in data:
+            return False
+        data = data[step]
+    return True
 
 
 def _content(reading: Reading, text: str) -> Mapping[str, Any]:

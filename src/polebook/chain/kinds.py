@@ -3,14 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from polebook.chain.suggest import nearest
 from polebook.chain.tables import BENCH, SECTIONS, TOP
 from polebook.devices.registry import FAMILIES
 from polebook.param import Param
 from polebook.quantity import DIMENSIONS
-from polebook.stages.base import COMMON
+from polebook.stages.base import COMMON, Kind
 from polebook.stages.ladder import ARM
 from polebook.stages.registry import KINDS
 
@@ -23,6 +23,13 @@ _UNITS = {
     "table": "table",
     "date": "date",
     "format": "number",
+}
+_CARDS = {
+    "bjt": "card of a bipolar transistor",
+    "mosfet": "card of an insulated-gate FET",
+    "jfet": "card of a junction FET",
+    "triode": "card of a triode valve",
+    "opamp": "card of an operational amplifier",
 }
 _PLAIN = {
     "share": "%",
@@ -83,11 +90,11 @@ def common() -> tuple[KeyRow, ...]:
 def listings() -> tuple[Listing, ...]:
     """Every kind of stage, then the arms of a ladder, the cards, and the other tables."""
     kinds = [
-        Listing(kind.name, "stage", "[[stage]]", kind.about, kind.families, _rows(kind.params))
+        Listing(kind.name, "stage", "[[stage]]", kind.about, kind.families, _rows((*kind.params, *_inside(kind))))
         for kind in KINDS.values()
     ]
     cards = [
-        Listing(family, "card", "[device.NAME]", f"card of a {family}", (), _rows(params))
+        Listing(family, "card", "[device.NAME]", _CARDS[family], (), _rows(params))
         for family, params in FAMILIES.items()
     ]
     tables = [Listing(name, "table", f"[{name}]", "", (), _rows(params)) for name, params in SECTIONS.items()]
@@ -99,6 +106,11 @@ def listings() -> tuple[Listing, ...]:
         *tables,
         Listing("bench", "table", "[[bench]]", "what was measured on hardware", (), _rows(BENCH)),
     )
+
+
+def _inside(kind: Kind) -> tuple[Param, ...]:
+    """Keys that stand inside a list of the kind: those of a ladder's arms."""
+    return tuple(replace(param, key=f"arms.N.{param.key}") for param in ARM) if kind.topology == "ladder" else ()
 
 
 def listing(name: str) -> Listing | None:

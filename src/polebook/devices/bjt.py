@@ -8,7 +8,19 @@ from __future__ import annotations
 from polebook.devices.missing import Lack, settle
 from polebook.devices.num import TWO_PI, Reading, Value, floor_at, power, ratio, thermal_voltage
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.formula import Formula
 from polebook.param import Param
+
+HYBRID_PI = "hybrid-pi model (P. R. Gray, P. J. Hurst, S. H. Lewis and R. G. Meyer, Analysis and Design of Analog " \
+            "Integrated Circuits, 5th ed., Wiley, ch. 1; from memory)"
+FORMULAS = (
+    Formula("parts.gm", "gm = ic/VT, VT = kT/q", HYBRID_PI),
+    Formula("parts.rpi", "rpi = beta/gm", HYBRID_PI),
+    Formula("parts.ro", "ro = early_voltage/ic", HYBRID_PI),
+    Formula("parts.cmu", "Cmu = cob·((1 + cob_v/built_in)/(1 + VCB/built_in))^grading, VCB = vce - vbe", HYBRID_PI),
+    Formula("parts.cpi", "Cpi = gm·(1/(2·pi·ft) - (c_be0 + cob)/gm(ft_ic)) + c_be0", HYBRID_PI),
+    Formula("bias.bjt", "V(base) - V(emitter) = vbe, ib = ic/beta", "common practice"),
+)
 
 PARAMS = (
     family_key("bjt"),

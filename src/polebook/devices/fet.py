@@ -9,7 +9,20 @@ from __future__ import annotations
 from polebook.devices.missing import Lack, settle
 from polebook.devices.num import Reading, Value, floor_at, ratio, sqrt, step
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.formula import Formula
 from polebook.param import Param
+
+SQUARE_LAW = "square law of the channel (A. S. Sedra and K. C. Smith, Microelectronic Circuits, 5th ed., Oxford, " \
+             "ch. 4; from memory)"
+FORMULAS = (
+    Formula("parts.gm", "gm = sqrt(2·k·id); of a jfet (2·idss/vgs_off)·sqrt(id/idss)", SQUARE_LAW),
+    Formula("parts.ro", "ro = 1/(channel_slope·id)", SQUARE_LAW),
+    Formula("parts.cgd", "cgd = crss", "common practice"),
+    Formula("parts.cgs", "cgs = ciss - crss", "common practice"),
+    Formula("parts.cds", "cds = coss - crss", "common practice"),
+    Formula("bias.mosfet", "id = k/2·(Vgs - vgs_th)^2", SQUARE_LAW),
+    Formula("bias.jfet", "id = idss·(1 + Vgs/vgs_off)^2", SQUARE_LAW),
+)
 
 _POLARITY = Param("polarity", "choice", "channel: n or p", default="n", choices=("n", "p"))
 

@@ -5,7 +5,13 @@ from __future__ import annotations
 from polebook.devices.missing import Lack, settle
 from polebook.devices.num import TWO_PI, Reading, Value
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.formula import Formula
 from polebook.param import Param
+
+FORMULAS = (
+    Formula("parts.gbw", "tau = a0/(2·pi·gbw), the dominant pole at gbw/a0", "definition"),
+    Formula("parts.f2", "tau = 1/(2·pi·f2)", "definition"),
+)
 
 PARAMS = (
     family_key("opamp"),

@@ -9,7 +9,15 @@ from __future__ import annotations
 from polebook.devices.missing import Lack, settle
 from polebook.devices.num import Reading, Value, floor_at, power, ratio, sqrt
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.formula import Formula
 from polebook.param import Param
+
+CHILD_LANGMUIR = "Child-Langmuir law, common practice for valves"
+FORMULAS = (
+    Formula("parts.gm", "gm = gm(gm_ia)·(ia/gm_ia)^(1/3)", CHILD_LANGMUIR),
+    Formula("parts.ro", "ro = mu/gm", CHILD_LANGMUIR),
+    Formula("bias.triode", "ia = P·(vgk + vak/mu)^1.5, P = gm_ia/(1.5·gm_ia/gm)^1.5", CHILD_LANGMUIR),
+)
 
 PARAMS = (
     family_key("triode"),

@@ -9,7 +9,9 @@ from polebook.formula import Formula
 from polebook.ledger.miller import Bridge
 from polebook.ledger.sites import interstage_names
 from polebook.ledger.solution import Solution
+from polebook.solve.edges import DECIBEL
 from polebook.solve.fold import fold
+from polebook.solve.sweep import neper
 
 BUDGET_DB = 10.0 * log10(2.0)
 FORMULAS = (
@@ -55,7 +57,7 @@ def holding(of: Solution, split: dict[str, list[Bridge]]) -> set[str]:
 def line_losses(of: Solution, hz: float) -> list[float]:
     """dB that each line loses against its midband gain at hz, source first."""
     gains = fold(of.circuit.network, 2j * pi * hz, "full").gains
-    return [-20.0 * log10(abs(gain) / abs(reference)) for gain, reference in zip(gains, of.gains, strict=True)]
+    return [-DECIBEL * neper(abs(gain) / abs(reference)) for gain, reference in zip(gains, of.gains, strict=True)]
 
 
 def account(of: Solution, held: set[str], edge_hz: float | None, claims: dict[str, float]) -> Account:

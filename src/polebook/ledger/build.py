@@ -9,6 +9,7 @@ from polebook import __version__
 from polebook.ledger.account import line_losses
 from polebook.ledger.book import Ledger, ledger
 from polebook.ledger.lines import Line
+from polebook.ledger.reach import within_reach
 from polebook.solve.fold import fold
 
 LATER = ("rise_time_s", "overshoot_percent", "settling_1_s", "settling_01_s", "sag_percent", "group_delay_s",
@@ -21,12 +22,18 @@ __all__ = ["Ledger", "at", "document", "ledger"]
 
 def document(of: Ledger) -> dict[str, Any]:
     """The whole ledger: base SI units at full precision, None where a figure does not apply."""
+    with within_reach(of.chain):
+        return _document(of)
+
+
+def _document(of: Ledger) -> dict[str, Any]:
     owners = by_stage(of, of.owns_upper), by_stage(of, of.owns_lower)
     return {
         "format": 1, "tool": f"polebook {__version__}",
         "chain": {"title": of.chain.title, "digest": of.chain.digest},
-        "overall": overall(of), "lines": [line(one, *owners) for one in of.lines], "nodes": nodes(of), "parts": parts(of),
-        "cards": None, "bias": operating(of), "rails": None, "poles": None, "zeros": None, "account": account(of),
+        "overall": overall(of), "lines": [line(one, *owners) for one in of.lines], "nodes": nodes(of),
+        "parts": parts(of), "cards": None, "bias": operating(of), "rails": None, "poles": None, "zeros": None,
+        "account": account(of),
         "targets": [{"name": t.name, "want": t.want, "got": t.got, "margin": t.margin, "met": t.met, "why": t.why}
                     for t in of.targets],
         "levels": None, "verdict": None,
@@ -136,8 +143,9 @@ def account(of: Ledger) -> dict[str, Any]:
 
 def at(of: Ledger, hz: float) -> dict[str, Any]:
     """Gain, phase and loss of every line at one frequency (Hz)."""
-    gains = fold(of.solution.circuit.network, 2j * pi * hz, "full").gains
-    lost = line_losses(of.solution, hz)
+    with within_reach(of.chain):
+        gains = fold(of.solution.circuit.network, 2j * pi * hz, "full").gains
+        lost = line_losses(of.solution, hz)
     return {"hz": hz, "lines": [
         {"name": segment.name, "gain_db": decibels(abs(gain)),
          "phase_deg": degrees(atan2(complex(gain).imag, complex(gain).real)), "lost_db": db}

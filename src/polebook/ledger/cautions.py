@@ -42,11 +42,11 @@ def _used(of: Solution, card: str) -> bool:
 def _stability(of: Solution) -> Problem:
     right = of.winding.right
     if right is None:
-        return _caution(of, "source", "stability could not be told",
+        return _caution(of, "", "stability could not be told",
                         "the winding of the determinant came out no whole number, so edges and what rests on them "
                         "are left out",
                         "look for values many decades apart, or parts that all but cancel")
-    return _caution(of, "source", "the chain is unstable",
+    return _caution(of, "", "the chain is unstable",
                     f"{right} of its poles {'has' if right == 1 else 'have'} a positive real part (winding count): "
                     "it will oscillate, and it has no edges",
                     "look at the loops: bridges, feedback, and what they are loaded with")
@@ -55,7 +55,7 @@ def _stability(of: Solution) -> Problem:
 def _band(of: Solution) -> list[Problem]:
     band, constants = of.band, of.constants
     if not band.clean:
-        return [_caution(of, "source", "no clean midband",
+        return [_caution(of, "", "no clean midband",
                          "at no frequency does the whole network come within 3 dB of the midband gain, so that "
                          "there are no edges",
                          "part the low-role and high-role corners, or look for an arm in the wrong role")]
@@ -64,7 +64,7 @@ def _band(of: Solution) -> list[Problem]:
     for name, estimate, exact in ends:
         if estimate is not None and exact is not None and abs(estimate / exact - 1.0) > BLIND:
             result.append(_caution(
-                of, "source",
+                of, "",
                 f"the {name}-edge estimate from time constants is {estimate / exact:.2g} times the exact edge",
                 "the sum of time constants is blind to complex poles, and to corners that lie together",
                 "go by the exact edge"))

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from functools import cached_property
-from math import inf, log
+from math import isfinite, log
 
 from polebook.chain.model import Chain
 from polebook.circuit.build import Circuit, circuit
+from polebook.ledger.reach import within_reach
 from polebook.ledger.time_constants import TimeConstants, time_constants
 from polebook.problem import Problem, ProblemsFound
 from polebook.solve.edges import Band, band, first_seed, seed
@@ -26,8 +27,9 @@ class Solution:
 
     def __init__(self, chain: Chain) -> None:
         self.chain = chain
-        self.circuit: Circuit = circuit(chain)
-        self.midband: Folded = self._fold_midband()
+        with within_reach(chain):
+            self.circuit: Circuit = circuit(chain)
+            self.midband: Folded = self._fold_midband()
 
     @property
     def stable(self) -> bool:
@@ -85,8 +87,10 @@ class Solution:
         except NotHeld as floating:
             raise ProblemsFound([self._not_held(floating.node)], "") from None
         for segment, gain in zip(self.circuit.layout.segments, folded.gains, strict=True):
-            if gain == 0.0 or gain in (inf, -inf) or gain != gain:
+            if gain == 0.0:
                 raise ProblemsFound([self._no_gain(segment.name)], "")
+            if not isfinite(gain):
+                raise OverflowError
         if abs(sum(log(abs(gain)) for gain in folded.gains)) > MOST_NEPER:
             raise ProblemsFound([self._beyond()], "")
         return folded

@@ -130,6 +130,7 @@ def cautions(document: Document, look: Look) -> list[str]:
 def bridges(document: Document, look: Look) -> list[str]:
     """The Miller split of every bridge: how much of it lands on either side."""
     rows: list[list[Cell | str]] = []
+    marked = False
     for at, line in enumerate(entries(document, "lines")):
         for bridge in line["bridges"] or []:
             part = bridge["part"].rpartition(".")[2]
@@ -143,12 +144,19 @@ def bridges(document: Document, look: Look) -> list[str]:
                     show.eng(bridge["at_input"], unit),
                     f"at {input_node(document, at)}",
                     show.eng(bridge["at_output"], unit),
-                    f"at {far}",
+                    f"at {far}" + (" *" if _of_no_use(bridge) else ""),
                 ]
             )
+            marked = marked or _of_no_use(bridge)
     names = ("bridges", "value", "K", "counts as", "", "and", "")
     columns = [Column(name, right=name in ("value", "K", "counts as", "and")) for name in names]
-    return table(columns, rows, look) if rows else []
+    note = paragraph("* with K above 0 the half at the output is of no use for an estimate", look) if marked else []
+    return [*table(columns, rows, look), *note] if rows else []
+
+
+def _of_no_use(bridge: Entry) -> bool:
+    """The output half of a bridge whose ends move together."""
+    return bridge["k"] is not None and bridge["k"] > 0 and bridge["at_output"] is not None
 
 
 def paragraph(text: str, look: Look, style: str = "", hang: int = 1) -> list[str]:

@@ -47,8 +47,9 @@ def seed(net: Network, midband: list[float], start_hz: float, taus: Iterable[flo
     first = np.floor(40 * np.log10(min(corners) / 10))
     last = np.ceil(40 * np.log10(max(corners) * 10))
     hz = 10.0 ** (np.arange(first, last + 1) / 40)
-    loss = relative(fold(net, 2j * np.pi * hz, "full"), midband)
-    best = int(np.argmin(np.abs(np.expm1(loss))))
+    with np.errstate(all="ignore"):
+        loss = relative(fold(net, 2j * np.pi * hz, "full"), midband)
+        best = int(np.nanargmin(np.abs(np.expm1(loss))))
     return float(hz[best]), bool(loss[best] >= HALF_POWER)
 
 

@@ -60,7 +60,7 @@ def _gain(segment: Segment, taken: list[Taken], origin: int, own: float, reach: 
             return None
         known[segment.after] = -reach / own
     v = local_voltages(taken, known)
-    return float(v[segment.after] / v[segment.before])
+    return float(v[segment.after] / v[segment.before]) if v[segment.before] else None
 
 
 def _ohm(siemens: float) -> float | None:

@@ -10,6 +10,7 @@ from polebook.circuit.views import Network
 from polebook.stages.stamper import GROUND
 
 MARGIN = 300.0
+LEAST_HZ, MOST_HZ = 1e-20, 1e25  # no part acts beyond these; past them only rounding would be swept
 
 
 def span(net: Network, taus: Iterable[float]) -> tuple[float, float]:
@@ -27,7 +28,8 @@ def span(net: Network, taus: Iterable[float]) -> tuple[float, float]:
         c = [capacitance.get(k, 0.0) for k in ends]
         rates += _branch_rates(net, branch, [x for x in g if x > 0], [x for x in c if x > 0])
     rates = [rate for rate in rates if rate > 0 and isfinite(rate)] or [2 * pi * 1e3]
-    return min(rates) / (2 * pi * MARGIN), max(rates) * MARGIN / (2 * pi)
+    low, high = min(rates) / (2 * pi * MARGIN), max(rates) * MARGIN / (2 * pi)
+    return max(low, LEAST_HZ), max(min(high, MOST_HZ), 10 * max(low, LEAST_HZ))
 
 
 def _nodes(net: Network) -> tuple[dict[int, float], dict[int, float]]:

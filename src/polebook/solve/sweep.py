@@ -7,7 +7,7 @@ and no zero near the axis is stepped over. The same grid serves stability, edges
 from __future__ import annotations
 
 from dataclasses import dataclass
-from math import log, pi
+from math import inf, log, pi
 from typing import TYPE_CHECKING, TypeAlias
 
 import numpy as np
@@ -23,46 +23,60 @@ POINTS_A_DECADE = 12
 TURN = 1.0  # rad between neighbours
 LEAP = 1.5  # neper between neighbours
 ROUNDS = 48
+MOST = 6000  # points; a network that asks for more has lost its digits
 NARROW = 1e-13  # relative distance at which neighbours are left as they are
 
 
 @dataclass(slots=True)
 class Sweep:
     """hz (f,) ascending; loss (f,) = ln|H|/|gain| in neper; angles (p, f) and sizes (p, f) of the pivots, in rad and
-    neper; turns (n, f) the angles of the lines' gains."""
+    neper; turns (n, f) the angles of the lines' gains. fine is False where it could not be refined far enough, or
+    where a value was beyond all numbers."""
 
     hz: Array
     loss: Array
     angles: Array
     sizes: Array
     turns: Array
+    fine: bool = True
+
+
+def neper(ratio: float) -> float:
+    """ln of a size, minus infinity for 0."""
+    return log(ratio) if ratio > 0.0 else -inf
 
 
 def relative(folded: Folded, midband: list[float]) -> Array:
     """ln|H|/|gain| in neper at the frequencies of a folded network, by the lines' gains so that nothing overflows."""
     total: Array = np.zeros(1)
-    for gain, reference in zip(folded.gains, midband, strict=True):
-        total = total + np.log(np.abs(gain) / abs(reference))
+    with np.errstate(all="ignore"):
+        for gain, reference in zip(folded.gains, midband, strict=True):
+            total = total + np.log(np.abs(gain) / abs(reference))
     return total
 
 
 def relative_at(net: Network, hz: float, midband: list[float], view: View = "full") -> float:
     """ln|H|/|gain| in neper at one frequency."""
     folded = fold(net, 2j * pi * hz, view)
-    return sum(log(abs(gain) / abs(reference)) for gain, reference in zip(folded.gains, midband, strict=True))
+    return sum(neper(abs(gain) / abs(reference)) for gain, reference in zip(folded.gains, midband, strict=True))
 
 
 def sweep(net: Network, low: float, high: float, midband: list[float], view: View = "full") -> Sweep:
     """Sweeps from low to high (Hz), refined by halves where something turns. Gains at midband, by line."""
     decades = np.log10(high / low)
     grid = np.geomspace(low, high, max(8, int(decades * POINTS_A_DECADE) + 1))
-    result = _evaluate(net, grid, midband, view)
-    for _ in range(ROUNDS):
-        coarse = _coarse(result)
-        if not coarse.any():
-            break
-        middle = np.sqrt(result.hz[:-1][coarse] * result.hz[1:][coarse])
-        result = _merge(result, _evaluate(net, middle, midband, view))
+    with np.errstate(all="ignore"):
+        result = _evaluate(net, grid, midband, view)
+        for _ in range(ROUNDS):
+            coarse = _coarse(result)
+            if not coarse.any():
+                break
+            if coarse.sum() + result.hz.size > MOST:
+                result.fine = False
+                break
+            middle = np.sqrt(result.hz[:-1][coarse] * result.hz[1:][coarse])
+            result = _merge(result, _evaluate(net, middle, midband, view))
+    result.fine = result.fine and bool(np.isfinite(result.sizes).all() and np.isfinite(result.turns).all())
     return result
 
 

@@ -27,6 +27,8 @@ class Winding:
 
 def winding(s: Sweep, layout: Layout) -> Winding:
     """Counts poles from a sweep that reaches well below and above all of them."""
+    if not s.fine:
+        return Winding(None, None)
     turn = float(_turns(s).sum()) / (pi / 2)
     total = s.sizes.sum(axis=0)
     below = float(total[1] - total[0]) / log(s.hz[1] / s.hz[0])

@@ -1,0 +1,28 @@
+"""Every figure of this ledger has its formula and source beside the code that computes it."""
+
+from __future__ import annotations
+
+from polebook.devices import bjt, fet, opamp, triode
+from polebook.ledger import account, band, lines, miller, shares, sites, targets, time_constants
+from polebook.ledger.build import LATER, document, ledger
+from tests.laws.chains import chain
+
+MODULES = (account, band, lines, miller, shares, sites, targets, time_constants, bjt, fet, opamp, triode)
+FORMULAS = [formula for module in MODULES for formula in module.FORMULAS]
+NAMES = {formula.figure for formula in FORMULAS}
+NO_FORMULA = {"gain_unit", "name", "kind", "bridges", "gain_db", "noise_share", "k", "stage", "interstage", "owns_upper",
+              "owns_lower"}
+
+
+def test_every_figure_of_lines_nodes_and_the_whole_has_one() -> None:
+    doc = document(ledger(chain("six-stage")))
+    wanted = {f"overall.{key}" for key in doc["overall"] if key not in LATER}
+    wanted |= {f"lines.{key}" for key in doc["lines"][0]} | {f"nodes.{key}" for key in doc["nodes"][0]}
+    missing = {name for name in wanted - NAMES if name.split(".")[1] not in NO_FORMULA}
+    assert missing - {"nodes.allotted_lower_db"} == set()
+    assert {"bridges.k", "bridges.at_input", "bridges.at_output", "parts.tau_s", "parts.owns_upper"} <= NAMES
+
+
+def test_every_formula_says_what_it_is_and_where_it_stands() -> None:
+    for formula in FORMULAS:
+        assert formula.text and formula.source, formula.figure
