@@ -192,7 +192,7 @@ def run(command: str, path: str, number: int) -> Finding:
 
 
 def _worker(seed: int, jobs: Connection) -> None:
-    from polebook.ledger import build  # noqa: F401 - so that no import counts against the first file's limit
+    from polebook.book import build  # noqa: F401 - so that no import counts against the first file's limit
 
     with tempfile.TemporaryDirectory() as folder:
         path = str(Path(folder) / "spoilt.toml")

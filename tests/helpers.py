@@ -11,8 +11,8 @@ DEMOS = ROOT / "chains"
 
 def figures(path: str | Path) -> dict[str, Any]:
     """The program's ledger of a chain file, as the dict of its JSON."""
+    from polebook.book.build import document, ledger
     from polebook.chain.read import load
-    from polebook.ledger.build import document, ledger
 
     return document(ledger(load(str(path))))
 

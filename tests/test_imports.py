@@ -30,7 +30,7 @@ def _with_path(script):
 def test_the_command_line_starts_light(code):
     names, _ = modules_after(code)
     assert "polebook" in names
-    assert not names & {"textual", "rich", "scipy", "numpy", "polebook.chain", "polebook.ledger"}
+    assert not names & {"textual", "rich", "scipy", "numpy", "polebook.chain", "polebook.book"}
 
 
 def test_a_faulty_file_is_told_without_numpy(tmp_path):
@@ -62,7 +62,7 @@ def test_kinds_needs_no_numbers():
 def test_the_public_face():
     names, result = modules_after(
         f"import polebook\nchain = polebook.load({SIX!r})\nbefore = len([n for n in sys.modules if n == 'numpy'])\n"
-        "ledger = polebook.ledger_of(chain)\nresult = [chain.stages[0].name, before, polebook.__version__]"
+        "ledger = polebook.ledger(chain)\nresult = [chain.stages[0].name, before, polebook.__version__]"
     )
     assert result[:2] == ["Q1", 0]
     assert result[2].count(".") == 2

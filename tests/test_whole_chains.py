@@ -90,8 +90,8 @@ def a_dozen(ledger: dict[str, Any]) -> np.ndarray:
 
 def response(path: Path, frequencies: np.ndarray) -> np.ndarray:
     """H of the program: |H| and phase from the lines' gains and phases at one frequency after another."""
+    from polebook.book.build import at, ledger
     from polebook.chain.read import load
-    from polebook.ledger.build import at, ledger
 
     asked = ledger(load(str(path)))
     out = []
@@ -115,7 +115,7 @@ def test_response_beside_python_control(path):
 
 @by_name(CHAINS)
 def test_response_beside_the_nodal_equations(path):
-    """The same from the independent nodal equations, much closer."""
+    """A dozen frequencies again, from the independent nodal equations, much closer."""
     oracle, theirs = independent(path)
     frequencies = a_dozen(theirs)
     expected = [complex(oracle.h(float(f))) for f in frequencies]

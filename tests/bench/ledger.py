@@ -13,9 +13,9 @@ from pathlib import Path
 from statistics import median
 from time import perf_counter
 
+from polebook.book.build import document, ledger
 from polebook.chain.model import Chain
 from polebook.chain.read import load
-from polebook.ledger.build import document, ledger
 from polebook.stages.registry import KINDS
 
 SIX = Path(__file__).resolve().parents[2] / "chains" / "six-stage.toml"

@@ -127,7 +127,8 @@ def test_a_key_is_taken_out_and_nothing_else_moves():
 @pytest.mark.parametrize(
     ("path", "what"),
     [("Q1.kind", "stage Q1 has no kind"), ("source.resistance", "the source has no resistance"),
-     ("device.D.beta", "card D has no beta"), ("format", "does not say its format"), ("Q1.couple", "gives no Q1.couple")],
+     ("device.D.beta", "card D has no beta"), ("format", "does not say its format"),
+     ("Q1.couple", "gives no Q1.couple")],
 )  # fmt: skip
 def test_taking_out_what_is_needed_or_absent_is_refused(path, what):
     with pytest.raises(ProblemsFound, match=what):

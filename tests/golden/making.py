@@ -6,8 +6,8 @@ from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
+from polebook.book import build
 from polebook.chain import read
-from polebook.ledger import build
 from polebook.report.look import Look
 from polebook.report.pages import LEDGER, page
 from polebook.report.tables import at_frequency

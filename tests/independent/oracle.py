@@ -17,7 +17,7 @@ from tests.independent.kinds import DEVICE_KINDS
 from tests.independent.linear import Singular, mp
 from tests.independent.network import GROUND
 from tests.independent.quantity import number
-from tests.independent.solved import Solved, crossing
+from tests.independent.solved import TINY, Solved, crossing
 
 HALF_POWER = 10 * mp.log10(2)
 
@@ -162,7 +162,7 @@ class Oracle(Solved):
                 continue
             factor = 1 - self.mid_v[other] / self.mid_v[node]
             bridges = self.drawing.bridges.get(e.line, [])
-            if factor > 0 or any(part == e.part and self.find(end) == node for part, _, _, end, _ in bridges):
+            if factor > TINY or any(part == e.part and self.find(end) == node for part, _, _, end, _ in bridges):
                 total += e.value * factor
         return total
 

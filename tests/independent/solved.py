@@ -155,7 +155,8 @@ class Solved:
         first, last = np.log10(min(corners)) - 1, np.log10(max(corners)) + 1
         grid = 10.0 ** (np.arange(np.ceil(first * 40 - 1e-9), np.floor(last * 40 + 1e-9) + 1) / 40)
         error = np.abs(np.abs(self.sweep(grid)) / float(abs(self.gain)) - 1)
-        return upper, lower, mp.mpf(grid[int(np.argmin(error))])
+        least = np.flatnonzero(error <= error.min() + 1e-9)[0]  # ties go to the lower frequency
+        return upper, lower, mp.mpf(grid[least])
 
     def clean(self, f: Any) -> bool:
         """|H| at the band seed reaches |gain|/sqrt 2: there is a midband to take edges from."""
@@ -245,7 +246,9 @@ class Solved:
         found: list[Any] = []
         for start in starts[near & (size > 10.0 ** (span[0] - 2)) & (size < 10.0 ** (span[1] + 2))]:
             pole = self._pole(mp.mpc(complex(start)))
-            if pole is None or pole.real <= abs(pole) * mp.mpf(10) ** -15:
+            if pole is None or abs(pole - complex(start)) > abs(pole) / 2:
+                continue  # the start was none
+            if pole.real <= abs(pole) * mp.mpf(10) ** -15:
                 continue
             if all(abs(pole - p) > abs(p) * mp.mpf(10) ** -12 for p in found):
                 found += [pole] if abs(pole.imag) < abs(pole) * mp.mpf(10) ** -15 else [pole, mp.conj(pole)]

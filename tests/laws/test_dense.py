@@ -8,10 +8,10 @@ from math import log, pi, prod
 import numpy as np
 import pytest
 
+from polebook.book.build import ledger
+from polebook.book.shares import derivatives
+from polebook.book.solution import Solution
 from polebook.circuit.views import network
-from polebook.ledger.build import ledger
-from polebook.ledger.shares import derivatives
-from polebook.ledger.solution import Solution
 from polebook.solve.fold import fold
 from polebook.solve.sweep import relative_at
 from polebook.solve.transfer import adjoint, voltages

@@ -7,12 +7,13 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from polebook.book.build import document, ledger
+from polebook.book.time_constants import time_constants
 from polebook.circuit.build import circuit, values
 from polebook.circuit.views import network
-from polebook.ledger.build import document, ledger
-from polebook.ledger.time_constants import time_constants
 from polebook.solve.fold import fold
 from polebook.solve.inverse import inverse
+from polebook.solve.onward import onward
 from polebook.stages.registry import KINDS
 from tests.laws.chains import BY_NAME, WITH_BAND, chain
 
@@ -27,7 +28,7 @@ def test_scaling_all_impedances_leaves_gains_and_time_constants(name: str) -> No
     first = 1.0 if net.layout.emf >= 0 else 7.3  # V/A of a current source scales with the impedances
     assert two.gains[0] == pytest.approx(one.gains[0] * first, rel=1e-9)
     assert two.gains[1:] == pytest.approx(one.gains[1:], rel=1e-9)
-    taus, again = time_constants(net, inverse(one)), time_constants(scaled, inverse(two))
+    taus, again = (time_constants(mid, inverse(mid), onward(mid.net)) for mid in (one, two))
     assert again.taus == pytest.approx(taus.taus, rel=1e-7)
 
 

@@ -6,7 +6,7 @@ from math import prod
 
 import pytest
 
-from polebook.ledger.build import document, ledger
+from polebook.book.build import document, ledger
 from tests.laws.chains import BY_NAME, WITH_BAND, chain
 
 
@@ -46,7 +46,7 @@ def test_line_gains_multiply_to_the_gain(name: str) -> None:
 @pytest.mark.parametrize("name", WITH_BAND)
 def test_the_edge_itself_loses_three_db(name: str) -> None:
     book = ledger(chain(name))
-    from polebook.ledger.account import line_losses
+    from polebook.book.account import line_losses
 
     for edge in (book.lower_hz, book.upper_hz):
         if edge is not None:

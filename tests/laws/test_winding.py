@@ -5,9 +5,9 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
+from polebook.book.build import document, ledger
+from polebook.book.solution import Solution
 from polebook.chain.read import parse
-from polebook.ledger.build import document, ledger
-from polebook.ledger.solution import Solution
 from tests.laws.chains import chain
 
 
@@ -155,4 +155,4 @@ def test_finite_poles_by_the_growth_of_the_determinant(name: str) -> None:
     of = Solution(chain(name))
     net = of.circuit.network
     low, high = of.sweep.hz[0] / 10, of.sweep.hz[-1] * 10
-    assert winding(sweep(net, low, high, of.gains), net.layout) == of.winding
+    assert winding(sweep(net, low, high, of.gains)) == of.winding

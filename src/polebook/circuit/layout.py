@@ -92,7 +92,7 @@ def arrange(recorder: Recorder, emf: int) -> Layout:
     for index in range(len(segments) - 1, -1, -1):
         _stand(back, entries[index], ties[index])
         nodes = [k for k in segments[index].nodes if k != emf]
-        order = leaves_first(nodes, _ends(ties[index]), after[index], recorder.is_driven)
+        order = leaves_first(nodes, _ends(ties[index]), after[index], recorder.is_driven, _storing(segments[index]))
         steps[index] = [back.eliminate(k) for k in order]
     diagonal = [back.slots.setdefault((rows[k], k), len(back.slots)) for k in after]
     layout = Layout(recorder, emf, after, branches, stamps, 0, steps, [], diagonal, (-1, -1))
@@ -145,7 +145,7 @@ def _plan_segment(layout: Layout, graph: Graph, segment: Segment,
             onward.resistive.append((branch, graph.enter(other, other), graph.enter(other, origin)))
     _stand(graph, entries, ties)
     driven = [flag and k not in passed for k, flag in enumerate(layout.driven)]
-    order = leaves_first(nodes, _ends(ties), segment.before, driven)
+    order = leaves_first(nodes, _ends(ties), segment.before, driven, _storing(segment))
     onward.steps = [graph.eliminate(k) for k in order]
     return origin
 
@@ -154,6 +154,10 @@ def _shorted(layout: Layout, branch: int) -> bool:
     """Whether a series branch is a short at midband."""
     parts = [layout.parts[index] for index in layout.branches[branch].groups[0]]
     return any((part.type, part.role) in (("C", "low"), ("L", "high")) for part in parts)
+
+
+def _storing(segment: Segment) -> frozenset[int]:
+    return frozenset(storage.node for storage in segment.storages)
 
 
 def _ties(segments: list[Segment]) -> list[list[tuple[int, int, int]]]:

@@ -122,11 +122,13 @@ class Graph:
         return tuple(sorted(near))
 
 
-def leaves_first(nodes: list[int], ties: list[tuple[int, int]], last: int, driven: list[bool]) -> list[int]:
+def leaves_first(nodes: list[int], ties: list[tuple[int, int]], last: int, driven: list[bool],
+                 storing: frozenset[int]) -> list[int]:
     """An order in which every node has at most one unused series branch when its turn comes, a driven one none.
 
-    nodes are those to eliminate, ties the ends of the series branches (to other nodes or ground as well);
-    `last` is taken as late as the branches allow.
+    nodes are those to eliminate, ties the ends of the series branches (to other nodes or ground as well). As late as
+    the branches allow come `last`, then driven nodes, then those that store: the pivot of an op-amp's dominant pole
+    is then 1 plus its whole loop gain, which no difference of two large numbers could tell.
     """
     ends: dict[int, list[int]] = {k: [] for k in nodes}
     for i, j in ties:
@@ -136,7 +138,7 @@ def leaves_first(nodes: list[int], ties: list[tuple[int, int]], last: int, drive
     result: list[int] = []
     while ends:
         free = (k for k, others in ends.items() if len(others) <= (0 if driven[k] else 1))
-        k = min(free, key=lambda n: (n == last, -n))
+        k = min(free, key=lambda n: ((n == last) + 2 * driven[n] + (n in storing), -n))
         for other in ends.pop(k):
             if other in ends:
                 ends[other].remove(k)

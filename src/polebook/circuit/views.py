@@ -81,7 +81,7 @@ def entry_values(net: Network, s: Value, view: View) -> list[Value]:
     """Every entry at s (rad/s, a complex number or an array of them), in the order of the layout's stamps."""
     if view in ("midband", "lower"):
         result = list(net.conductance)
-    elif hasattr(s, "shape") and not hasattr(net.conductance[0], "shape"):
+    elif hasattr(s, "shape") and not any(hasattr(g, "shape") for g in net.conductance[:1]):
         result = _outer(net, s)
     else:
         result = [g + s * c for g, c in zip(net.conductance, net.storing, strict=True)]

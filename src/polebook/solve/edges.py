@@ -14,6 +14,8 @@ from polebook.solve.root import Function, bracketed_maximum, bracketed_root
 from polebook.solve.sweep import Array, Sweep, relative, relative_at
 
 HALF_POWER = -0.5 * log(2.0)  # neper
+FLAT = 1e-9  # neper; what rises less above the midband gain is a plateau
+OUTWARD = 8.0  # ln f by which a limit is looked for beyond the sweep
 DECIBEL = 20.0 / log(10.0)  # dB in a neper
 
 
@@ -95,13 +97,16 @@ def _bottom(over: Function, x: list[float], y: list[float]) -> tuple[float, floa
 
 
 def _peak(at: Function, x: Array, loss: Array) -> float:
-    """20·log10 of the greatest |H|/|gain|, not below 0 dB: every bump of the grid near the top is climbed."""
+    """20·log10 of the greatest |H|/|gain|, not below 0 dB: every bump of the grid that may reach the top is climbed.
+
+    A size that still rises towards an end of the sweep has its limit a little beyond it.
+    """
     top = float(loss.max())
-    if top <= 1e-13:
-        return 0.0
-    best = top
-    for k in np.nonzero(loss > top - 0.1)[0]:
-        if 0 < k < len(loss) - 1 and loss[k] >= max(loss[k - 1], loss[k + 1]):
+    best = max([top, *(at(x[end] + step) for end, step in ((0, -OUTWARD), (-1, OUTWARD)) if loss[end] > top - 0.1)])
+    sides = np.diff(loss)
+    for k in np.nonzero((sides[:-1] >= 0) & (sides[1:] <= 0))[0] + 1:
+        reach = float(loss[k] + max(sides[k - 1], -sides[k]))
+        if reach > max(best, FLAT):
             a, b, c = x[k - 1:k + 2].tolist()
             best = max(best, bracketed_maximum(at, (a, b, c), tuple(loss[k - 1:k + 2].tolist()))[1])
     return max(0.0, best * DECIBEL)

@@ -14,10 +14,15 @@ from dataclasses import dataclass
 from polebook.solve.fold import Folded, Taken
 from polebook.stages.stamper import GROUND, Value
 
+OPEN = 1e-14  # what is left of a loop's admittance below this share of a difference is rounding
+
 
 @dataclass(slots=True)
 class Inverse:
-    """Z by (i, j), where both are ends of one element; `loops` the resistance around each series branch."""
+    """Z by (i, j), where both are ends of one element; `loops` the resistance around each series branch.
+
+    A loop is None where it is open.
+    """
 
     z: dict[tuple[int, int], Value]
     loops: dict[int, Value | None]
@@ -96,4 +101,4 @@ def _loop(z: dict[tuple[int, int], Value], taken: Taken, count: int) -> Value | 
     for j, a_kj in cols:
         for i, a_ik in rows:
             total = total - taken.share * a_kj * z[j, i] * a_ik
-    return None if total == 0.0 else taken.across / total
+    return None if abs(total) <= OPEN * abs(taken.a_kk) else taken.across / total

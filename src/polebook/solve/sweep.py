@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING, TypeAlias
 
 import numpy as np
 
-from polebook.circuit.views import Network, View
+from polebook.circuit.views import Network, View, impedance
 from polebook.solve.fold import Folded, fold
 
 if TYPE_CHECKING:  # numpy.typing costs 5 ms at start-up
@@ -62,11 +62,9 @@ def relative_at(net: Network, hz: float, midband: list[float], view: View = "ful
 
 
 def sweep(net: Network, low: float, high: float, midband: list[float], view: View = "full") -> Sweep:
-    """Sweeps from low to high (Hz), refined by halves where something turns. Gains at midband, by line."""
-    decades = np.log10(high / low)
-    grid = np.geomspace(low, high, max(8, int(decades * POINTS_A_DECADE) + 1))
+    """Sweeps from low to high (Hz) or further, refined by halves where something turns. Gains at midband, by line."""
     with np.errstate(all="ignore"):
-        result = _evaluate(net, grid, midband, view)
+        result = _first(net, low, high, midband, view)
         for _ in range(ROUNDS):
             coarse = _coarse(result)
             if not coarse.any():
@@ -80,14 +78,58 @@ def sweep(net: Network, low: float, high: float, midband: list[float], view: Vie
     return result
 
 
+def _first(net: Network, low: float, high: float, midband: list[float], view: View) -> Sweep:
+    """The first grid, and in the same evaluation a look beyond it: it is widened on either side until the determinant
+    grows by a whole power there, twice over."""
+    away = 100.0 ** np.arange(6)
+    pairs = np.array([1.0, 1.1])
+    outward = np.concatenate([(low / away)[:, None] * pairs, (high * away)[:, None] * pairs]).ravel()
+    both = _evaluate(net, np.concatenate([outward, _grid(low, high)]), midband, view)
+    count = outward.size
+    slope = np.diff(both.sizes[:, :count].sum(axis=0).reshape(-1, 2), axis=1).reshape(2, -1) / log(1.1)
+    below, above = _whole(slope[0]), _whole(slope[1])
+    if below or above:
+        return _evaluate(net, _grid(low / away[below], high * away[above]), midband, view)
+    return Sweep(both.hz[count:], both.loss[count:], both.angles[:, count:], both.sizes[:, count:],
+                 both.turns[:, count:])
+
+
+def _grid(low: float, high: float) -> Array:
+    return np.geomspace(low, high, max(8, int(log(high / low) / log(10.0) * POINTS_A_DECADE) + 1))
+
+
+def _whole(slope: Array) -> int:
+    """Place of the first slope that is a whole number and stays one; else of the one that comes nearest."""
+    off = np.abs(slope - np.round(slope)) + np.abs(np.diff(slope, append=slope[-1]))
+    off = np.where(np.isfinite(off), off, inf)
+    whole = np.nonzero(off < 2e-3)[0]
+    return int(whole[0] if whole.size else np.argmin(off))
+
+
 def _evaluate(net: Network, hz: Array, midband: list[float], view: View) -> Sweep:
     folded = fold(net, 2j * pi * hz, view)
     shape = hz.shape
     pivots = np.array([np.broadcast_to(step.across, shape) for taken in folded.taken for step in taken], dtype=complex)
     gains = np.array([np.broadcast_to(gain, shape) for gain in folded.gains], dtype=complex)
+    pivots = np.concatenate([pivots, _denominators(net, hz, view)])
     sizes = np.log(np.abs(pivots))
     loss = np.log(np.abs(gains) / np.abs(np.array(midband))[:, None]).sum(axis=0)
     return Sweep(hz, loss, np.angle(pivots), sizes, np.angle(gains))
+
+
+def _denominators(net: Network, hz: Array, view: View) -> NDArray[np.complex128]:
+    """What the pivots lack, of every branch with several parts, (n, f): with them their product is det(G + sC).
+
+    A coil and a capacitor in one branch resonate here and in no pivot alone.
+    """
+    s, rows = 2j * pi * hz, []
+    for branch in net.layout.branches:
+        kinds = [net.layout.parts[index].type for group in branch.groups for index in group]
+        z = impedance(net, branch, s, view) if len(kinds) > 1 else None
+        if z is not None and set(kinds) & {"L", "C"}:
+            factor = (1.0 / z) * (s if "L" in kinds else 1.0) if branch.series else z * (s if "C" in kinds else 1.0)
+            rows.append(np.broadcast_to(factor, hz.shape))
+    return np.array(rows, dtype=complex).reshape(len(rows), hz.size)
 
 
 def wrapped(angles: Array) -> Array:

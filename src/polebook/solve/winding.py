@@ -3,7 +3,7 @@
 The determinant D(s) of the network is the product of the pivots of the elimination and of the denominators of
 its branches. With the turn Δ of arg D(jω) from 0+ to infinity and D growing as ω^n0 below and ω^n1 above, the
 number of zeros with positive real part is ((n1 - n0) - Δ/(π/2))/2 (argument principle), and n1 - n0 the number
-of finite poles that are not at s = 0. The denominators are passive, so that they add to both alike.
+of finite poles that are not at s = 0.
 """
 
 from __future__ import annotations
@@ -13,7 +13,6 @@ from math import log, pi
 
 import numpy as np
 
-from polebook.circuit.layout import Layout
 from polebook.solve.sweep import NARROW, Array, Sweep, wrapped
 
 
@@ -25,7 +24,7 @@ class Winding:
     right: int | None
 
 
-def winding(s: Sweep, layout: Layout) -> Winding:
+def winding(s: Sweep) -> Winding:
     """Counts poles from a sweep that reaches well below and above all of them."""
     if not s.fine:
         return Winding(None, None)
@@ -38,27 +37,19 @@ def winding(s: Sweep, layout: Layout) -> Winding:
     whole = abs(grown - round(grown)) < 0.1 and abs(right - round(right)) < 0.1
     if not whole or round(right) < 0:
         return Winding(None, None)
-    return Winding(round(grown) + _hidden(layout), round(right))
+    return Winding(round(grown), round(right))
 
 
 def _turns(s: Sweep) -> Array:
     """Turn of arg D between neighbours, rad.
 
     Where a pivot still turns within a hair's breadth, a zero of it lies on the axis and a pole of another one with
-    it (a lossless trap): only their sum has a direction there.
+    it (a lossless trap): only their sum has a direction there. Half a turn of the sum is a pole on the axis itself,
+    which has no positive real part: it counts as those to the left of it do.
     """
     each = wrapped(s.angles)
     narrow = np.diff(s.hz) <= 4 * NARROW * s.hz[1:]
     result: Array = each.sum(axis=0)
-    result[narrow] -= 2 * pi * np.round(result[narrow] / (2 * pi))
+    jump = np.abs(result[narrow] - 2 * pi * np.round(result[narrow] / (2 * pi)))
+    result[narrow] = np.where(jump > pi / 2, pi, 0.0)
     return result
-
-
-def _hidden(layout: Layout) -> int:
-    """Degree of the denominators of branches of several parts, roots at s = 0 left aside."""
-    count = 0
-    for branch in layout.branches:
-        types = [layout.parts[index].type for group in branch.groups for index in group]
-        if len(types) > 1:
-            count += sum(kind in "CL" for kind in types)
-    return count

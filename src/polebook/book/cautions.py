@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from polebook.ledger.solution import Solution
+from polebook.book.solution import Solution
 from polebook.problem import Problem
 
 TOUCH_V = 60.0  # V d.c.; IEC 61140 and EN 60204-1 take 60 V d.c. (25 V a.c.) as the limit without touch protection

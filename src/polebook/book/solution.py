@@ -5,10 +5,10 @@ from __future__ import annotations
 from functools import cached_property
 from math import isfinite, log
 
+from polebook.book.reach import within_reach
+from polebook.book.time_constants import TimeConstants, time_constants
 from polebook.chain.model import Chain
 from polebook.circuit.build import Circuit, circuit
-from polebook.ledger.reach import within_reach
-from polebook.ledger.time_constants import TimeConstants, time_constants
 from polebook.problem import Problem, ProblemsFound
 from polebook.solve.edges import Band, band, first_seed, seed
 from polebook.solve.fold import Folded, NotHeld, fold
@@ -64,7 +64,7 @@ class Solution:
 
     @cached_property
     def constants(self) -> TimeConstants:
-        return time_constants(self.circuit.network, self.inverse)
+        return time_constants(self.midband, self.inverse, self.open_lines)
 
     @cached_property
     def sweep(self) -> Sweep:
@@ -73,7 +73,7 @@ class Solution:
 
     @cached_property
     def winding(self) -> Winding:
-        return winding(self.sweep, self.circuit.layout)
+        return winding(self.sweep)
 
     @cached_property
     def band(self) -> Band:

@@ -8,7 +8,9 @@ from math import inf, isfinite, pi
 from polebook.circuit.elements import Branch
 from polebook.circuit.views import Network, admittances, impedance
 from polebook.formula import Formula
+from polebook.solve.fold import Folded
 from polebook.solve.inverse import Inverse
+from polebook.solve.onward import Open
 
 COCHRAN_GRABEL = "B. L. Cochran and A. Grabel, A method for the determination of the transfer function of electronic " \
                  "circuits, IEEE Trans. Circuit Theory 20, 1973 (from memory)"
@@ -34,14 +36,21 @@ class TimeConstants:
         return [tau for tau in self.by_part.values() if tau is not None]
 
 
-def time_constants(net: Network, z: Inverse) -> TimeConstants:
-    """Open-circuit constants of the high-role parts, short-circuit ones of the low-role parts."""
+def time_constants(folded: Folded, z: Inverse, lines: list[Open]) -> TimeConstants:
+    """Open-circuit constants of the high-role parts, short-circuit ones of the low-role parts.
+
+    folded, z and lines are the midband network: folded into its source, its inverse, and its lines left open.
+    """
+    net = folded.net
     found: dict[int, list[float | None]] = {}
     for number, branch in enumerate(net.layout.branches):
         for group in branch.groups:
             for index in group:
                 if net.layout.parts[index].type != "R":
                     ohm = seen(net, z, number, branch, group, index)
+                    line = net.layout.parts[index].segment
+                    if net.layout.parts[index].name == "couple" and line:
+                        ohm = _coupled(lines[line - 1].output_ohm, folded.inputs[line])
                     found.setdefault(index, []).append(_tau(net, index, ohm))
     for segment in net.layout.segments:
         for storage in segment.storages:
@@ -53,6 +62,11 @@ def time_constants(net: Network, z: Inverse) -> TimeConstants:
     upper = sum(tau for index, tau in by_part.items() if tau and net.layout.parts[index].role == "high")
     lower = sum(1.0 / tau for index, tau in by_part.items() if tau and net.layout.parts[index].role == "low")
     return TimeConstants(by_part, _hz(1.0 / upper if upper else 0.0), _hz(lower))
+
+
+def _coupled(ahead_ohm: float | None, behind: float | None) -> float | None:
+    """What a coupling sees: it is all that joins what is ahead of it to what is behind it (siemens)."""
+    return None if ahead_ohm is None or not behind else ahead_ohm + 1.0 / behind
 
 
 def _hz(rate: float) -> float | None:

@@ -6,10 +6,10 @@ from math import atan2, degrees, isfinite, log10, pi
 from typing import Any
 
 from polebook import __version__
-from polebook.ledger.account import line_losses
-from polebook.ledger.book import Ledger, ledger
-from polebook.ledger.lines import Line
-from polebook.ledger.reach import within_reach
+from polebook.book.account import line_losses
+from polebook.book.ledger import Ledger, ledger
+from polebook.book.lines import Line
+from polebook.book.reach import within_reach
 from polebook.solve.fold import fold
 
 LATER = ("rise_time_s", "overshoot_percent", "settling_1_s", "settling_01_s", "sag_percent", "group_delay_s",

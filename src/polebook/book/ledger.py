@@ -5,17 +5,17 @@ from __future__ import annotations
 from functools import cached_property
 from math import pi
 
+from polebook.book import account as accounts
+from polebook.book.account import Account
+from polebook.book.cautions import cautions
+from polebook.book.lines import Line, lines
+from polebook.book.miller import Bridge, bridges
+from polebook.book.shares import owned
+from polebook.book.sites import Site, equal_stage_pole, node_estimate, sites
+from polebook.book.solution import Solution
+from polebook.book.targets import Got, Target, targets
 from polebook.chain.model import Chain
 from polebook.circuit import bias_cautions
-from polebook.ledger import account as accounts
-from polebook.ledger.account import Account
-from polebook.ledger.cautions import cautions
-from polebook.ledger.lines import Line, lines
-from polebook.ledger.miller import Bridge, bridges
-from polebook.ledger.shares import owned
-from polebook.ledger.sites import Site, equal_stage_pole, node_estimate, sites
-from polebook.ledger.solution import Solution
-from polebook.ledger.targets import Got, Target, targets
 from polebook.problem import Problem
 from polebook.solve.fold import fold
 

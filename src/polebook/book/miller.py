@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from polebook.book.solution import Solution
 from polebook.formula import Formula
-from polebook.ledger.solution import Solution
 
 MILLER = "J. M. Miller, Dependence of the input impedance of a three-electrode vacuum tube upon the load in the " \
          "plate circuit, Scientific Papers of the Bureau of Standards 15, 1920 (from memory)"

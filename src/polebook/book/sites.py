@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import pi, sqrt
 
+from polebook.book.solution import Solution
 from polebook.circuit.layout import Layout
 from polebook.circuit.views import impedance
 from polebook.formula import Formula
-from polebook.ledger.solution import Solution
 from polebook.solve.root import bracketed_root
 from polebook.stages.stamper import GROUND
 

@@ -4,9 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from polebook.book.miller import Bridge, leading
+from polebook.book.solution import Solution
 from polebook.formula import Formula
-from polebook.ledger.miller import Bridge, leading
-from polebook.ledger.solution import Solution
 
 FORMULAS = (
     Formula("lines.gain", "A_k = V(n_k)/V(n_k-1) at midband, loaded", "definition"),

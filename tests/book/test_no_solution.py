@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import pytest
 
+from polebook.book.build import ledger
 from polebook.chain.read import parse
-from polebook.ledger.build import ledger
 from polebook.problem import Problem, ProblemsFound
 
 

@@ -2,16 +2,16 @@
 
 from __future__ import annotations
 
+from polebook.book import account, band, lines, miller, shares, sites, targets, time_constants
+from polebook.book.build import LATER, document, ledger
 from polebook.devices import bjt, fet, opamp, triode
-from polebook.ledger import account, band, lines, miller, shares, sites, targets, time_constants
-from polebook.ledger.build import LATER, document, ledger
 from tests.laws.chains import chain
 
 MODULES = (account, band, lines, miller, shares, sites, targets, time_constants, bjt, fet, opamp, triode)
 FORMULAS = [formula for module in MODULES for formula in module.FORMULAS]
 NAMES = {formula.figure for formula in FORMULAS}
-NO_FORMULA = {"gain_unit", "name", "kind", "bridges", "gain_db", "noise_share", "k", "stage", "interstage", "owns_upper",
-              "owns_lower"}
+NO_FORMULA = {"gain_unit", "name", "kind", "bridges", "gain_db", "noise_share", "k", "stage", "interstage",
+              "owns_upper", "owns_lower"}
 
 
 def test_every_figure_of_lines_nodes_and_the_whole_has_one() -> None:

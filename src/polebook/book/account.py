@@ -5,10 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import log10, pi
 
+from polebook.book.miller import Bridge
+from polebook.book.sites import interstage_names
+from polebook.book.solution import Solution
 from polebook.formula import Formula
-from polebook.ledger.miller import Bridge
-from polebook.ledger.sites import interstage_names
-from polebook.ledger.solution import Solution
 from polebook.solve.edges import DECIBEL
 from polebook.solve.fold import fold
 from polebook.solve.sweep import neper
