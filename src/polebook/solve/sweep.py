@@ -12,7 +12,8 @@ from typing import TYPE_CHECKING, TypeAlias
 
 import numpy as np
 
-from polebook.circuit.views import Network, View, impedance
+from polebook.circuit.views import Network, View
+from polebook.solve.determinant import determinant
 from polebook.solve.fold import Folded, fold
 
 if TYPE_CHECKING:  # numpy.typing costs 5 ms at start-up
@@ -74,8 +75,16 @@ def sweep(net: Network, low: float, high: float, midband: list[float], view: Vie
                 break
             middle = np.sqrt(result.hz[:-1][coarse] * result.hz[1:][coarse])
             result = _merge(result, _evaluate(net, middle, midband, view))
-    result.fine = result.fine and bool(np.isfinite(result.sizes).all() and np.isfinite(result.turns).all())
-    return result
+    return _finite(result)
+
+
+def _finite(s: Sweep) -> Sweep:
+    """Without points that hit a zero or a pole of a factor to the last digit; at the ends there may be none."""
+    kept = np.isfinite(s.sizes).all(axis=0) & np.isfinite(s.turns).all(axis=0) & np.isfinite(s.angles).all(axis=0)
+    if kept.all():
+        return s
+    fine = s.fine and bool(kept[:2].all() and kept[-2:].all() and kept.mean() > 0.9)
+    return Sweep(s.hz[kept], s.loss[kept], s.angles[:, kept], s.sizes[:, kept], s.turns[:, kept], fine)
 
 
 def _first(net: Network, low: float, high: float, midband: list[float], view: View) -> Sweep:
@@ -107,29 +116,14 @@ def _whole(slope: Array) -> int:
 
 
 def _evaluate(net: Network, hz: Array, midband: list[float], view: View) -> Sweep:
-    folded = fold(net, 2j * pi * hz, view)
+    s = 2j * pi * hz
+    folded = fold(net, s, view)
     shape = hz.shape
-    pivots = np.array([np.broadcast_to(step.across, shape) for taken in folded.taken for step in taken], dtype=complex)
+    pivots = determinant(folded, s, view)
     gains = np.array([np.broadcast_to(gain, shape) for gain in folded.gains], dtype=complex)
-    pivots = np.concatenate([pivots, _denominators(net, hz, view)])
     sizes = np.log(np.abs(pivots))
     loss = np.log(np.abs(gains) / np.abs(np.array(midband))[:, None]).sum(axis=0)
     return Sweep(hz, loss, np.angle(pivots), sizes, np.angle(gains))
-
-
-def _denominators(net: Network, hz: Array, view: View) -> NDArray[np.complex128]:
-    """What the pivots lack, of every branch with several parts, (n, f): with them their product is det(G + sC).
-
-    A coil and a capacitor in one branch resonate here and in no pivot alone.
-    """
-    s, rows = 2j * pi * hz, []
-    for branch in net.layout.branches:
-        kinds = [net.layout.parts[index].type for group in branch.groups for index in group]
-        z = impedance(net, branch, s, view) if len(kinds) > 1 else None
-        if z is not None and set(kinds) & {"L", "C"}:
-            factor = (1.0 / z) * (s if "L" in kinds else 1.0) if branch.series else z * (s if "C" in kinds else 1.0)
-            rows.append(np.broadcast_to(factor, hz.shape))
-    return np.array(rows, dtype=complex).reshape(len(rows), hz.size)
 
 
 def wrapped(angles: Array) -> Array:

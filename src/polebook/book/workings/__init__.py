@@ -1,0 +1,1 @@
+"""How each figure of the ledger came about: a file for each section of the document."""
