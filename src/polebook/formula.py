@@ -2,8 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from typing import Any
 
 
@@ -40,7 +39,8 @@ class Number:
 class Step:
     """One line of arithmetic: `symbol` = `text`, an expression of the numbers' and earlier steps' symbols.
 
-    must  "" for a result; for a check the expression that `text` has to come to, and its value
+    result  it comes to the figure itself
+    must    "" but for a check: the expression that `text` has to come to; must_value, its value
     """
 
     symbol: str
@@ -48,6 +48,7 @@ class Step:
     value: float
     unit: str
     about: str = ""
+    result: bool = False
     must: str = ""
     must_value: float | None = None
 
@@ -72,7 +73,6 @@ class Working:
     steps: tuple[Step, ...] = ()
     why: str = ""
     note: str = ""
-    values: Mapping[str, float] = field(default_factory=dict)
 
     def document(self) -> dict[str, Any]:
         """The working as plain data, numbers at full precision."""
@@ -82,6 +82,6 @@ class Working:
             "numbers": [{"symbol": n.symbol, "value": n.value, "unit": n.unit, "about": n.about, "from": n.origin,
                          "kind": n.kind} for n in self.numbers],
             "steps": [{"symbol": s.symbol, "text": s.text, "value": s.value, "unit": s.unit, "about": s.about,
-                       "must": s.must, "must_value": s.must_value} for s in self.steps],
+                       "result": s.result, "must": s.must, "must_value": s.must_value} for s in self.steps],
             "why": self.why, "note": self.note,
         }

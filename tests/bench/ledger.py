@@ -1,9 +1,9 @@
 """Time of a warm ledger against the number of stages: `python -m tests.bench.ledger`.
 
 The chain is the six-stage demo's row of stages, repeated; its low-role capacitors are made a hundred times larger so
-that 60 stages still have a band. A ledger here is everything that `--json` prints, from the chain as read: bias,
-layout, midband, sweep, edges, account, shares. The median of 15 runs after 3 to warm up; ratios within one run count,
-milliseconds belong to one machine.
+that 60 stages still have a band. "figures" is a ledger from the chain as read: bias, layout, midband, sweep, edges,
+account, shares; "all" adds poles, zeros and leverage, everything that `--json` prints. Medians of several runs after
+warming up; ratios within one run count, milliseconds belong to one machine.
 """
 
 from __future__ import annotations
@@ -38,27 +38,33 @@ def repeated(chain: Chain, count: int) -> Chain:
     return replace(chain, stages=tuple(stages), numbers=numbers, given=frozenset(numbers))
 
 
-def milliseconds(chain: Chain) -> float:
-    """Median time of one whole ledger."""
-    for _ in range(3):
-        document(ledger(chain))
+FIGURES = ("overall", "lines", "nodes", "bias", "account", "targets", "cautions")
+
+
+def milliseconds(chain: Chain, only: tuple[str, ...] | None, runs: int) -> float:
+    """Median time of one ledger."""
+    document(ledger(chain), only)
     times = []
-    for _ in range(15):
+    for _ in range(runs):
         start = perf_counter()
-        document(ledger(chain))
+        document(ledger(chain), only)
         times.append(1e3 * (perf_counter() - start))
     return median(times)
 
 
 def main() -> None:
     chain = load(str(SIX))
-    of_file = milliseconds(chain)
-    print(f"six-stage.toml as it is  {of_file:7.2f} ms")
-    rows = {count: milliseconds(repeated(chain, count)) for count in COUNTS}
-    print("stages       ms   to six stages   upper edge, Hz")
-    for count, ms in rows.items():
+    print(f"six-stage.toml as it is: figures {milliseconds(chain, FIGURES, 21):.2f} ms, "
+          f"all {milliseconds(chain, None, 21):.2f} ms")
+    rows = {}
+    for count in COUNTS:
+        longer = repeated(chain, count)
+        runs = 21 if count < 20 else 5
+        rows[count] = (milliseconds(longer, FIGURES, runs), milliseconds(longer, None, min(runs, 3 if count > 30 else 9)))
+    print("stages  figures ms  to six      all ms  to six   upper edge, Hz")
+    for count, (figures, everything) in rows.items():
         edge = ledger(repeated(chain, count)).upper_hz
-        print(f"{count:6} {ms:8.2f} {ms / rows[6]:13.2f}   {edge}")
+        print(f"{count:6} {figures:11.2f} {figures / rows[6][0]:7.2f} {everything:11.2f} {everything / rows[6][1]:7.2f}   {edge}")
 
 
 if __name__ == "__main__":

@@ -15,13 +15,19 @@ from polebook.solve.sweep import neper
 
 BUDGET_DB = 10.0 * log10(2.0)
 FORMULAS = (
-    Formula("nodes.lost_upper_db", "-20·log10(|A(f_a)|/|A|) of the line into the node; f_a is the target edge, "
-                                   "else the exact one", "definition"),
-    Formula("nodes.lost_lower_db", "the same at the lower edge", "definition"),
+    Formula("nodes.lost_upper_db", "-20·log10(|A(f_a)|/|A|) of the line into the node; f_a is the target's upper "
+                                   "edge, else the exact one", "definition"),
+    Formula("nodes.lost_lower_db", "-20·log10(|A(f_a)|/|A|) of the line into the node; f_a is the target's lower "
+                                   "edge, else the exact one", "definition"),
     Formula("nodes.allotted_upper_db", "the node's allot, else an even share of what is left of 10·log10(2) dB",
             "definition"),
-    Formula("account.upper.lost_db", "sum over the nodes: the chain's loss at f_a", "definition"),
-    Formula("account.upper.left_db", "budget - lost", "definition"),
+    Formula("nodes.allotted_lower_db", "an even share of 10·log10(2) dB for each node that loses", "definition"),
+    *(formula for end in ("upper", "lower") for formula in (
+        Formula(f"account.{end}.edge_hz", f"the target's {end} edge, else the exact one", "definition"),
+        Formula(f"account.{end}.budget_db", "10·log10(2): half the power", "definition of the edge"),
+        Formula(f"account.{end}.lost_db", "sum over the nodes: the chain's loss at the account's edge", "definition"),
+        Formula(f"account.{end}.left_db", "budget - lost", "definition"),
+    )),
 )
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Collection, Mapping
 from math import atan2, degrees, isfinite, log10, pi
 from typing import Any
 
@@ -9,6 +10,7 @@ from polebook import __version__
 from polebook.book.account import line_losses
 from polebook.book.ledger import Ledger, ledger
 from polebook.book.lines import Line
+from polebook.book.poles import Root
 from polebook.book.reach import within_reach
 from polebook.solve.fold import fold
 
@@ -16,30 +18,31 @@ LATER = ("rise_time_s", "overshoot_percent", "settling_1_s", "settling_01_s", "s
          "group_delay_spread_s", "noise_density", "noise_total_output", "noise_total_input", "noise_from_hz",
          "noise_to_hz", "noise_figure_db", "supply_current_a", "clips_first", "largest_source", "dynamic_range_db",
          "noise_margin_db", "full_power_hz")
-LEVERAGE = ("gain", "lower_edge", "upper_edge", "noise")
 __all__ = ["Ledger", "at", "document", "ledger"]
 
 
-def document(of: Ledger) -> dict[str, Any]:
-    """The whole ledger: base SI units at full precision, None where a figure does not apply."""
+def document(of: Ledger, only: Collection[str] | None = None) -> dict[str, Any]:
+    """The whole ledger: base SI units at full precision, None where a figure does not apply.
+
+    With `only`, sections (keys of SECTIONS) that are not named stand as None and are not computed.
+    """
     with within_reach(of.chain):
-        return _document(of)
+        result = {"format": 1, "tool": f"polebook {__version__}",
+                  "chain": {"title": of.chain.title, "digest": of.chain.digest}}
+        return result | {name: make(of) if only is None or name in only else None for name, make in SECTIONS.items()}
 
 
-def _document(of: Ledger) -> dict[str, Any]:
-    owners = by_stage(of, of.owns_upper), by_stage(of, of.owns_lower)
-    return {
-        "format": 1, "tool": f"polebook {__version__}",
-        "chain": {"title": of.chain.title, "digest": of.chain.digest},
-        "overall": overall(of), "lines": [line(one, *owners) for one in of.lines], "nodes": nodes(of),
-        "parts": parts(of), "cards": None, "bias": operating(of), "rails": None, "poles": None, "zeros": None,
-        "account": account(of),
-        "targets": [{"name": t.name, "want": t.want, "got": t.got, "margin": t.margin, "met": t.met, "why": t.why}
-                    for t in of.targets],
-        "levels": None, "verdict": None,
-        "cautions": [{"stage": _owner(of, problem.place), "text": f"{problem.what}: {problem.why}; {problem.fix}"}
-                     for problem in of.cautions],
-    }
+def roots(found: tuple[Root, ...] | None) -> list[dict[str, Any]] | None:
+    """Poles or zeros as rows, rad/s, Hz; None where they are not resolved."""
+    if found is None:
+        return None
+    return [{"re": r.value.real, "im": r.value.imag, "hz": r.hz, "q": r.q, "stage": r.stage} for r in found]
+
+
+def cards(of: Ledger) -> list[dict[str, Any]]:
+    """Every figure that the file states on a card in use, with its leverage; values in the key's own unit."""
+    return [{"device": card, "figure": key, "value": value, "leverage": {**row, "noise": None}}
+            for (card, key), (value, row) in of.leverage.cards.items()]
 
 
 def _owner(of: Ledger, place: object) -> str | None:
@@ -77,6 +80,12 @@ def by_stage(of: Ledger, shares: dict[int, float]) -> dict[str, float]:
     return sums
 
 
+def lines(of: Ledger) -> list[dict[str, Any]]:
+    """Source, stages and load."""
+    owners = by_stage(of, of.owns_upper), by_stage(of, of.owns_lower)
+    return [line(one, *owners) for one in of.lines]
+
+
 def line(one: Line, upper: dict[str, float], lower: dict[str, float]) -> dict[str, Any]:
     return {
         "name": one.name, "kind": one.kind, "gain": one.gain, "gain_db": decibels(one.gain), "open_gain": one.open_gain,
@@ -105,7 +114,9 @@ def nodes(of: Ledger) -> list[dict[str, Any]]:
 
 
 def parts(of: Ledger) -> list[dict[str, Any]]:
+    """Every part of the network, then the stated currents; a fitted part's leverage counts what it does to the bias."""
     net, taus = of.solution.circuit.network, of.solution.constants.by_part
+    lever = of.leverage
     result = []
     for index, part in enumerate(net.layout.parts):
         if part.type == "gain":
@@ -113,8 +124,12 @@ def parts(of: Ledger) -> list[dict[str, Any]]:
         result.append({
             "stage": part.stage, "part": part.name, "type": part.type, "role": part.role or None,
             "value": net.values[index], "tau_s": taus.get(index), "owns_upper": of.owns_upper.get(index),
-            "owns_lower": of.owns_lower.get(index), "noise_share": None, "leverage": dict.fromkeys(LEVERAGE),
+            "owns_lower": of.owns_lower.get(index), "noise_share": None,
+            "leverage": {**lever.parts.get((part.stage, part.name), lever.elements[index]), "noise": None},
         })
+    for (stage, key), (value, row) in lever.currents.items():
+        result.append({"stage": stage, "part": key, "type": "I", "role": None, "value": value, "tau_s": None,
+                       "owns_upper": None, "owns_lower": None, "noise_share": None, "leverage": {**row, "noise": None}})
     return result
 
 
@@ -139,6 +154,30 @@ def account(of: Ledger) -> dict[str, Any]:
         result[name] = {"edge_hz": one.edge_hz, "budget_db": 10.0 * log10(2.0), "lost_db": one.total_db,
                         "left_db": one.left_db}
     return result
+
+
+def targets(of: Ledger) -> list[dict[str, Any]]:
+    """Every target of the file with what was got."""
+    return [{"name": t.name, "want": t.want, "got": t.got, "margin": t.margin, "met": t.met, "why": t.why}
+            for t in of.targets]
+
+
+def cautions(of: Ledger) -> list[dict[str, Any]]:
+    """Every caution with the stage, card or table that it is about."""
+    return [{"stage": _owner(of, problem.place), "text": f"{problem.what}: {problem.why}; {problem.fix}"}
+            for problem in of.cautions]
+
+
+def _later(_: Ledger) -> None:
+    """A section that this version does not compute."""
+
+
+SECTIONS: Mapping[str, Callable[[Ledger], Any]] = {
+    "overall": overall, "lines": lines, "nodes": nodes, "parts": parts, "cards": cards, "bias": operating,
+    "rails": _later, "poles": lambda of: roots(of.poles.roots), "zeros": lambda of: roots(of.zeros),
+    "account": account, "targets": targets, "levels": _later, "verdict": _later, "cautions": cautions,
+}
+"""Key of the document -> what computes it."""
 
 
 def at(of: Ledger, hz: float) -> dict[str, Any]:

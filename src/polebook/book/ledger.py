@@ -8,8 +8,10 @@ from math import pi
 from polebook.book import account as accounts
 from polebook.book.account import Account
 from polebook.book.cautions import cautions
+from polebook.book.leverage import Leverage, leverage
 from polebook.book.lines import Line, lines
 from polebook.book.miller import Bridge, bridges
+from polebook.book.poles import Resolved, Root, poles, zeros
 from polebook.book.shares import owned
 from polebook.book.sites import Site, equal_stage_pole, node_estimate, sites
 from polebook.book.solution import Solution
@@ -99,6 +101,21 @@ class Ledger:
     def owns_lower(self) -> dict[int, float]:
         """Share of the lower edge by part."""
         return owned(self.solution.circuit.network, self.lower_hz)
+
+    @cached_property
+    def leverage(self) -> Leverage:
+        """What moving a part, a card's figure or a stated current does to gain and edges."""
+        return leverage(self.solution, self.lower_hz, self.upper_hz)
+
+    @cached_property
+    def poles(self) -> Resolved:
+        """All finite poles of the full network, or why they are not resolved."""
+        return poles(self.solution)
+
+    @cached_property
+    def zeros(self) -> tuple[Root, ...] | None:
+        """All finite zeros, stage by stage."""
+        return zeros(self.solution)
 
     @cached_property
     def node_upper_hz(self) -> float | None:

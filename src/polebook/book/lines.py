@@ -15,6 +15,10 @@ FORMULAS = (
     Formula("lines.input_ohm", "V/I into the stage, what follows attached", "definition"),
     Formula("lines.output_ohm", "V/I at n_k, what precedes attached, what follows taken away", "definition"),
     Formula("lines.transfer_ohm", "A_k·input resistance, of a stage that holds its input node", "definition"),
+    Formula("lines.gain_db", "20·log10|A_k|", "definition"),
+    Formula("lines.k", "K of the bridge with the largest capacitance at the input, else resistance", "definition"),
+    Formula("lines.owns_upper", "sum of what its parts own", "definition"),
+    Formula("lines.owns_lower", "sum of what its parts own", "definition"),
     Formula("overall.gain", "product of the lines' gains", "definition"),
 )
 

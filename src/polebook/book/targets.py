@@ -11,6 +11,9 @@ from polebook.formula import Formula
 FORMULAS = (
     Formula("targets.margin", "(want - got)/want where less is better, (got - want)/want where more is; "
                               "for the gain (tolerance - |difference in dB|)/tolerance", "definition"),
+    Formula("targets.want", "as the file states it", "the chain file"),
+    Formula("targets.got", "the figure that the target is about", "definition"),
+    Formula("targets.met", "met where the margin is not below 0", "definition"),
 )
 NAMES = ("gain", "lower", "upper", "peaking", "noise", "swing", "current", "overshoot", "rise", "sag", "yield")
 LESS_IS_BETTER = frozenset({"lower", "noise", "current", "peaking", "overshoot", "rise", "sag"})

@@ -17,6 +17,8 @@ COCHRAN_GRABEL = "B. L. Cochran and A. Grabel, A method for the determination of
 FORMULAS = (
     Formula("parts.tau_s", "tau = C·R for a capacitor, L/R for an inductor; R seen at its terminals at midband",
             COCHRAN_GRABEL),
+    Formula("parts.tau_s.storage", "tau = tau_0·S of an upper pole, tau_0/S of a lower corner, S what is left of a "
+                                   "change in its equation with the loop closed", COCHRAN_GRABEL),
     Formula("overall.octc_upper_hz", "f_H = 1/(2·pi·sum of tau_j), over the high-role parts", COCHRAN_GRABEL),
     Formula("overall.sctc_lower_hz", "f_L = sum of 1/(2·pi·tau_j), over the low-role parts", COCHRAN_GRABEL),
 )

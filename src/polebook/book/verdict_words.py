@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from math import log10
 
 from polebook.quantity import engineering
 
+_NODE = re.compile(r"n\d+ ")
+NUMBERS = ("no", "one", "two", "three", "four", "five", "six", "seven", "eight", "nine", "ten", "eleven", "twelve")
 UNITS = {"C": "F", "L": "H", "R": "Ω", "tau": "s", "I": "A", "gm": "S"}
 
 
@@ -63,6 +66,16 @@ def listed(items: Sequence[str]) -> str:
     return items[0] if len(items) == 1 else f"{', '.join(items[:-1])} and {items[-1]}"
 
 
-def sentence(clause: str) -> str:
-    """The clause with a capital and a full stop; a name in front stands as it is."""
-    return f"{clause[:1].upper()}{clause[1:]}."
+def number(count: int) -> str:
+    """A count in words up to twelve."""
+    return NUMBERS[count] if count < len(NUMBERS) else str(count)
+
+
+def capital(text: str) -> str:
+    return text[:1].upper() + text[1:]
+
+
+def sentences(*clauses: str) -> str:
+    """Clauses that say something, each with a capital and a full stop; a node's name (n1) keeps its letter."""
+    told = [clause for clause in clauses if clause]
+    return " ".join(f"{clause if _NODE.match(clause) else capital(clause)}." for clause in told)

@@ -25,20 +25,20 @@ def set_value(text: str, file: str, path: str, value: str) -> tuple[Edit, list[P
     file without taking others away.
     """
     before = reading_of(text, file)
-    found = locate(path, _content(before, text))
+    found = locate(path, content(before, text))
     edit = splice.set_value(text, found.path, written(found, value), file)
-    return edit, _judged(before, edit.apply(text), file)
+    return edit, judged(before, edit.apply(text), file)
 
 
 def unset(text: str, file: str, path: str) -> tuple[Edit, list[Problem]]:
     """The edit that takes the key at `path` out, and the faults that the file then still has; raises as `set_value`."""
     before = reading_of(text, file)
-    found = locate(path, _content(before, text))
-    if not _stands(_content(before, text), found.path):
+    found = locate(path, content(before, text))
+    if not _stands(content(before, text), found.path):
         raise PathRefused(f"{file} gives no {path}", "only what the file gives can be taken out of it",
                           "name a key that it gives; an absent one has its default already")
     edit = splice.unset(text, found.path, file)
-    return edit, _judged(before, edit.apply(text), file)
+    return edit, judged(before, edit.apply(text), file)
 
 
 def _stands(data: Any, path: tuple[str | int, ...]) -> bool:
@@ -52,13 +52,13 @@ def _stands(data: Any, path: tuple[str | int, ...]) -> bool:
     return True
 
 
-def _content(reading: Reading, text: str) -> Mapping[str, Any]:
+def content(reading: Reading, text: str) -> Mapping[str, Any]:
     if reading.data is None:
         raise ProblemsFound(reading.problems, text)
     return reading.data
 
 
-def _judged(before: Reading, after: str, file: str) -> list[Problem]:
+def judged(before: Reading, after: str, file: str) -> list[Problem]:
     """The faults of the changed text. Raises ProblemsFound with those that the edit adds, where it takes none away."""
     reading = reading_of(after, file)
     old = Counter((problem.what, path) for problem, path in before.faults)

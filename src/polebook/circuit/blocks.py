@@ -1,7 +1,7 @@
 """Strongly connected blocks of the network: what does not feel each other has its poles apart.
 
-Row i of the equations leans on node j where it has an entry there. Nodes that lean on each other, round about, make a
-block; det(G + sC) is the product of the blocks' determinants, and the elimination's pivots of a block's nodes are its own.
+Row i of the equations leans on node j where it has an entry there. Nodes that lean on each other, round about, make
+a block; det(G + sC) is the product of the blocks' determinants, and the pivots of a block's nodes are its own.
 """
 
 from __future__ import annotations

@@ -38,7 +38,7 @@ def _judge(file: str, out: Out, quiet: bool) -> dict[str, Any]:
         chain = read.load(file)
         from polebook.book import build  # deferred: a faulty file is told without numpy, 75 ms sooner
 
-        document = build.document(build.ledger(chain))
+        document = build.document(build.ledger(chain), ("overall", "targets", "verdict"))
     except ProblemsFound as found:
         out.found(found)
         problems = [_problem(problem) for problem in found.problems]

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 Editing = Callable[[str], tuple["Edit", list[Problem]]]
 
 
-def change(file: str, editing: Editing, out: Out) -> int:
+def change(file: str, editing: Editing, out: Out, same: str = "it says so already") -> int:
     """Apply what `editing` makes of the file's text, save it, and list the faults that remain.
 
     Raises ProblemsFound where the file can't be read or saved, or the edit is refused; the file is then as it was.
@@ -26,7 +26,7 @@ def change(file: str, editing: Editing, out: Out) -> int:
     edit, left = editing(before)
     after = edit.apply(before)
     if after == before:
-        out.write(f" {out.look.text(file)}: it says so already, nothing is changed\n")
+        out.write(f" {out.look.text(file)}: {same}, nothing is changed\n")
     else:
         files.save(file, after)
         out.write("\n".join(difference(file, before, after, out)) + "\n")
@@ -49,5 +49,8 @@ def difference(file: str, before: str, after: str, out: Out) -> list[str]:
     look = out.look
     lines = [f"{look.text(file)}:{head + 1}"]
     lines += [look.paint(look.text(f"  - {line.rstrip()}"), "bad") for line in old[head : len(old) - tail]]
-    lines += [look.paint(look.text(f"  + {line.rstrip()}"), "good") for line in new[head : len(new) - tail]]
+    come = new[head : len(new) - tail]
+    while len(come) > 1 and not come[-1].strip():  # the blank line that sets a block off from what follows
+        come.pop()
+    lines += [look.paint(look.text(f"  + {line.rstrip()}"), "good") for line in come]
     return lines

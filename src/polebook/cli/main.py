@@ -16,8 +16,12 @@ from polebook.problem import Problem, ProblemsFound
 COMMANDS = {
     "show": "print the ledger of a chain file, or one page of it",
     "audit": "does each chain reach its targets?",
+    "sweep": "put one value through a range: gain, edges, any figure",
+    "start": "write a new chain that computes at once",
     "set": "change one value in a chain file",
     "unset": "take one key out of a chain file",
+    "card": "take a device card over from another chain file",
+    "parts": "the parts to buy and solder, with count and tolerance",
     "kinds": "every kind of stage and card, and every key",
 }
 _HELP = """usage: polebook FILE

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 from typing import TextIO
 
 from polebook.problem import Problem, ProblemsFound, render
-from polebook.report.look import Look
+from polebook.report.look import WIDTH, Look, fit
 
 
 class OutputLost(Exception):
@@ -38,6 +38,13 @@ class Out:
         """A message for whoever watches, on the standard error, line breaks kept."""
         look = Look(encoding=self.err.encoding or "utf-8")
         self.err.write("\n".join(look.text(line) for line in text.split("\n")) + "\n")
+
+    def progress(self, text: str) -> None:
+        """One line that the next one writes over, on the standard error where that is a terminal; "" clears it."""
+        if self.err.isatty():
+            shown = fit(Look(encoding=self.err.encoding or "utf-8").text(text), WIDTH - 1)
+            self.err.write(f"\r{shown:{WIDTH - 1}}\r{shown}" if shown else f"\r{'':{WIDTH - 1}}\r")
+            self.err.flush()
 
     def problems(self, problems: Iterable[Problem], text: str = "") -> None:
         """Every problem with its excerpt of `text`, and a count where there are several."""

@@ -13,14 +13,17 @@ from polebook.param import Param
 
 HYBRID_PI = "hybrid-pi model (P. R. Gray, P. J. Hurst, S. H. Lewis and R. G. Meyer, Analysis and Design of Analog " \
             "Integrated Circuits, 5th ed., Wiley, ch. 1; from memory)"
-FORMULAS = (
-    Formula("parts.gm", "gm = ic/VT, VT = kT/q", HYBRID_PI),
-    Formula("parts.rpi", "rpi = beta/gm", HYBRID_PI),
-    Formula("parts.ro", "ro = early_voltage/ic", HYBRID_PI),
-    Formula("parts.cmu", "Cmu = cob·((1 + cob_v/built_in)/(1 + VCB/built_in))^grading, VCB = vce - vbe", HYBRID_PI),
-    Formula("parts.cpi", "Cpi = gm·(1/(2·pi·ft) - (c_be0 + cob)/gm(ft_ic)) + c_be0", HYBRID_PI),
-    Formula("bias.bjt", "V(base) - V(emitter) = vbe, ib = ic/beta", "common practice"),
-)
+GM = Formula("parts.gm", "gm = ic/VT", HYBRID_PI)
+RPI = Formula("parts.rpi", "rpi = beta/gm", HYBRID_PI)
+RO = Formula("parts.ro", "ro = early_voltage/ic", HYBRID_PI)
+VBE = Formula("devices.vbe", "vbe = vbe_25 - 0.002·(T - 25)", "common practice")
+VCB = Formula("devices.vcb", "VCB = max(0, vce - vbe)", "definition")
+CMU = Formula("parts.cmu", "cmu = cob·((1 + cob_v/built_in)/(1 + VCB/built_in))^grading", HYBRID_PI)
+TAU_F = Formula("devices.tau_F", "tau_F = 1/(2·pi·ft) - (c_be0 + cob)·VT/ft_ic", HYBRID_PI)
+CPI = Formula("parts.cpi", "cpi = gm·tau_F + c_be0", HYBRID_PI)
+CPI_DEPLETION = Formula("parts.cpi", "cpi = c_be0, as the card tells no ft", HYBRID_PI)
+LAW = Formula("bias.bjt", "V_control - V_lower = vbe, and the base draws ic/beta", "common practice")
+FORMULAS = (GM, RPI, RO, CMU, CPI, VBE, VCB, TAU_F, LAW)
 
 PARAMS = (
     family_key("bjt"),

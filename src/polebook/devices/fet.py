@@ -14,15 +14,17 @@ from polebook.param import Param
 
 SQUARE_LAW = "square law of the channel (A. S. Sedra and K. C. Smith, Microelectronic Circuits, 5th ed., Oxford, " \
              "ch. 4; from memory)"
-FORMULAS = (
-    Formula("parts.gm", "gm = sqrt(2·k·id); of a jfet (2·idss/vgs_off)·sqrt(id/idss)", SQUARE_LAW),
-    Formula("parts.ro", "ro = 1/(channel_slope·id)", SQUARE_LAW),
-    Formula("parts.cgd", "cgd = crss", "common practice"),
-    Formula("parts.cgs", "cgs = ciss - crss", "common practice"),
-    Formula("parts.cds", "cds = coss - crss", "common practice"),
-    Formula("bias.mosfet", "id = k/2·(Vgs - vgs_th)^2", SQUARE_LAW),
-    Formula("bias.jfet", "id = idss·(1 + Vgs/vgs_off)^2", SQUARE_LAW),
-)
+GM = Formula("parts.gm", "gm = sqrt(2·k·id)", SQUARE_LAW)
+GM_JFET = Formula("parts.gm", "gm = 2·idss/vgs_off·sqrt(id/idss)", SQUARE_LAW)
+K_MEASURED = Formula("devices.k", "k = gm_0^2/(2·gm_id)", SQUARE_LAW)
+RO = Formula("parts.ro", "ro = 1/(channel_slope·id)", SQUARE_LAW)
+CGD = Formula("parts.cgd", "cgd = crss", "common practice")
+CGS = Formula("parts.cgs", "cgs = max(0, ciss - crss)", "common practice")
+CDS = Formula("parts.cds", "cds = max(0, coss - crss)", "common practice")
+LAW_MOSFET = Formula("bias.mosfet", "id = k/2·(vgs - vgs_th)^2", SQUARE_LAW)
+LAW_JFET = Formula("bias.jfet", "id = idss·(1 + vgs/vgs_off)^2", SQUARE_LAW)
+VGS_OFF = Formula("devices.vgs_off", "vgs_off = sqrt(2·idss/k)", SQUARE_LAW)
+FORMULAS = (GM, GM_JFET, K_MEASURED, RO, CGD, CGS, CDS, LAW_MOSFET, LAW_JFET, VGS_OFF)
 
 _POLARITY = Param("polarity", "choice", "channel: n or p", default="n", choices=("n", "p"))
 

@@ -11,6 +11,8 @@ import math
 from collections.abc import Callable
 from typing import Any
 
+from polebook.formula import Formula
+
 Value = Any
 """A float, a complex number, or an array of either."""
 
@@ -21,6 +23,7 @@ BOLTZMANN = 1.380649e-23  # J/K, exact (SI 2019)
 CHARGE = 1.602176634e-19  # C, exact (SI 2019)
 ICE_K = 273.15  # 0 °C
 TWO_PI = 2.0 * math.pi
+THERMAL_VOLTAGE = Formula("devices.VT", "VT = k_B·(T + 273.15)/q", "definition")
 
 
 def thermal_voltage(celsius: Value) -> Value:

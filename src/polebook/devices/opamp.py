@@ -8,10 +8,9 @@ from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
 from polebook.formula import Formula
 from polebook.param import Param
 
-FORMULAS = (
-    Formula("parts.gbw", "tau = a0/(2·pi·gbw), the dominant pole at gbw/a0", "definition"),
-    Formula("parts.f2", "tau = 1/(2·pi·f2)", "definition"),
-)
+GBW = Formula("parts.gbw", "tau = a0/(2·pi·gbw)", "definition: the dominant pole lies at gbw/a0")
+F2 = Formula("parts.f2", "tau = 1/(2·pi·f2)", "definition")
+FORMULAS = (GBW, F2)
 
 PARAMS = (
     family_key("opamp"),

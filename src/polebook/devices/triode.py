@@ -13,11 +13,14 @@ from polebook.formula import Formula
 from polebook.param import Param
 
 CHILD_LANGMUIR = "Child-Langmuir law, common practice for valves"
-FORMULAS = (
-    Formula("parts.gm", "gm = gm(gm_ia)·(ia/gm_ia)^(1/3)", CHILD_LANGMUIR),
-    Formula("parts.ro", "ro = mu/gm", CHILD_LANGMUIR),
-    Formula("bias.triode", "ia = P·(vgk + vak/mu)^1.5, P = gm_ia/(1.5·gm_ia/gm)^1.5", CHILD_LANGMUIR),
-)
+GM = Formula("parts.gm", "gm = gm_0·(ia/gm_ia)^(1/3)", CHILD_LANGMUIR)
+GM_THERE = Formula("parts.gm", "gm = gm_0", "taken as measured at the operating point")
+GM_MEASURED = Formula("devices.gm_0", "gm_0 = mu/rp", "definition")
+MU = Formula("devices.mu", "mu = gm_0·rp", "definition")
+RO = Formula("parts.ro", "ro = mu/gm", CHILD_LANGMUIR)
+PERVEANCE = Formula("devices.P", "P = gm_ia/(1.5·gm_ia/gm_0)^1.5", CHILD_LANGMUIR)
+LAW = Formula("bias.triode", "ia = P·(vgk + vak/mu)^1.5", CHILD_LANGMUIR)
+FORMULAS = (GM, GM_THERE, GM_MEASURED, MU, RO, PERVEANCE, LAW)
 
 PARAMS = (
     family_key("triode"),

@@ -31,6 +31,7 @@ class Swept:
     param    the row of its key
     now      the file's value (SI), None where the file has none
     spacing  "geometric", "linear" or the name of a series
+    digest   of the file's own chain
     """
 
     chain: Chain
@@ -39,6 +40,7 @@ class Swept:
     now: float | None
     values: tuple[float, ...]
     spacing: str
+    digest: str
 
 
 def swept(text: str, file: str, path: str, limits: str, points: int, row: str = "") -> Swept:
@@ -65,7 +67,8 @@ def swept(text: str, file: str, path: str, limits: str, points: int, row: str = 
         geometric = param.dimension not in LINEAR and first * last > 0
         listed = spread(first, last, points, geometric)
         spacing = "geometric" if geometric else "linear"
-    return Swept(chain, number, param, reading.chain.numbers.get(number), listed, spacing)
+    now = reading.chain.numbers.get(number)
+    return Swept(chain, number, param, now, listed, spacing, reading.chain.digest)
 
 
 def spread(first: float, last: float, points: int, geometric: bool) -> tuple[float, ...]:
@@ -118,11 +121,12 @@ def _value(raw: str, param: Param, number: str) -> float:
 def _structure(chain: Chain, text: str, file: str, path: str, number: str, ends: list[tuple[str, float]]) -> Chain:
     """The chain that the values are put into, once the reader has judged what only it can judge.
 
-    A key that the file does not give may need another beside it, and a zero may cut the chain.
+    A key that the file does not give may need another beside it, a zero may cut the chain, a tolerance must stay
+    below 100 %. A card may contradict itself on the way, as long as it does not in the file.
     """
     given = number in chain.given
     for raw, value in ends:
-        if not given or value == 0.0:
+        if not given or value == 0.0 or not number.startswith("device."):
             edit, _ = edits.set_value(text, file, path, raw)
             chain = chain if given else parse(edit.apply(text), file)
     return chain

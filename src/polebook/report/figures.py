@@ -8,6 +8,7 @@ from polebook.quantity import engineering
 
 NONE = "–"
 UNIT_OF_TYPE = {"C": "F", "L": "H", "R": "Ω", "gm": "S", "tau": "s", "I": "A"}
+_NO_PREFIX = frozenset(("°C", "%", "1/V"))  # a column in one of these has plain numbers
 _TARGET_UNITS = {"lower": "Hz", "upper": "Hz", "reference": "Hz", "swing": "V", "current": "A", "rise": "s"}
 
 
@@ -46,6 +47,24 @@ def ratio(value: float | None) -> str:
         return engineering(value, "", 3)
     decimals = 3 if size < 9.9995 else 2 if size < 99.995 else 1 if size < 999.95 else 0
     return f"{round(value, decimals) + 0.0:.{decimals}f}"
+
+
+def by_unit(value: float | None, unit: str, digits: int = 3) -> str:
+    """A figure with its unit: "" is a plain number, "share" a share of one."""
+    if unit == "share":
+        return share(value)
+    if unit == "dB":
+        return decibel(value, unit)
+    return eng(value, unit, digits) if unit else ratio(value)
+
+
+def bare(value: float | None, unit: str, digits: int = 3) -> str:
+    """A figure whose unit stands in the heading of its column ("%" for a share)."""
+    if unit == "share":
+        return share(value).removesuffix(" %")
+    if unit == "dB":
+        return decibel(value)
+    return eng(value, "" if unit not in _NO_PREFIX else unit, digits).removesuffix(f" {unit}") if unit else ratio(value)
 
 
 def gain(value: float | None, unit: str) -> str:

@@ -78,7 +78,7 @@ def powers(layout: Layout) -> dict[int, int]:
         if kind == ("C" if branch.series else "L"):
             node = steps[number] if branch.series else across(layout, branch)
             result[node] = result.get(node, 0) + 1
-    for part, signed in layout.stamps.washing:
+    for _, signed in layout.stamps.washing:
         node = layout.stamps.where[signed[0][0]][0]
         result[node] = result.get(node, 0) + 1
     return result

@@ -80,7 +80,7 @@ def sweep(net: Network, low: float, high: float, midband: list[float], view: Vie
 
 def _finite(s: Sweep) -> Sweep:
     """Without points that hit a zero or a pole of a factor to the last digit; at the ends there may be none."""
-    kept = np.isfinite(s.sizes).all(axis=0) & np.isfinite(s.turns).all(axis=0) & np.isfinite(s.angles).all(axis=0)
+    kept = np.isfinite(np.concatenate([s.sizes, s.turns, s.angles])).all(axis=0)
     if kept.all():
         return s
     fine = s.fine and bool(kept[:2].all() and kept[-2:].all() and kept.mean() > 0.9)

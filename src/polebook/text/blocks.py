@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from bisect import bisect_left
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from polebook.text.edit import Splice
-from polebook.text.spans import Path, Span, Spans
+from polebook.text.spans import Header, Path, Span, Spans
 
 # the order in which a chain file's top-level tables stand
 ORDER = ("supply", "source", "stage", "load", "target", "preferred", "tolerance", "device", "bench")
@@ -22,40 +23,76 @@ class Block:
 
 def blocks(spans: Spans) -> list[Block]:
     """The text's blocks in order, each with the sub-tables that follow it. Keys before the first header are in none."""
-    heads = list(spans.headers.values())
-    starts = [_lead(spans.text, head.span.start) for head in heads]
-    ends = sorted(entry.value.end for entry in spans.entries.values())
+    heads, ends = list(spans.headers.values()), _ends(spans)
     found: list[Block] = []
     number = 0
     while number < len(heads):
-        path = heads[number].path
-        after = number + 1
-        while after < len(heads) and _inside(heads[after].path, path):
-            after += 1
-        limit = starts[after] if after < len(heads) else len(spans.text)
-        found.append(Block(path, Span(starts[number], _end(spans.text, heads[after - 1].span.end, ends, limit))))
-        number = after
+        block, number = _block(spans.text, heads, ends, number)
+        found.append(block)
     return found
+
+
+def block_of(spans: Spans, path: Path) -> Block | None:
+    """The block of the header `path`, which may itself stand in another one's; None where there is no such header."""
+    heads = list(spans.headers.values())
+    number = next((at for at, head in enumerate(heads) if head.path == path), None)
+    return None if number is None else _block(spans.text, heads, _ends(spans), number)[0]
+
+
+def _block(text: str, heads: Sequence[Header], ends: Sequence[int], number: int) -> tuple[Block, int]:
+    """The block of a header, and the number of the header after it."""
+    path = heads[number].path
+    after = number + 1
+    while after < len(heads) and _inside(heads[after].path, path):
+        after += 1
+    limit = _lead(text, heads[after].span.start) if after < len(heads) else len(text)
+    span = Span(_lead(text, heads[number].span.start), _end(text, heads[after - 1].span.end, ends, limit))
+    return Block(path, span), after
+
+
+def _ends(spans: Spans) -> list[int]:
+    """Where the values end, sorted."""
+    return sorted(entry.value.end for entry in spans.entries.values())
 
 
 def new_table(spans: Spans, top: str, header: str, line: str) -> Splice:
     """A new table with one line, at its place among the top-level ones, a blank line between it and the next."""
+    return new_block(spans, top, [header, line])
+
+
+def new_block(spans: Spans, top: str, lines: Sequence[str]) -> Splice:
+    """The lines of a new block of the top-level table `top`, after the last of its kind or at the format's place."""
     text = spans.text
     all_blocks = blocks(spans)
-    before = [block for block in all_blocks if _rank(str(block.path[0])) <= _rank(top)]
+    own = [block for block in all_blocks if block.path[0] == top]
+    before = own or [block for block in all_blocks if _rank(str(block.path[0])) <= _rank(top)]
     feed = newline(text, len(text))
     if not before and all_blocks:
-        at = all_blocks[0].span.start
-        return Splice(at, "", f"{header}{feed}{line}{feed}{feed}")
+        return Splice(all_blocks[0].span.start, "", f"{feed.join(lines)}{feed}{feed}")
     if before:
-        at = before[-1].span.end
-        feed = newline(text, max(at - 1, 0))
-    else:
-        at = len(text.rstrip())
-        at = len(text) if (end := text.find("\n", at)) < 0 else end + 1
+        return after_block(spans, before[-1], lines)
+    at = len(text.rstrip())
+    at = len(text) if (end := text.find("\n", at)) < 0 else end + 1
+    return _lines_at(text, at, feed, lines)
+
+
+def after_block(spans: Spans, block: Block, lines: Sequence[str]) -> Splice:
+    """The lines of a new block right after `block`, a blank line between."""
+    at = block.span.end
+    return _lines_at(spans.text, at, newline(spans.text, max(at - 1, 0)), lines)
+
+
+def before_block(spans: Spans, block: Block, lines: Sequence[str]) -> Splice:
+    """The lines of a new block right before `block`, a blank line between."""
+    feed = newline(spans.text, block.span.start)
+    return Splice(block.span.start, "", f"{feed.join(lines)}{feed}{feed}")
+
+
+def _lines_at(text: str, at: int, feed: str, lines: Sequence[str]) -> Splice:
+    body = feed.join(lines)
     if at and not text.endswith("\n", 0, at):
-        return Splice(at, "", f"{feed}{feed}{header}{feed}{line}")
-    return Splice(at, "", f"{feed if at else ''}{header}{feed}{line}{feed}")
+        return Splice(at, "", f"{feed}{feed}{body}")
+    return Splice(at, "", f"{feed if at else ''}{body}{feed}")
 
 
 def first_line(spans: Spans, line: str) -> Splice:
@@ -97,7 +134,7 @@ def _lead(text: str, at: int) -> int:
     return start
 
 
-def _end(text: str, header: int, ends: list[int], limit: int) -> int:
+def _end(text: str, header: int, ends: Sequence[int], limit: int) -> int:
     """The end of the last line of a block whose last header ends at `header` and that must end by `limit`.
 
     `ends` are the ends of all values, sorted. Comment lines that follow the last line at once belong to it.

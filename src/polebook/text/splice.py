@@ -66,6 +66,51 @@ def unset(text: str, path: Path, file: str = "") -> Edit:
     return _checked(text, data, edit, path, lambda whole: drop(whole, path, stays), file)
 
 
+def insert_block(text: str, path: Path, block: str, file: str = "") -> Edit:
+    """The edit that adds a whole table at `path`, such as ("device", "D") or ("stage", 2), as the lines of `block`.
+
+    `block` has its own header, and may have comments and sub-tables. A table of a list takes the number it is given,
+    those from there on move up; any other goes after the last one of its kind, or to the format's place.
+    Raises ProblemsFound for a text that is not TOML and EditRefused where the block is not that one table, or where
+    there is one already.
+    """
+    data, spans = _load(text, path, file)
+    meant, problems = read(block, file)
+    if meant is None:
+        raise ProblemsFound(problems, block)
+    content = find(meant, (*path[:-1], 0 if isinstance(path[-1], int) else path[-1]))
+    if content is None or not isinstance(content, dict):
+        raise EditRefused(f"the block is not {shown(path)}", "one edit adds one table",
+                          "give it the header of that one")
+    if not isinstance(path[-1], int) and find(data, path) is not None:
+        raise EditRefused(f"there is a {shown(path)} already", "a table stands once", "choose another name",
+                          spans.place(path, file), text)
+    lines = block.replace("\r\n", "\n").strip("\n").split("\n")
+    edit = Edit.of([_block_splice(spans, path, lines)], f"add {shown(path)}")
+    return _checked(text, data, edit, path, lambda whole: _added(whole, path, content), file)
+
+
+def _block_splice(spans: Spans, path: Path, lines: list[str]) -> Splice:
+    if isinstance(path[-1], int):
+        here = blocks.block_of(spans, path)
+        if here:
+            return blocks.before_block(spans, here, lines)
+        if path[-1] and not blocks.block_of(spans, (*path[:-1], path[-1] - 1)):
+            raise EditRefused(f"{shown(path)} leaves a gap", "the list has no such place", "name a place of the list")
+    return blocks.new_block(spans, str(path[0]), lines)
+
+
+def _added(whole: Any, path: Path, content: Any) -> None:
+    if isinstance(path[-1], int):
+        listed = find(whole, path[:-1])
+        if listed is None:
+            put(whole, path[:-1], [content])
+        else:
+            listed.insert(path[-1], content)
+    else:
+        put(whole, path, content)
+
+
 def _load(text: str, path: Path, file: str) -> tuple[dict[str, Any], Spans]:
     if not path:
         raise EditRefused("no key is named", "an edit is made at a key", "name one")

@@ -1,0 +1,135 @@
+"""Leverage: by how many per cent a figure moves where a part, a card's figure or a stated current moves by one.
+
+Total derivatives: what a part does through a solved bias counts, a stated current stands still. The adjoint solution
+gives d(figure)/d(element), a complex step through bias, card and stage formulas d(element)/d(key).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+
+from polebook.book.shares import derivatives
+from polebook.book.solution import Solution
+from polebook.chain.model import Chain
+from polebook.circuit.build import CURRENT_KEYS, values
+from polebook.formula import Formula
+from polebook.solve.contributions import contributions
+from polebook.solve.transfer import adjoint, branch_currents
+from polebook.stages.ladder import arm_part
+
+ADJOINT = "adjoint network (S. W. Director and R. A. Rohrer, The generalized adjoint network and network " \
+          "sensitivities, IEEE Trans. Circuit Theory 16, 1969, from memory) and complex step (W. Squire and " \
+          "G. Trapp, Using complex variables to estimate derivatives of real functions, SIAM Review 40, 1998, " \
+          "from memory)"
+FORMULAS = (
+    Formula("leverage.gain", "d ln|gain|/d ln p", ADJOINT),
+    Formula("leverage.lower_edge", "d ln f_L/d ln p = -d(ln|H(f_L)| - ln|gain|)/d ln p / (d ln|H|/d ln f)", ADJOINT),
+    Formula("leverage.upper_edge", "d ln f_H/d ln p = -d(ln|H(f_H)| - ln|gain|)/d ln p / (d ln|H|/d ln f)", ADJOINT),
+)
+FIGURES = ("gain", "lower_edge", "upper_edge")
+STEP = 1e-30  # imaginary share of a key's value: its square is nothing
+
+Row = dict[str, float | None]
+
+
+@dataclass(slots=True)
+class Leverage:
+    """Leverage on gain, lower_edge and upper_edge; None where there is no such edge.
+
+    elements  by part number, of the element alone
+    parts     (stage, part) of a fitted part, through the bias
+    currents  (stage, key) -> (A, leverage) of a stated quiescent current
+    cards     (card, key) -> (value in the key's own unit, leverage)
+    """
+
+    elements: dict[int, Row] = field(default_factory=dict)
+    parts: dict[tuple[str, str], Row] = field(default_factory=dict)
+    currents: dict[tuple[str, str], tuple[float, Row]] = field(default_factory=dict)
+    cards: dict[tuple[str, str], tuple[float, Row]] = field(default_factory=dict)
+
+
+def leverage(of: Solution, lower_hz: float | None, upper_hz: float | None) -> Leverage:
+    """Leverage of everything that the file states a value for; edges in Hz."""
+    partial = {"gain": _of_gain(of), "lower_edge": None, "upper_edge": None}
+    for name, edge in (("lower_edge", lower_hz), ("upper_edge", upper_hz)):
+        if edge is not None:
+            partial[name] = _of_edge(of, edge, partial["gain"] or {})
+    result = Leverage(elements={index: {name: None if each is None else each.get(index, 0.0)
+                                        for name, each in partial.items()} for index in partial["gain"] or {}})
+    keys = list(_keys(of.chain))
+    for (kind, owner, name, path), row in zip(keys, _through_bias(of, partial, [key[3] for key in keys]), strict=True):
+        if kind == "part":
+            result.parts[owner, name] = row
+        elif kind == "current":
+            result.currents[owner, name] = (of.chain.numbers[path], row)
+        else:
+            result.cards[owner, name] = (of.chain.numbers[path], row)
+    return result
+
+
+def _of_gain(of: Solution) -> dict[int, float]:
+    """d ln|gain|/d ln X of every element, by part number."""
+    folded, output = of.midband, of.circuit.layout.after[-1]
+    adj = adjoint(folded, output)
+    currents = branch_currents(folded, of.volts, adj)
+    each = contributions(of.circuit.network, 0.0, of.volts, adj.u, currents, "midband", resistive=True)
+    found = dict.fromkeys(range(len(of.circuit.layout.parts)), 0.0)
+    return found | {index: float(x / of.volts[output]) for index, x in each.items()}
+
+
+def _of_edge(of: Solution, hz: float, of_gain: dict[int, float]) -> dict[int, float] | None:
+    """d ln f/d ln X of an edge at hz; None where the response is level there."""
+    net = of.circuit.network
+    slopes = {index: d.real for index, d in derivatives(net, hz, resistive=True).by_part.items()}
+    steep = sum(slope for index, slope in slopes.items() if net.layout.parts[index].type in ("C", "L", "tau"))
+    if not steep:
+        return None
+    return {index: -(slopes.get(index, 0.0) - gain) / steep for index, gain in of_gain.items()}
+
+
+def _keys(chain: Chain) -> Iterator[tuple[str, str, str, str]]:
+    """(kind, owner, name, path) of every number that may have leverage: parts, currents, cards' figures."""
+    for owner in ("source", "load"):
+        for key in ("resistance", "capacitance", "couple"):
+            if chain.get(f"{owner}.{key}"):
+                yield "part", owner, key, f"{owner}.{key}"
+    for stage in chain.stages:
+        if stage.left_out:
+            continue
+        prefix = stage.name + "."
+        names = {f"{prefix}arms.{arm.number}.{key}": arm_part(arm, key)[0] for arm in stage.arms for key in arm.parts}
+        current = CURRENT_KEYS.get(chain.cards[stage.device].family, "id") if stage.device else ""
+        for path in sorted(path for path in chain.given if path.startswith(prefix)):
+            key = path.removeprefix(prefix)
+            if key == current:
+                yield "current", stage.name, key, path
+            elif path in names or "." not in key:
+                yield "part", stage.name, names.get(path, key), path
+    used = {card for stage in chain.stages if not stage.left_out for card in (stage.device, stage.upper) if card}
+    for card in chain.cards:
+        if card in used:
+            for path in sorted(path for path in chain.given if path.startswith(f"device.{card}.")):
+                yield "card", card, path.rpartition(".")[2], path
+
+
+def _through_bias(of: Solution, partial: dict[str, dict[int, float] | None], paths: list[str]) -> list[Row]:
+    """Leverage of each path: d(figure)/d(element) times d(element)/d(path), summed over the elements."""
+    count = len(paths)
+    numbers = of.chain.numbers
+    override: dict[str, Any] = {}
+    for k, path in enumerate(paths):
+        stepped = np.full(count, numbers[path], dtype=complex)
+        stepped[k] *= 1 + 1j * STEP
+        override[path] = stepped
+    with np.errstate(all="ignore"):
+        moved = np.array([np.broadcast_to(value, (count,)) for value in values(of.circuit, override)], dtype=complex)
+    relative = moved.imag / STEP / np.array(of.circuit.network.values, dtype=float)[:, None]
+    rows: dict[str, Any] = {}
+    for name, each in partial.items():
+        weights = None if each is None else np.array([each[index] for index in range(relative.shape[0])])
+        rows[name] = None if weights is None else weights @ relative
+    return [{name: None if row is None else float(row[k]) for name, row in rows.items()} for k in range(count)]

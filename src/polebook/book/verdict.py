@@ -1,0 +1,160 @@
+"""The verdict: what limits the chain now and by which mechanism, in one to three short clauses."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from polebook.book import verdict_gain, verdict_peak
+from polebook.book.verdict_edge import Limit, limit, name_of
+from polebook.book.verdict_lever import gain_lever
+from polebook.book.verdict_unstable import unstable
+from polebook.book.verdict_words import (
+    capital,
+    decibels,
+    figure,
+    listed,
+    loss,
+    number,
+    per_cent,
+    sentences,
+    stated,
+    stated_decibels,
+)
+
+if TYPE_CHECKING:
+    from polebook.book.ledger import Ledger
+    from polebook.book.targets import Target
+
+EDGES = ("upper", "lower")
+
+
+def verdict(of: Ledger) -> str:
+    """A few plain sentences, every number in them a figure of the ledger."""
+    told = _told(of)
+    out = [stage.name for stage in of.chain.stages if stage.left_out]
+    return f"{told} {listed(out)} {'is' if len(out) == 1 else 'are'} left out." if out else told
+
+
+def cause(of: Ledger, target: Target) -> str:
+    """Why a target is missed, without what would mend it; "" where it is not missed."""
+    if target.met is not False:
+        return ""
+    if target.name in EDGES:
+        found = limit(of, target.name)
+        return found.brief() if found else ""
+    if target.name == "gain":
+        return verdict_gain.cause(of, target)
+    return verdict_peak.missed(of).rstrip(".")
+
+
+def _told(of: Ledger) -> str:
+    if of.solution.winding.right is None:
+        return sentences("whether the chain is stable could not be told, so no edge is given",
+                         "look for values many decades apart, or parts that all but cancel")
+    if of.unstable:
+        return unstable(of)
+    if not of.solution.band.clean:
+        return _no_midband(of)
+    missed = [target for target in of.targets if target.met is False]
+    if missed:
+        worst = min(missed, key=lambda target: target.margin or 0.0)
+        others = [_called(target) for target in missed if target is not worst]
+        comma = "," if worst.name == "gain" else ":"
+        text = f"{capital(_headline(of, worst))}{comma} {_why(of, worst)}"
+        return f"{text} {capital(listed(others))} missed too." if others else text
+    return _met(of)
+
+
+def _no_midband(of: Ledger) -> str:
+    constants = of.solution.constants
+    text = f"No clean midband: at no frequency does the response come within 3 dB of {_gain(of)} of gain."
+    if constants.lower_hz is None or constants.upper_hz is None:
+        return text
+    taus, parts = constants.by_part, of.solution.circuit.layout.parts
+    low = min((k for k, tau in taus.items() if tau and parts[k].role == "low"), key=lambda k: taus[k] or 0.0)
+    high = max((k for k, tau in taus.items() if tau and parts[k].role == "high"), key=lambda k: taus[k] or 0.0)
+    return (f"{text} By time constants the lower edge would be {figure(constants.lower_hz, 'Hz')}, most of it "
+            f"{name_of(of, low)}, the upper {figure(constants.upper_hz, 'Hz')}, most of it {name_of(of, high)}.")
+
+
+def _gain(of: Ledger) -> str:
+    return f"its {decibels(of.solution.gain, verdict_gain.gain_unit(of))}"
+
+
+def _headline(of: Ledger, target: Target) -> str:
+    """"upper edge 400 kHz for 1 MHz"."""
+    got = target.got or 0.0
+    if target.name == "gain":
+        return f"gain {verdict_gain.headline(of, target)}"
+    if target.name == "peaking":
+        return f"peaking {loss(got, digits=2)} for {stated_decibels(target.want)}"
+    return f"{target.name} edge {figure(got, 'Hz')} for {stated(target.want, 'Hz')}"
+
+
+def _called(target: Target) -> str:
+    return f"{target.name} edge" if target.name in EDGES else target.name
+
+
+def _why(of: Ledger, target: Target) -> str:
+    if target.name == "gain":
+        return verdict_gain.missed(of, target)
+    if target.name == "peaking":
+        return verdict_peak.missed(of)
+    found = limit(of, target.name)
+    return found.told() if found else "no part of it owns the edge."
+
+
+def _met(of: Ledger) -> str:
+    unjudged = [target.name for target in of.targets if target.met is None]
+    met = len(of.targets) - len(unjudged)
+    if not met:
+        lead = f"not judged yet: {listed(unjudged)}" if unjudged else "no targets are set"
+        return f"{sentences(lead)} {_band(of)}"
+    lead = {1: "the target is met", 2: "both targets are met"}.get(met, f"all {number(met)} targets are met")
+    if unjudged:
+        lead += f" ({listed(unjudged)} not judged yet)"
+    close = [target for target in of.targets if target.met and target.margin is not None and _tells(target)]
+    if not close:
+        return f"{sentences(lead)} {_band(of)}"
+    least = min(close, key=lambda target: target.margin or 0.0)
+    headline = f"{_headline(of, least)}{_spare(of, least)}"
+    told = sentences(f"{lead}: {headline}") if met == 1 else sentences(lead, f"least to spare: {headline}")
+    return f"{told} {_near(of, least)}".rstrip()
+
+
+def _tells(target: Target) -> bool:
+    """A response that does not peak says nothing of what limits the chain."""
+    return target.name != "peaking" or (target.got or 0.0) >= verdict_peak.SLIGHT
+
+
+def _spare(of: Ledger, target: Target) -> str:
+    if target.name == "gain":
+        within = of.chain.get("target.gain_tolerance") or 1.0
+        return f", ±{stated_decibels(within)}"
+    return f" ({per_cent(target.margin or 0.0)}{' to spare' if len(of.targets) == 1 else ''})"
+
+
+def _near(of: Ledger, target: Target) -> str:
+    if target.name in EDGES:
+        found = limit(of, target.name)
+        return capital(found.told()) if found else ""
+    if target.name == "peaking":
+        return verdict_peak.missed(of)
+    return sentences(gain_lever(of, verdict_gain.difference(target) < 0.0))
+
+
+def _band(of: Ledger) -> str:
+    """What limits the band, where no target says which end matters."""
+    upper, lower = of.upper_hz, of.lower_hz
+    ends = {end: limit(of, end) for end in EDGES}
+    if upper is None and lower is None:
+        return f"Nothing in the file limits its band; the gain is {_gain(of).removeprefix('its ')}."
+    if upper is None:
+        return f"The band has no upper edge. {_end('Lower', lower, ends['lower'])}"
+    if lower is None:
+        return f"The band reaches down to d.c. {_end('Upper', upper, ends['upper'])}"
+    return f"{_end('Upper', upper, ends['upper'])} {_end('Lower', lower, ends['lower'])}"
+
+
+def _end(name: str, hz: float | None, found: Limit | None) -> str:
+    return f"{name} edge {figure(hz, 'Hz')}: {found.brief()}." if found else f"{name} edge {figure(hz, 'Hz')}."

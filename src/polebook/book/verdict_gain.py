@@ -1,0 +1,92 @@
+"""Why the gain is not what was wanted: what a joint loses, what an edge takes at the reference, what moves it most."""
+
+from __future__ import annotations
+
+from math import log10
+from typing import TYPE_CHECKING
+
+from polebook.book.sites import interstage_names
+from polebook.book.verdict_edge import limit
+from polebook.book.verdict_how import the
+from polebook.book.verdict_lever import gain_lever
+from polebook.book.verdict_words import decibels, figure, loss, sentences, stated, stated_decibels
+
+if TYPE_CHECKING:
+    from polebook.book.ledger import Ledger
+    from polebook.book.targets import Target
+
+FELT_DB = 0.05  # less loading is none
+HEAVY = 0.3  # share of what is missing from which a joint is to blame
+
+
+def gain_unit(of: Ledger) -> str:
+    return "dB" if of.chain.source_kind == "voltage" else "dBΩ"
+
+
+def difference(target: Target) -> float:
+    """dB over what was wanted."""
+    return 20.0 * log10((target.got or 0.0) / target.want)
+
+
+def headline(of: Ledger, target: Target) -> str:
+    unit, hz = gain_unit(of), of.chain.get("target.reference")
+    at = f" at {stated(hz, 'Hz')}" if hz else ""
+    return f"{decibels(target.got or 0.0, unit, 2)} for {stated_decibels(20.0 * log10(target.want), unit)}{at}"
+
+
+def missed(of: Ledger, target: Target) -> str:
+    """Sentences that follow the headline and a comma."""
+    off = difference(target)
+    why = cause(of, target)
+    off_by = f"{loss(abs(off))} {'over' if off > 0 else 'short'}{f': {why}' if why else ''}"
+    return f"{off_by}. {sentences(gain_lever(of, off < 0.0))}".rstrip()
+
+
+def cause(of: Ledger, target: Target) -> str:
+    """Where what is missing has gone, or what is too much comes from."""
+    off = difference(target)
+    if off > 0.0:
+        return _tallest(of)
+    at_edge = _at_reference(of, -off)
+    if at_edge:
+        return at_edge
+    db, text = worst_joint(of)
+    if db >= HEAVY * -off:
+        return text
+    if db < FELT_DB:
+        return "no node loads what drives it; the stages give too little"
+    return f"no node loads what drives it by more than {loss(db)}; the stages give too little"
+
+
+def _tallest(of: Ledger) -> str:
+    stages = [line for line in of.lines[1:-1] if not line.left_out]
+    most = max(stages, key=lambda line: abs(line.gain), default=None)
+    return f"{most.name} gives the most, {decibels(most.gain)}" if most and abs(most.gain) > 1.0 else ""
+
+
+def _at_reference(of: Ledger, short: float) -> str:
+    """The edge that has taken most of it by the reference frequency."""
+    hz = of.reference_hz
+    if "target.reference" not in of.chain.given or hz is None or not of.gain_at_reference:
+        return ""
+    taken = 20.0 * log10(abs(of.solution.gain) / of.gain_at_reference)
+    if taken < 0.5 * short:
+        return ""
+    end = "upper" if hz > of.solution.band.seed_hz else "lower"
+    edge, found = of.upper_hz if end == "upper" else of.lower_hz, limit(of, end)
+    blame = f"; of that edge {found.owns}" if found else ""
+    return f"the {end} edge at {figure(edge, 'Hz')} takes {loss(taken)} of it{blame}"
+
+
+def worst_joint(of: Ledger) -> tuple[float, str]:
+    """(dB, clause) of the node where the next line loads the one that drives it most; 0 dB where none does."""
+    lines = of.lines
+    found = [(-20.0 * log10(abs(line.loading)), k) for k, line in enumerate(lines[:-1])
+             if line.loading and line.output_ohm and abs(line.loading) < 1.0 and not line.left_out]
+    if not found:
+        return 0.0, ""
+    db, k = max(found)
+    line, after = lines[k], next((one for one in lines[k + 1:] if not one.left_out), lines[-1])
+    node = interstage_names(of.solution.circuit.layout)[of.solution.circuit.layout.after[k]]
+    into = f" into {figure(after.input_ohm, 'Ω')} of {the(after.name)}" if after.input_ohm else ""
+    return db, f"{node} loses {loss(db)}, {figure(line.output_ohm, 'Ω')} of {the(line.name)}{into}"

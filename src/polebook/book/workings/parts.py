@@ -1,0 +1,85 @@
+"""How the figures of a part came about: its value, its time constant, what it owns of an edge, its Miller halves."""
+
+from __future__ import annotations
+
+from polebook.book.shares import derivatives
+from polebook.book.workings.constants import time_constant
+from polebook.book.workings.devices import device_value
+from polebook.book.workings.formulas import FORMULA
+from polebook.book.workings.lines import voltage
+from polebook.book.workings.sheet import Books, Sheet
+from polebook.formula import Working
+from polebook.quantity import engineering
+
+
+def part(books: Books, sheet: Sheet) -> Working:
+    """The working of a figure of `parts`."""
+    key = sheet.entry.key
+    if key == "value":
+        return _value(books, sheet)
+    return time_constant(books, sheet) if key == "tau_s" else _owns(books, sheet)
+
+
+def bridge(books: Books, sheet: Sheet) -> Working:
+    """The working of a figure of a line's `bridges`."""
+    name, _, key = sheet.entry.name.rpartition(".")
+    if key == "k":
+        return _k(books, sheet, name)
+    value = sheet.figure(sheet.entry.row["type"], f"{name}.value", name)
+    k = sheet.figure("K", f"{name}.k")
+    share = f"(1 - {k})" if key == "at_input" else f"(1 - 1/{k})"
+    sheet.result(f"{key} = {value}{'·' if sheet.entry.row['type'] == 'C' else '/'}{share}")
+    note = "With K above 0 this half is of no use for an estimate." if key == "at_output" and \
+        sheet.entry.row["k"] > 0 else ""
+    return sheet.done(FORMULA[f"bridges.{key}"], note)
+
+
+def _k(books: Books, sheet: Sheet, name: str) -> Working:
+    stage, _, part_name = name.partition(".")
+    found = next(b for b in books.ledger.bridges[stage] if b.part == part_name)
+    into, out = voltage(books, sheet, found.i), voltage(books, sheet, found.j)
+    sheet.result(f"K = {out}/{into}")
+    return sheet.done(FORMULA["bridges.k"])
+
+
+def _value(books: Books, sheet: Sheet) -> Working:
+    row = sheet.entry.row
+    path = path_of(books, row["stage"], row["part"])
+    if path in books.chain.numbers:
+        symbol = sheet.file(row["part"], path)
+        if row["type"] == "tau":
+            sheet.result(f"tau = 1/(2·pi·{symbol})")
+            return sheet.done(FORMULA["parts.value.pole"])
+        sheet.result(f"value = {symbol}")
+        if path in books.chain.given:
+            return sheet.done(FORMULA["parts.value.file"])
+        return sheet.done(FORMULA["parts.value.default"])
+    return device_value(books, sheet, row["stage"], row["part"])
+
+
+def path_of(books: Books, stage: str, name: str) -> str:
+    """Number path of a part that a key of its table sets, as far as it can be one."""
+    if name.startswith("arm") and name[3:4].isdigit():
+        number, _, letter = name[3:].partition(".")
+        prefix = f"{stage}.arms.{number}."
+        return next((path for path in books.chain.numbers if path.startswith(prefix)
+                     and path[-1] == (letter or path[-1])), "")
+    for word, key in (("pole", "poles"), ("lower", "lower_poles")):
+        if name.startswith(word) and name[len(word):].isdigit():
+            return f"{stage}.{key}.{name[len(word):]}"
+    return f"{stage}.{name}"
+
+
+def _owns(books: Books, sheet: Sheet) -> Working:
+    key = sheet.entry.key
+    index = books.part_of[sheet.entry.name.removesuffix(f".{key}")]
+    edge = "overall.upper_edge_hz" if key == "owns_upper" else "overall.lower_edge_hz"
+    hz = books.value(edge)
+    slopes = {k: d.real for k, d in derivatives(books.net, hz).by_part.items()}
+    where = f"full network and its adjoint at {engineering(hz, 'Hz', 4)}"
+    own = sheet.put("D_X", slopes[index], "", "d ln|H|/d ln X: per cent that |H| rises there for 1 % more of the part",
+                    where)
+    all_parts = sheet.put("D_f", sum(slopes.values()), "", "d ln|H|/d ln f there, the sum of D over all C, L and tau",
+                          where)
+    sheet.result(f"owns = {own}/{all_parts}")
+    return sheet.done(FORMULA[f"parts.{key}"])

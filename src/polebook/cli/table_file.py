@@ -1,0 +1,48 @@
+"""The option --csv [FILE], and where its table goes."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable
+from typing import Protocol
+
+from polebook.cli.command import Usage
+from polebook.cli.out import Out
+
+STANDARD = "-"
+
+
+class _Options(Protocol):
+    def add_argument(self, *names: str, metavar: str, nargs: str, const: str, help: str) -> object: ...
+
+
+def csv_option(options: _Options) -> None:
+    """--csv alone is the standard output; with a name, a file of that name."""
+    options.add_argument(
+        "--csv", metavar="OUT.csv", nargs="?", const=STANDARD,
+        help="as CSV, units in its heading, at full precision; with a name ending in .csv into that file",
+    )
+
+
+def check(name: str | None, chain: str) -> None:
+    """Raises Usage where --csv names what is not to be a table: `chain` itself, or a name without .csv."""
+    if name in (None, STANDARD):
+        return
+    assert name is not None
+    if not name.lower().endswith(".csv") or os.path.realpath(name) == os.path.realpath(chain):
+        raise Usage(f'--csv: "{name}" is no name for a table', "name a file that ends in .csv, or write --csv last",
+                    "so that no chain file is written over by mistake")
+
+
+def deliver(name: str | None, table: Callable[[], str], text: Callable[[], str], chain: str, out: Out) -> None:
+    """The text where no CSV is asked for; the CSV to the standard output, or to its file and the text beside it."""
+    if name is None:
+        out.write(text())
+    elif name == STANDARD:
+        out.write(table())
+    else:
+        from polebook.text import files
+
+        files.save(name, table())
+        out.write(text())
+        out.write(f" {out.look.text(name)}: the same as CSV\n")
