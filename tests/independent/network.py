@@ -87,7 +87,7 @@ class System:
 
     def _stamp(self, i: int, e: Element, value: Any) -> None:
         if e.kind in ("R", "C", "tau"):
-            table, y = (self.G, 1 / mp.mpf(value)) if e.kind == "R" else (self.C, mp.mpf(value))
+            table, y = (self.G, mp.fdiv(1, value, dps=50)) if e.kind == "R" else (self.C, mp.mpf(value))
             if e.a == e.b:
                 return
             for row, column, sign in ((e.a, e.a, 1), (e.b, e.b, 1), (e.a, e.b, -1), (e.b, e.a, -1)):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from textwrap import wrap
 from typing import TYPE_CHECKING
 
 from polebook.book import verdict_gain, verdict_peak
@@ -26,13 +27,18 @@ if TYPE_CHECKING:
     from polebook.book.targets import Target
 
 EDGES = ("upper", "lower")
+LINES, WIDTH = 3, 78  # that a verdict may take
 
 
 def verdict(of: Ledger) -> str:
     """A few plain sentences, every number in them a figure of the ledger."""
-    told = _told(of)
+    told, mend, tail = _told(of)
     out = [stage.name for stage in of.chain.stages if stage.left_out]
-    return f"{told} {listed(out)} {'is' if len(out) == 1 else 'are'} left out." if out else told
+    verb = "is" if len(out) == 1 else "are"
+    if out:
+        tail = f"{tail} {sentences(f'{listed(out)} {verb} left out')}".lstrip()
+    whole = " ".join(filter(None, (told, mend, tail)))
+    return whole if len(wrap(whole, WIDTH)) <= LINES else " ".join(filter(None, (told, tail)))
 
 
 def cause(of: Ledger, target: Target) -> str:
@@ -44,41 +50,42 @@ def cause(of: Ledger, target: Target) -> str:
         return found.brief() if found else ""
     if target.name == "gain":
         return verdict_gain.cause(of, target)
-    return verdict_peak.missed(of).rstrip(".")
+    return verdict_peak.missed(of)[0].rstrip(".")
 
 
-def _told(of: Ledger) -> str:
+def _told(of: Ledger) -> tuple[str, str, str]:
+    """What limits the chain, what would mend it, and what else is missed."""
     if of.solution.winding.right is None:
         return sentences("whether the chain is stable could not be told, so no edge is given",
-                         "look for values many decades apart, or parts that all but cancel")
+                         "look for values many decades apart, or parts that all but cancel"), "", ""
     if of.unstable:
-        return unstable(of)
+        return unstable(of), "", ""
     if not of.solution.band.clean:
-        return _no_midband(of)
+        return _no_midband(of), "", ""
     missed = [target for target in of.targets if target.met is False]
-    if missed:
-        worst = min(missed, key=lambda target: target.margin or 0.0)
-        others = [_called(target) for target in missed if target is not worst]
-        comma = "," if worst.name == "gain" else ":"
-        text = f"{capital(_headline(of, worst))}{comma} {_why(of, worst)}"
-        return f"{text} {capital(listed(others))} missed too." if others else text
-    return _met(of)
+    if not missed:
+        return *_met(of), ""
+    worst = min(missed, key=lambda target: target.margin or 0.0)
+    others = [_called(target) for target in missed if target is not worst]
+    why, mend = _why(of, worst)
+    told = f"{capital(_headline(of, worst))}{',' if worst.name == 'gain' else ':'} {why}"
+    return told, mend, sentences(f"{listed(others)} missed too") if others else ""
 
 
 def _no_midband(of: Ledger) -> str:
     constants = of.solution.constants
-    text = f"No clean midband: at no frequency does the response come within 3 dB of {_gain(of)} of gain."
+    text = f"No clean midband: at no frequency does the response come within 3 dB of its {_gain(of)} of gain."
     if constants.lower_hz is None or constants.upper_hz is None:
         return text
     taus, parts = constants.by_part, of.solution.circuit.layout.parts
     low = min((k for k, tau in taus.items() if tau and parts[k].role == "low"), key=lambda k: taus[k] or 0.0)
     high = max((k for k, tau in taus.items() if tau and parts[k].role == "high"), key=lambda k: taus[k] or 0.0)
-    return (f"{text} By time constants the lower edge would be {figure(constants.lower_hz, 'Hz')}, most of it "
-            f"{name_of(of, low)}, the upper {figure(constants.upper_hz, 'Hz')}, most of it {name_of(of, high)}.")
+    return (f"{text} By time constants its lower edge would be {figure(constants.lower_hz, 'Hz')}, {name_of(of, low)} "
+            f"foremost, its upper one {figure(constants.upper_hz, 'Hz')}, {name_of(of, high)} foremost.")
 
 
 def _gain(of: Ledger) -> str:
-    return f"its {decibels(of.solution.gain, verdict_gain.gain_unit(of))}"
+    return decibels(of.solution.gain, verdict_gain.gain_unit(of))
 
 
 def _headline(of: Ledger, target: Target) -> str:
@@ -95,31 +102,34 @@ def _called(target: Target) -> str:
     return f"{target.name} edge" if target.name in EDGES else target.name
 
 
-def _why(of: Ledger, target: Target) -> str:
+def _why(of: Ledger, target: Target) -> tuple[str, str]:
+    """(what follows the headline, what would mend it) of a missed target."""
     if target.name == "gain":
         return verdict_gain.missed(of, target)
     if target.name == "peaking":
         return verdict_peak.missed(of)
     found = limit(of, target.name)
-    return found.told() if found else "no part of it owns the edge."
+    return (found.told(), sentences(found.mend)) if found else ("no part of it owns the edge.", "")
 
 
-def _met(of: Ledger) -> str:
+def _met(of: Ledger) -> tuple[str, str]:
+    """(what has the least to spare and what limits it, what would mend that); what limits the band without targets."""
     unjudged = [target.name for target in of.targets if target.met is None]
     met = len(of.targets) - len(unjudged)
     if not met:
         lead = f"not judged yet: {listed(unjudged)}" if unjudged else "no targets are set"
-        return f"{sentences(lead)} {_band(of)}"
+        return f"{sentences(lead)} {_band(of)}", ""
     lead = {1: "the target is met", 2: "both targets are met"}.get(met, f"all {number(met)} targets are met")
     if unjudged:
         lead += f" ({listed(unjudged)} not judged yet)"
     close = [target for target in of.targets if target.met and target.margin is not None and _tells(target)]
     if not close:
-        return f"{sentences(lead)} {_band(of)}"
+        return f"{sentences(lead)} {_band(of)}", ""
     least = min(close, key=lambda target: target.margin or 0.0)
     headline = f"{_headline(of, least)}{_spare(of, least)}"
     told = sentences(f"{lead}: {headline}") if met == 1 else sentences(lead, f"least to spare: {headline}")
-    return f"{told} {_near(of, least)}".rstrip()
+    why, mend = _near(of, least)
+    return f"{told} {why}".rstrip(), mend
 
 
 def _tells(target: Target) -> bool:
@@ -134,13 +144,14 @@ def _spare(of: Ledger, target: Target) -> str:
     return f" ({per_cent(target.margin or 0.0)}{' to spare' if len(of.targets) == 1 else ''})"
 
 
-def _near(of: Ledger, target: Target) -> str:
+def _near(of: Ledger, target: Target) -> tuple[str, str]:
+    """(what limits a target that is met, what would give it more room)."""
     if target.name in EDGES:
         found = limit(of, target.name)
-        return capital(found.told()) if found else ""
+        return (capital(found.told()), sentences(found.mend)) if found else ("", "")
     if target.name == "peaking":
         return verdict_peak.missed(of)
-    return sentences(gain_lever(of, verdict_gain.difference(target) < 0.0))
+    return "", sentences(gain_lever(of, verdict_gain.difference(target) < 0.0))
 
 
 def _band(of: Ledger) -> str:
@@ -148,7 +159,7 @@ def _band(of: Ledger) -> str:
     upper, lower = of.upper_hz, of.lower_hz
     ends = {end: limit(of, end) for end in EDGES}
     if upper is None and lower is None:
-        return f"Nothing in the file limits its band; the gain is {_gain(of).removeprefix('its ')}."
+        return f"Nothing in the file limits its band; the gain is {_gain(of)}."
     if upper is None:
         return f"The band has no upper edge. {_end('Lower', lower, ends['lower'])}"
     if lower is None:

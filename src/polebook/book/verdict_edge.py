@@ -36,13 +36,12 @@ class Limit:
     alone: bool = True
 
     def told(self) -> str:
-        """All of it, as sentences that follow a colon."""
+        """Owner and way as sentences, the first without a capital."""
         its = "Its" if self.alone else f"{self.first}'s"
-        rest = sentences(f"{its} {self.how}" if self.how else "", self.mend)
-        return f"{self.owns}. {rest}".rstrip()
+        return f"{self.owns}. {sentences(f'{its} {self.how}' if self.how else '')}".rstrip()
 
     def brief(self) -> str:
-        """Without what would mend it, on one line."""
+        """Owner and way in one clause."""
         return f"{self.owns} ({self.how})" if self.how and self.alone else self.owns
 
 

@@ -6,10 +6,10 @@ from math import log10
 from typing import TYPE_CHECKING
 
 from polebook.book.sites import interstage_names
-from polebook.book.verdict_edge import limit
+from polebook.book.verdict_edge import name_of, ranked
 from polebook.book.verdict_how import the
-from polebook.book.verdict_lever import gain_lever
-from polebook.book.verdict_words import decibels, figure, loss, sentences, stated, stated_decibels
+from polebook.book.verdict_lever import gain_lever, lever
+from polebook.book.verdict_words import decibels, figure, loss, per_cent, sentences, stated, stated_decibels
 
 if TYPE_CHECKING:
     from polebook.book.ledger import Ledger
@@ -34,12 +34,12 @@ def headline(of: Ledger, target: Target) -> str:
     return f"{decibels(target.got or 0.0, unit, 2)} for {stated_decibels(20.0 * log10(target.want), unit)}{at}"
 
 
-def missed(of: Ledger, target: Target) -> str:
-    """Sentences that follow the headline and a comma."""
-    off = difference(target)
-    why = cause(of, target)
-    off_by = f"{loss(abs(off))} {'over' if off > 0 else 'short'}{f': {why}' if why else ''}"
-    return f"{off_by}. {sentences(gain_lever(of, off < 0.0))}".rstrip()
+def missed(of: Ledger, target: Target) -> tuple[str, str]:
+    """(what follows the headline and a comma, what mends it), as sentences."""
+    off, why = difference(target), cause(of, target)
+    found = _at_reference(of, -off)
+    mend = found[1] if found else gain_lever(of, off < 0.0)
+    return f"{loss(abs(off))} {'over' if off > 0 else 'short'}{f': {why}' if why else ''}.", sentences(mend)
 
 
 def cause(of: Ledger, target: Target) -> str:
@@ -47,9 +47,9 @@ def cause(of: Ledger, target: Target) -> str:
     off = difference(target)
     if off > 0.0:
         return _tallest(of)
-    at_edge = _at_reference(of, -off)
-    if at_edge:
-        return at_edge
+    found = _at_reference(of, -off)
+    if found:
+        return found[0]
     db, text = worst_joint(of)
     if db >= HEAVY * -off:
         return text
@@ -64,18 +64,23 @@ def _tallest(of: Ledger) -> str:
     return f"{most.name} gives the most, {decibels(most.gain)}" if most and abs(most.gain) > 1.0 else ""
 
 
-def _at_reference(of: Ledger, short: float) -> str:
-    """The edge that has taken most of it by the reference frequency."""
+def _at_reference(of: Ledger, short: float) -> tuple[str, str] | None:
+    """(the edge that has taken most of what is missing by the reference frequency, what would move it)."""
     hz = of.reference_hz
     if "target.reference" not in of.chain.given or hz is None or not of.gain_at_reference:
-        return ""
+        return None
     taken = 20.0 * log10(abs(of.solution.gain) / of.gain_at_reference)
-    if taken < 0.5 * short:
-        return ""
+    if short <= 0.0 or taken < 0.5 * short:
+        return None
     end = "upper" if hz > of.solution.band.seed_hz else "lower"
-    edge, found = of.upper_hz if end == "upper" else of.lower_hz, limit(of, end)
-    blame = f"; of that edge {found.owns}" if found else ""
-    return f"the {end} edge at {figure(edge, 'Hz')} takes {loss(taken)} of it{blame}"
+    edge = of.upper_hz if end == "upper" else of.lower_hz
+    owners = ranked(of, end)
+    if edge is None or not owners:
+        return None
+    text = f"the {end} edge at {figure(edge, 'Hz')} takes {loss(taken)} of it"
+    first, share = owners[0]
+    name = name_of(of, first)
+    return f"{text}; of that edge {name} owns {per_cent(share)}", lever(of, end, first, name)
 
 
 def worst_joint(of: Ledger) -> tuple[float, str]:

@@ -90,4 +90,6 @@ def lever(of: Ledger, end: str, owner: int, called: str) -> str:
 def gain_lever(of: Ledger, raised: bool) -> str:
     """What moves the gain up (`raised`) or down the most."""
     best = strongest(of, "gain")
-    return f"most leverage: {best.step(raised)} {'adds' if raised else 'takes'} {slope(best.value)} {'to' if raised else 'from'} it" if best else ""
+    what = "the midband gain" if of.chain.get("target.reference") else "it"
+    move = ("adds", "to") if raised else ("takes", "from")
+    return f"most leverage: {best.step(raised)} {move[0]} {slope(best.value)} {move[1]} {what}" if best else ""

@@ -51,12 +51,13 @@ def pulls(of: Ledger, hz: float) -> dict[int, float]:
     return {index: DECIBEL * d.real / 100.0 for index, d in found.items()}
 
 
-def missed(of: Ledger) -> str:
-    """Sentences on the peak: where, by what, and what calms it."""
+def missed(of: Ledger) -> tuple[str, str]:
+    """(where it rises and by what, what calms it), as sentences."""
     hz = top_hz(of)
     found = pulls(of, hz)
     name, rise = rising(of, hz)
-    return sentences(f"{name} rises by {loss(rise)} at {figure(hz, 'Hz')}", cause(of, found), _calm(of, found))
+    where = f"{name} rises by {loss(rise)} at {figure(hz, 'Hz')}"
+    return sentences(where, cause(of, found)), sentences(_calm(of, found))
 
 
 def rising(of: Ledger, hz: float) -> tuple[str, float]:

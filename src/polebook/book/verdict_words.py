@@ -72,10 +72,10 @@ def number(count: int) -> str:
 
 
 def capital(text: str) -> str:
-    return text[:1].upper() + text[1:]
+    """With a capital, but for a node's name (n1) in front."""
+    return text if _NODE.match(text) else text[:1].upper() + text[1:]
 
 
 def sentences(*clauses: str) -> str:
-    """Clauses that say something, each with a capital and a full stop; a node's name (n1) keeps its letter."""
-    told = [clause for clause in clauses if clause]
-    return " ".join(f"{clause if _NODE.match(clause) else capital(clause)}." for clause in told)
+    """Clauses that say something, each with a capital and a full stop."""
+    return " ".join(f"{capital(clause)}." for clause in clauses if clause)

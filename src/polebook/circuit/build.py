@@ -17,7 +17,7 @@ from polebook.circuit.views import Network, network
 from polebook.devices.missing import Lack
 from polebook.problem import Problem, ProblemsFound
 from polebook.stages.registry import KINDS, STAMPS
-from polebook.stages.stamper import Given, Stamper, Value
+from polebook.stages.stamper import GROUND, Given, Stamper, Value
 
 CURRENT_KEYS = {"bjt": "ic", "triode": "ia"}  # else id
 
@@ -39,7 +39,9 @@ def circuit(chain: Chain) -> Circuit:
     get = chain.numbers.get
     points = bias.solve(plan, get)
     recorder = Recorder()
-    lacks = _stamp_source(recorder, chain, get)
+    source = recorder.begin("source", chain.source_kind, GROUND)
+    emf, source.after = terminals.source(recorder, chain.source_kind == "voltage", get)
+    lacks: list[tuple[Stage, Lack]] = []
     for stage in chain.stages:
         before = recorder.segments[-1].after
         segment = recorder.begin(stage.name, stage.kind, before)
@@ -52,17 +54,10 @@ def circuit(chain: Chain) -> Circuit:
     if lacks:
         raise ProblemsFound([_problem(chain, plan, stage, lack) for stage, lack in lacks], "")
     before = recorder.segments[-1].after
-    segment = recorder.begin("load", "load", before)
-    segment.after = terminals.load(recorder, before, get)
-    emf = 0 if chain.source_kind == "voltage" else -1
+    load = recorder.begin("load", "load", before)
+    load.after = terminals.load(recorder, before, get)
     layout = arrange(recorder, emf)
     return Circuit(chain, plan, layout, points, network(layout, recorder.values))
-
-
-def _stamp_source(recorder: Recorder, chain: Chain, get: Get) -> list[tuple[Stage, Lack]]:
-    segment = recorder.begin("source", chain.source_kind, -1)
-    _, segment.after = terminals.source(recorder, chain.source_kind == "voltage", get)
-    return []
 
 
 def given_of(chain: Chain, stage: Stage, get: Get, points: Mapping[str, Operating]) -> tuple[Given, tuple[Lack, ...]]:
