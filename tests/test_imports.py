@@ -67,3 +67,21 @@ def test_the_public_face():
     assert result[:2] == ["Q1", 0]
     assert result[2].count(".") == 2
     assert "numpy" in names
+
+
+@pytest.mark.parametrize(
+    "args",
+    [
+        ["parts", SIX],
+        ["card", SIX, "N", "--from", SIX],
+        ["start", "--help"],
+        ["sweep", SIX, "Q1.rcc", "1k:2k"],
+        ["start", SIX],
+    ],
+)
+def test_what_computes_no_figure_needs_no_numpy(args):
+    names, _ = modules_after(
+        f"import os, sys; sys.stderr = open(os.devnull, 'w')\n"
+        f"from polebook.cli.main import main; result = main({args!r})\nsys.stderr = sys.__stderr__"
+    )
+    assert not names & {"numpy", "textual", "rich", "scipy"}

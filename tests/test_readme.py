@@ -6,7 +6,7 @@ import shutil
 import pytest
 
 from polebook.cli.main import COMMANDS, load, main
-from tests.cli.helpers import LISTENER, ROOT
+from tests.cli.helpers import LISTENER, PHOTODIODE, ROOT
 
 README = (ROOT / "README.md").read_text(encoding="utf-8")
 DEVELOPERS = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
@@ -29,6 +29,7 @@ def test_the_excerpt_is_what_the_first_command_prints(capsys):
 def test_every_command_of_the_readme_runs(line, capsys, tmp_path, monkeypatch):
     monkeypatch.chdir(tmp_path)
     shutil.copy(LISTENER, tmp_path / "FILE")
+    shutil.copy(PHOTODIODE, tmp_path / "OTHER")
     words = [word.removesuffix("...") for word in line.split()[1:]]
     assert main(words) == (1 if words[0] == "audit" else 0)
     assert capsys.readouterr().err == ""

@@ -61,6 +61,10 @@ def block(name: str, gain: float, pole: str = "", **keys: object) -> str:
     return stage(name, "block", gain=gain, rin="10k", rout="50", **poles, **keys)
 
 
+def coil(value: str) -> str:
+    return f'[[stage]]\nname = "L1"\nkind = "ladder"\narms = [{{ series_l = "{value}" }}]\n'
+
+
 TWO = emitter("Q1", stray="2p") + emitter("Q2", stray="2p")
 CASES = {
     # an instability
@@ -70,7 +74,7 @@ CASES = {
         '[load]\nresistance = "1k"\n', target(upper="1M")),
     "unstable, a follower behind a long wire": text(
         RAIL, '[source]\nkind = "voltage"\nresistance = 10\n',
-        stage("L1", "ladder", arms=["{ series_l = \"1u\" }"]).replace("'", ""),
+        coil("1u"),
         stage("Q1", "emitter-follower", device="N", couple="10u", rb1="47k", rb2="47k", re="2k2"),
         '[load]\ncouple = "10u"\nresistance = "10k"\ncapacitance = "100p"\n', target(gain="0 dB")),
     # no clean midband
@@ -93,6 +97,12 @@ CASES = {
     "lower missed, corners add up": text(
         RAIL, FROM_600, emitter("Q1", couple="1u", ce="47u"), emitter("Q2", couple="1u", ce="47u"),
         emitter("Q3", couple="1u", ce="47u"), LOAD, target(lower="60")),
+    "lower missed, a sensor that is a capacitance": text(
+        RAIL, '[source]\nkind = "voltage"\nresistance = 0\ncouple = "100p"\n',
+        stage("J1", "common-source", device="J", rg="1M", rs="220", rs_bypassed="470", cs="100u", rd="1k"), LOAD,
+        target(lower="500")),
+    "lower missed, the coupling to the load": text(
+        RAIL, FROM_50, emitter("Q1"), follower("Q2"), '[load]\ncouple = "1u"\nresistance = 600\n', target(lower="100")),
     "lower missed, a data sheet's corner": text(
         FROM_50, block("B1", 10, lower_poles=["5k"]), target(lower="1k")),
     # the upper edge
@@ -122,13 +132,16 @@ CASES = {
         BOTH, DIODE, stage("U1", "transimpedance", device="F", rf="1M"), '[load]\nresistance = "10k"\n',
         target(upper="500k")),
     "upper missed, a coil in the way": text(
-        FROM_50, stage("L1", "ladder", arms=["{ series_l = \"10u\" }"]).replace("'", ""), '[load]\nresistance = 50\n',
+        FROM_50, coil("10u"), '[load]\nresistance = 50\n',
         target(upper="5M")),
+    "upper missed, for all its peaking coil": text(
+        RAIL, FROM_50, emitter("Q1", l_peak="22m", c_load="47p"), follower("Q2"), LOAD, target(upper="2M")),
     "upper missed, many like poles": text(
         FROM_50, *(block(f"B{k}", 3, pole) for k, pole in enumerate(["1M", "1.1M", "1.2M", "1M", "1.3M"], 1)),
         '[load]\nresistance = "1k"\n', target(upper="800k")),
     "upper missed, one node that several parts load": text(
-        RAIL, FROM_600, emitter("Q1", c_load="22p"), emitter("Q2", re="22", rc="1k", c_comp="1p"), LOAD, target(upper="2M")),
+        RAIL, FROM_600, emitter("Q1", c_load="22p"), emitter("Q2", re="22", rc="1k", c_comp="1p"), LOAD,
+        target(upper="2M")),
     "upper missed, a capacitance behind a stopper": text(
         RAIL, '[source]\nkind = "voltage"\nresistance = 10\n', emitter("Q1", stopper="2k2", c_comp="1p"), LOAD,
         target(upper="2M")),
@@ -137,8 +150,8 @@ CASES = {
     "upper missed, a data sheet's pole": text(
         FROM_50, block("B1", 10, "2M"), block("B2", 10, "20M"), target(upper="5M")),
     "upper missed, a stage that holds its input": text(
-        RAIL, CABLE, stage("Q1", "common-emitter", device="N", couple="10u", rf="22k", rb2="12k", rc="1k", re_bypassed="220",
-                           ce="100u"), LOAD, target(upper="20M")),
+        RAIL, CABLE, stage("Q1", "common-emitter", device="N", couple="10u", rf="22k", rb2="12k", rc="1k",
+                           re_bypassed="220", ce="100u"), LOAD, target(upper="20M")),
     "upper and gain missed": text(RAIL, FROM_600, TWO, LOAD, target(gain="57 dB", upper="5M")),
     # peaking
     "peaking over, a coil": text(

@@ -100,3 +100,13 @@ def test_listing_words():
     assert listed([]) == ""
     assert listed(["a"]) == "a"
     assert listed(["a", "b", "c"], "or") == "a, b or c"
+
+
+def test_a_kind_of_several_families_names_the_terminals_of_each():
+    about = {row.key: row.about for row in kinds.listing("cascode").rows}
+    assert about["stopper"] == "resistor in series with the base or gate"
+    assert about["l_peak"].startswith("inductor in series with the collector or drain resistor")
+    assert about["re"] == "emitter resistor, not bypassed"
+    assert about["rs"] == "source resistor, not bypassed"
+    follower = {row.key: row.about for row in kinds.listing("source-follower").rows}
+    assert follower["stopper"] == "resistor in series with the gate"

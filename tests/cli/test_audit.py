@@ -46,12 +46,14 @@ def test_the_missed_edge_is_named_with_what_was_wanted_and_got(capsys):
     assert (code, err) == (1, "")
     lines = out.splitlines()
     assert lines[0] == str(LISTENER)
-    assert len(lines) == 2 + 4 + 1
-    verdicts = {line.split()[0]: line for line in lines[2:-1]}
+    assert len(lines) == 2 + 4 + 2 + 1
+    verdicts = {line.split()[0]: line for line in lines[2:6]}
     assert list(verdicts) == ["gain", "lower", "upper", "peaking"]
     assert re.fullmatch(r" upper +1\.00 MHz +\d{3} kHz +-\d\d\.\d %  missed", verdicts["upper"])
     for name in ("gain", "lower", "peaking"):
         assert verdicts[name].endswith("  met")
+    why = " ".join(" ".join(lines[6:8]).split())
+    assert why.startswith("upper: Q2.c_comp owns 71 %, its 4.7 pF looks like 167 pF at n1 (K -34.4), on 1.52 kΩ")
     assert lines[-1] == " 1 of 4 missed"
 
 
@@ -120,6 +122,7 @@ def test_json(capsys, met, faulty, aimless):
     upper = missed["targets"][2]
     assert upper["margin"] == pytest.approx((upper["got"] - upper["want"]) / upper["want"], rel=1e-12)
     assert upper["want"] == 1e6
+    assert upper["why"].startswith("Q2.c_comp owns 71 %")
     assert len(missed["digest"]) == len(good["digest"]) == 64
     assert bad["digest"] is None
     assert bad["targets"] is None
@@ -141,7 +144,7 @@ def test_an_unstable_chain_meets_nothing(capsys, tmp_path):
     )
     code, out, err = told(capsys, file)
     assert (code, err) == (1, "")
-    assert "unstable" in out
+    assert "Unstable: a pair of poles at" in out
     assert main(["show", str(file)]) == 0
     shown = capsys.readouterr().out
-    assert 0 < shown.index("The chain is unstable") < shown.index("targets  ")
+    assert 0 < shown.index("Unstable: a pair of poles") < shown.index("targets  ")

@@ -10,11 +10,14 @@ from polebook.book import build
 from polebook.chain import read
 from polebook.report.look import Look
 from polebook.report.pages import LEDGER, page
+from polebook.report.sections import unstable, verdict
 from polebook.report.tables import at_frequency
+from tests.book.verdict_cases import CASES
 
 GOLDEN = Path(__file__).parent
 CHAINS = sorted((GOLDEN.parent.parent / "chains").glob("*.toml"))
 AT_HZ = 100e3
+VERDICTS = "verdicts.txt"
 
 
 def texts(chain: Path) -> dict[str, str]:
@@ -30,6 +33,16 @@ def texts(chain: Path) -> dict[str, str]:
         f"{chain.stem}.figures.txt": "".join(f"{path} {value}\n" for path, value in figures(document)),
         f"{chain.stem}.at.txt": "\n".join(at_frequency(section, look)) + "\n",
     }
+
+
+def verdicts() -> str:
+    """Every verdict of the chains that tests/book/verdict_cases.py keeps for them, wrapped as a page shows it."""
+    look = Look()
+    told = []
+    for name, text in CASES.items():
+        document = build.document(build.ledger(read.parse(text, "case.toml")), ("overall", "verdict"))
+        told.append("\n".join([f"{name}:", *(unstable(document, look) or verdict(document, look)), ""]))
+    return "\n".join(told)
 
 
 def figures(value: Any, path: str = "") -> Iterator[tuple[str, str]]:

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from tests.helpers import row_of
+from tests.independent.modes import Mode
 
 SHARE = 1e-6  # owned shares, as they stand
 DECIBEL = 1e-9  # figures in dB, as they stand
@@ -66,6 +67,29 @@ def differences(program: Any, independent: Any, name: str = "", key: str = "") -
             yield from differences(there or {}, row, f"{name}.{'.'.join(labels.values())}", "")
     else:
         yield Difference(name, program, independent, _error(key, program, independent), _limit(key))
+
+
+def root_differences(program: Any, independent: list[Mode], names: list[str], kind: str) -> Iterator[Difference]:
+    """Poles or zeros: their number, the distance of every pair, and the stages of those that are one stage's alone.
+
+    kind is "poles" or "zeros"; names are those of the lines. Like ones are compared as a set.
+    """
+    count = None if program is None else len(program)
+    yield Difference(f"number of {kind}", count, len(independent), float(count != len(independent)), 0.0)
+    left = list(program or [])
+    for mode in independent:
+        if not left:
+            return
+        s = complex(mode.s)
+        row = min(left, key=lambda r: (abs(complex(r["re"], r["im"]) - s), r["stage"] != names[mode.owner()]))
+        left.remove(row)
+        found = complex(row["re"], row["im"])
+        error = abs(found - s) / abs(s) if s else abs(found)
+        yield Difference(f"{kind} at {abs(s) / 6.283185307179586:.6g} Hz", found, s, error, RELATIVE)
+        if mode.clear(1e-4) and not (kind == "poles" and s == 0):
+            owner = names[mode.owner()]
+            error = float("inf") if row["stage"] != owner else 0.0
+            yield Difference(f"stage of {kind} at {abs(s) / 6.283185307179586:.6g} Hz", row["stage"], owner, error, 0.0)
 
 
 def names_of(ledger: dict[str, Any], key: str) -> set[tuple[str, ...]]:

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import tomllib
 from collections.abc import Hashable, Iterable, Mapping
+from functools import cached_property
 from pathlib import Path
 from typing import Any
 
@@ -15,6 +16,7 @@ import numpy as np
 
 from tests.independent.kinds import DEVICE_KINDS
 from tests.independent.linear import Singular, mp
+from tests.independent.modes import Mode, poles, zeros
 from tests.independent.network import GROUND
 from tests.independent.quantity import number
 from tests.independent.solved import TINY, Solved, crossing
@@ -206,7 +208,21 @@ class Oracle(Solved):
             "parts": self.part_rows(taus, owned),
             "bias": self.bias_rows(),
             "account": account,
+            "poles": [self.root_row(m, "poles") for m in self.poles],
+            "zeros": [self.root_row(m, "zeros") for m in self.zeros],
         }
+
+    @cached_property
+    def poles(self) -> list[Mode]:
+        return poles(self.elements)
+
+    @cached_property
+    def zeros(self) -> list[Mode]:
+        return zeros(self.elements, self.nodes, self.load)
+
+    def root_row(self, mode: Mode, kind: str) -> dict[str, Any]:
+        row = mode.row([name for name, _ in self.drawing.lines])
+        return row | {"stage": None} if kind == "poles" and mode.s == 0 else row
 
     def node_estimate(self, sites: Mapping[str, Mapping[str, Any]]) -> Any:
         poles = [s["pole_hz"] for s in sites.values() if s["pole_hz"] is not None]

@@ -10,6 +10,7 @@ the Newton polygon of the coefficients, in digits enough that the last step lies
 from __future__ import annotations
 
 from collections.abc import Hashable, Mapping, Sequence
+from itertools import pairwise
 from typing import Any
 
 from tests.independent.elimination import PRIME, Place, Plan, determinant, plan
@@ -22,7 +23,7 @@ GOOD = 55  # digits of every root
 
 def remainder(value: Any) -> int:
     """A long real (an exact binary fraction) as a remainder of the prime."""
-    sign, mantissa, exponent, _ = mp.mpf(value)._mpf_
+    sign, mantissa, exponent, _ = value._mpf_  # taken as it is: mpf() would round it
     return (-1) ** sign * int(mantissa) * pow(2, exponent, PRIME) % PRIME
 
 
@@ -129,7 +130,7 @@ def _starts(c: Sequence[Any]) -> list[Any]:
             hull.pop()
         hull.append((k, y))
     out = []
-    for (k0, y0), (k1, y1) in zip(hull, hull[1:], strict=False):
+    for (k0, y0), (k1, y1) in pairwise(hull):
         radius = mp.exp((y0 - y1) / (k1 - k0))
         for i in range(k1 - k0):
             out.append(radius * mp.expj(2 * mp.pi * (i + mp.mpf("0.3")) / (k1 - k0) + mp.mpf("0.7") + k0))

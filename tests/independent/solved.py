@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Hashable, Iterable, Mapping
+from dataclasses import replace
+from functools import cached_property
 from typing import Any
 
 import numpy as np
@@ -36,9 +38,9 @@ def crossing(excess: Callable[[Any], Any], lo: Any, hi: Any) -> Any:
 
 
 class Solved:
-    """One chain: drawn once, then asked figure by figure."""
+    """One chain: drawn once, then asked figure by figure. Elements may be scaled, by line and part."""
 
-    def __init__(self, doc: Mapping[str, Any]) -> None:
+    def __init__(self, doc: Mapping[str, Any], scaled: Mapping[tuple[int, str], Any] | None = None) -> None:
         self.doc = doc
         celsius = number(doc.get("supply", {}).get("temperature", 25))
         self.cards = {name: Card(table, celsius) for name, table in doc.get("device", {}).items()}
@@ -46,6 +48,8 @@ class Solved:
         self.bias |= bias(doc, self.cards)
         self.drawing = Drawing(doc, self.bias, self.cards)
         self.elements = self.drawing.elements
+        if scaled:
+            self.elements = [replace(e, value=e.value * scaled.get(e.key, 1)) for e in self.elements]
         self.nodes, self.load = self.drawing.nodes, self.drawing.load
         self.last = len(self.drawing.lines) - 1  # the load's line
         self.by_current = doc["source"]["kind"] == "current"
@@ -53,7 +57,7 @@ class Solved:
         kept, self.find = merged(self.elements)
         self.mid_elements = kept
         self.mid = System(kept)
-        self._midband()
+        self.mid_v = self.mid.voltages(mp.mpf(0), [self._drive(self.mid, self.find)])[0]
         self.gain = self.v(self.load)
         if self.gain == 0:
             raise ValueError("the midband gain is zero")
@@ -69,13 +73,12 @@ class Solved:
         """A unit source on the full network."""
         return self._drive(self.full, lambda node: node)
 
-    def _midband(self) -> None:
-        """Midband node voltages for a unit source, and the driving-point resistances."""
+    @cached_property
+    def response(self) -> dict[str, dict[Hashable, Any]]:
+        """Midband voltages for 1 A into each node."""
         nodes = [k for k in self.mid.unknowns if isinstance(k, str)]
-        drives = [self._drive(self.mid, self.find)] + [{k: mp.mpf(1)} for k in nodes]
-        answers = self.mid.voltages(mp.mpf(0), drives)
-        self.mid_v = answers[0]
-        self.response = dict(zip(nodes, answers[1:], strict=True))
+        answers = self.mid.voltages(mp.mpf(0), [{k: mp.mpf(1)} for k in nodes])
+        return dict(zip(nodes, answers, strict=True))
 
     def v(self, node: str) -> Any:
         """Midband voltage for a unit source; None at a node that nothing holds."""

@@ -40,7 +40,8 @@ def test_an_unstable_chain_says_so_first_and_gives_no_edges() -> None:
     assert doc["overall"]["upper_edge_hz"] is None and doc["overall"]["lower_edge_hz"] is None
     assert doc["overall"]["gain"] is not None
     assert all(n["lost_upper_db"] is None for n in doc["nodes"])
-    assert any("unstable" in c["text"] for c in doc["cautions"])
+    assert doc["verdict"].startswith("Unstable: a pole at ") and "latches" in doc["verdict"]
+    assert not any("unstable" in c["text"] for c in doc["cautions"])
 
 
 def pairs(count: int) -> str:

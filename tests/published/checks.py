@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from functools import cache
+from math import pi
 from pathlib import Path
 from typing import Any
 
@@ -36,3 +37,25 @@ def printed(value: Any, figure: float, share: float) -> None:
 def exact(value: Any, figure: float, share: float = 1e-9) -> None:
     """`value` is the exact figure of the stated circuit."""
     assert value == pytest.approx(figure, rel=share)
+
+
+def _roots(kind: str, read: Callable[[Path], dict[str, Any]], name: str) -> list[complex]:
+    rows = _solved(read, name)[kind]
+    assert rows is not None, f"{kind} of {name} not resolved"
+    return [complex(row["re"], row["im"]) for row in rows]
+
+
+def poles_of(read: Callable[[Path], dict[str, Any]], name: str) -> list[complex]:
+    """Poles of a chain file of this folder, rad/s, by rising size."""
+    return _roots("poles", read, name)
+
+
+def zeros_of(read: Callable[[Path], dict[str, Any]], name: str) -> list[complex]:
+    """Zeros, rad/s, by rising size."""
+    return _roots("zeros", read, name)
+
+
+def real_hz(found: list[complex]) -> list[float]:
+    """Poles or zeros on the negative real axis as positive corners in Hz, on the positive one as negative ones."""
+    assert all(s.imag == 0 for s in found)
+    return [-s.real / (2 * pi) for s in found]

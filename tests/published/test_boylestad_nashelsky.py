@@ -5,7 +5,7 @@ from __future__ import annotations
 
 from math import pi
 
-from tests.published.checks import each_solver, exact, figures_of, printed
+from tests.published.checks import each_solver, exact, figures_of, poles_of, printed, real_hz, zeros_of
 
 
 @each_solver
@@ -22,6 +22,17 @@ def test_miller_halves_and_wiring(read):
     exact(f("n1.pole_hz"), 8596141.61426336, 1e-5)  # kept with the gain rounded to -90
     exact(f("overall.octc_upper_hz"), 638319.2640862273)
     exact(f("overall.upper_edge_hz"), 643177.7771953167, 5e-6)
+    *couplings, first, second = real_hz(poles_of(read, "CE-3"))
+    assert len(couplings) == 2 and max(couplings) < 0.1
+    exact(first, 643213.9966908743, 1e-7)
+    exact(second, 83881167.40593028, 1e-7)  # the poles split: 8.6 MHz is none
+    exact(real_hz(zeros_of(read, "CE-3"))[-1], -2524665975.442502)
+    capacitance = f("Q1.cpi.value") + f("Q1.cmu.value")
+    f_beta, f_t = 1 / (2 * pi * f("Q1.rpi.value") * capacitance), f("Q1.gm.value") / (2 * pi * capacitance)
+    printed(f_beta, 2.52e6, 0.005)
+    exact(f_beta, 2524665.9754425026)
+    printed(f_t, 252e6, 0.005)
+    exact(f_t, 252466597.54425028)
 
 
 @each_solver

@@ -1,13 +1,13 @@
 """P. R. Gray, P. J. Hurst, S. H. Lewis, R. G. Meyer, Analysis and Design of Analog Integrated Circuits, 5th ed.,
-chapter 7. The exact edges were solved from the stated circuits (agreeing to 1e-6 with the values kept here)."""
+chapters 7 and 9. The exact edges were solved from the stated circuits (agreeing to 1e-6 with the values kept here)."""
 
 from __future__ import annotations
 
-from math import pi
+from math import atan, degrees, pi, sqrt
 
 import pytest
 
-from tests.published.checks import each_solver, exact, figures_of, printed
+from tests.published.checks import each_solver, exact, figures_of, poles_of, printed, real_hz, zeros_of
 
 
 @each_solver
@@ -28,6 +28,11 @@ def test_common_emitter(read):
     exact(f("overall.octc_upper_hz"), 1692917.3907971617)
     exact(f("overall.upper_edge_hz"), 1698758.2268189702, 1e-6)
     exact(f("overall.gain"), -131.57894736842107)
+    first, second = real_hz(poles_of(read, "CE-1"))
+    exact(first, 1698777.963321708)
+    exact(second, 490718397.41921)
+    (zero,) = real_hz(zeros_of(read, "CE-1"))
+    exact(zero, -12242687930.145798)  # gm/cmu, on the right
 
 
 @each_solver
@@ -46,6 +51,11 @@ def test_common_source(read):
     printed(f("overall.gain"), -70.5, 0.005)
     exact(f("overall.gain"), -70.71067811865476)
     exact(f("overall.upper_edge_hz"), 3685206.4743994325, 1e-6)
+    first, second = real_hz(poles_of(read, "CS-1"))
+    exact(first, 3685377.786229008)
+    exact(second, 536237119.74190253)
+    (zero,) = real_hz(zeros_of(read, "CS-1"))
+    exact(zero, -4501581580.785531)
 
 
 @each_solver
@@ -60,11 +70,27 @@ def test_emitter_follower(read):
     exact(f("Q1.output_ohm"), 2800 / 101)
     printed(f("overall.upper_edge_hz"), 725e6, 0.02)
     exact(f("overall.upper_edge_hz"), 722297986.9977866, 1e-5)
+    for found, rate in zip(poles_of(read, "EF-1"), (-3117093902.966519, -6317521481.648864), strict=True):
+        exact(found, rate)
+
+
+@each_solver
+def test_pole_and_zero_of_an_emitter_follower(read):
+    """The same without Cmu. Printed are the pole with 28 Ω for 27.93 Ω, and -gm/Cpi for the zero; the exact zero is
+    -(gm + 1/rpi)/Cpi, whose distance from the pole is what a follower's bandwidth hangs on."""
+    (pole,), (zero,) = poles_of(read, "EF-1-0"), zeros_of(read, "EF-1-0")
+    printed(pole, -3.57e9, 0.015)
+    exact(pole, -3580419580.41957)
+    printed(zero, -3.85e9, 0.012)
+    exact(zero, -3884615384.615385)
+    f = figures_of(read, "EF-1-0")
+    exact(f("Q1.cpi.tau_s"), -1 / pole.real)  # one capacitance: its time constant is the pole
 
 
 @each_solver
 def test_two_common_sources(read):
-    """Section 7.3.3, example: the open-circuit time constants of a cascade beside its exact edge."""
+    """Section 7.3.3, example: the open-circuit time constants of a cascade beside its exact edge, poles and zeros.
+    The book's numerical solution prints 205 kHz for the first pole and for the edge: 206.3 and 205.8 kHz."""
     f = figures_of(read, "CSCS-1")
     taus = {
         "M1.cgs": 50e-9, "M1.cgd": 320e-9, "M1.cdb": 20e-9,
@@ -78,16 +104,37 @@ def test_two_common_sources(read):
     printed(f("overall.upper_edge_hz"), 205e3, 0.005)
     exact(f("overall.upper_edge_hz"), 205760.31089799857, 1e-6)
     exact(f("overall.gain"), 900)
+    poles = poles_of(read, "CSCS-1")
+    corners = zip(real_hz(poles), (205e3, 4.02e6, 39.98e6), (0.008, 0.003, 0.001), strict=True)
+    for pole, figure, share in corners:
+        printed(pole, figure, share)
+    for pole, hz in zip(real_hz(poles), (206304.71082538166, 4022771.211154375, 39980630.49243563), strict=True):
+        exact(pole, hz)
+    exact(-sum(1 / p.real for p in poles), 815e-9)  # of an exact set of poles, the sum of the time constants
+    zeros = real_hz(zeros_of(read, "CSCS-1"))
+    for zero, figure, share in zip(zeros, (-477e6, -955e6), (0.002, 0.001), strict=True):
+        printed(zero, figure, share)
+    exact(zeros[0], -477464829.275686)
+    exact(zeros[1], -954929658.551372)
 
 
 @each_solver
 def test_large_feedback_capacitance(read):
-    """Section 7.3.6, example: its open-circuit time constants and their sum."""
+    """Section 7.3.6, example: open-circuit time constants and their sum; the second pole from the short-circuit ones,
+    200 ns of the feedback capacitor and 312 ps of the gate."""
     f = figures_of(read, "SCTC-1")
     exact(f("M1.cgd.tau_s"), 6.4e-6)
     exact(f("M1.cgs.tau_s"), 10e-9)
     printed(2 * pi * f("overall.octc_upper_hz"), 156e3, 0.002)
     exact(2 * pi * f("overall.octc_upper_hz"), 156006.24024960998)
+    first, second = poles_of(read, "SCTC-1")
+    printed(first, -156e3, 0.002)
+    exact(first, -156013.8347321723)
+    printed(second, -3.20e9, 0.003)
+    exact(second, -3204843986.1652813)
+    printed(second, -3.21e9, 0.003)  # the sum of 1/200 ns and 1/312 ps, which is that of both poles
+    exact(first + second, -(1 / 200e-9 + 1 / 312.5e-12))
+    exact(1 / first + 1 / second, -(6.4e-6 + 10e-9))
 
 
 SHRINKAGE = {  # n: printed, its share, exact √(2^(1/n) - 1), exact growth of lower corners
@@ -115,6 +162,46 @@ def test_shrinkage_of_like_stages(read, n):
     exact(f("overall.sctc_lower_hz") / 1e-6, n)
     if n == 2:
         printed(1 - f("overall.octc_upper_hz") / f("overall.upper_edge_hz"), 0.22, 0.02)
+    poles = real_hz(poles_of(read, f"SHRINK-1-{n}"))
+    assert len(poles) == 2 * n
+    for low, high in zip(poles[:n], poles[n:], strict=True):  # like poles, none drawn to its neighbours
+        exact(low, 1e-6, 1e-12)
+        exact(high, 1e6, 1e-12)
+    assert zeros_of(read, f"SHRINK-1-{n}") == [0] * n
     for k in range(1, n + 1):
         exact(f(f"A{k}.owns_upper"), 1 / n, 1e-6)
         exact(f(f"A{k}.owns_lower"), 1 / n, 1e-6)
+
+
+@each_solver
+def test_a_nulling_resistor_sends_the_zero_away(read):
+    """Section 9.4.3, example: 3.2 pF for 45° with gm1 = 1 mA/V and R = 1/gm6 = 645 Ω. Second pole and zero by the
+    formulas gm6·C/(C1·C2 + C·(C1 + C2)) and gm6/C; the 10 MΩ of the chain file, which the book does not state, leave
+    the first right to 0.03 % and do not reach the second."""
+    f = figures_of(read, "COMP-2")
+    exact(f("M6.c_comp.value"), 3.2e-12)
+    printed(f("M6.r_comp.value"), 1 / f("M6.gm.value"), 0.002)
+    (zero,) = real_hz(zeros_of(read, "COMP-2-0"))
+    exact(zero, -77090675.5601368)
+    _, second = real_hz(poles_of(read, "COMP-2-0"))
+    exact(second, 46479540.61091621, 3e-4)
+    exact(1e-3 / (2 * pi * f("M6.c_comp.value")), 49735919.716217294)  # gm1/C, near enough to the second pole for 45°
+    (away,) = real_hz(zeros_of(read, "COMP-2"))
+    exact(away, -1 / (2 * pi * f("M6.c_comp.value") * (1 / 1.55e-3 - 645)))  # printed 645 Ω, not 645.16 Ω: 308 GHz
+    _, _, third = real_hz(poles_of(read, "COMP-2"))
+    printed(third, 2056265414.623971, 0.06)  # 1/(R·C1), as the book has it
+
+
+@each_solver
+def test_a_doublet_of_an_octave(read):
+    """Sections 7.2.2 and 7.3.5: a pole and a zero at twice its frequency turn the phase back by 19.47° between them,
+    printed -19.4°; the tail's 1 MΩ and 1 pF printed as 166 kHz, exact 159.2 kHz."""
+    (pole,), (zero,) = real_hz(poles_of(read, "DIFF-2")), real_hz(zeros_of(read, "DIFF-2"))
+    exact(zero / pole, 2)
+    between = sqrt(pole * zero)
+    phase = degrees(atan(between / zero) - atan(between / pole))
+    printed(phase, -19.4, 0.005)
+    exact(phase, -19.4712206344907)
+    (tail,) = real_hz(poles_of(read, "DIFF-2-tail"))
+    printed(tail, 166e3, 0.05)
+    exact(tail, 159154.94309189534)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from math import pi
 
-from tests.published.checks import each_solver, exact, figures_of, printed
+from tests.published.checks import each_solver, exact, figures_of, poles_of, printed, real_hz, zeros_of
 
 
 @each_solver
@@ -25,3 +25,9 @@ def test_common_source_from_its_data_sheet(read):
     exact(1 / (2 * pi * f("load.couple.tau_s")), 13.839560268860463)
     exact(f("overall.octc_upper_hz"), 2105583.9491488663)
     exact(f("overall.upper_edge_hz"), 2148991.6235952717, 2e-3)
+    lower, second_lower, first, second = real_hz(poles_of(read, "CS-5"))
+    printed(lower, 2.39, 0.005)
+    printed(second_lower, 13.8, 0.005)
+    exact(first, 2149895.0795926056, 2e-3)
+    exact(second, 102159085.68822536, 2e-3)  # not 48 MHz: the poles split
+    exact(real_hz(zeros_of(read, "CS-5"))[-1], -0.093 / (2 * pi * 5e-12))

@@ -5,7 +5,7 @@ from __future__ import annotations
 
 from math import log10, pi
 
-from tests.published.checks import each_solver, exact, figures_of, printed
+from tests.published.checks import each_solver, exact, figures_of, poles_of, printed, real_hz, zeros_of
 
 
 @each_solver
@@ -21,6 +21,12 @@ def test_one_coupling_and_one_shunt_capacitor(read):
     exact(f("source.couple.tau_s"), 0.011)
     printed(f("L1.arm2.tau_s"), 2.73e-9, 0.002)
     exact(f("L1.arm2.tau_s"), 2.727272727272727e-09)
+    lower, upper = real_hz(poles_of(read, "RC-1"))
+    printed(lower, 14.5, 0.005)
+    exact(lower, 14.468595317613039)
+    printed(upper, 58.3e6, 0.003)
+    exact(upper, 58356957.148960166)
+    assert zeros_of(read, "RC-1") == [0]
 
 
 @each_solver
@@ -61,3 +67,9 @@ def test_bipolar_cascode(read):
     printed(f("Q1.k"), -1, 0.01)
     exact(f("overall.octc_upper_hz"), 8614469.570090747)
     exact(f("overall.upper_edge_hz"), 10908566.217032898, 1e-6)
+    first, second, third = real_hz(poles_of(read, "CASC-3"))
+    printed(first, 11.9e6, 0.006)
+    exact(first, 11936620.731892154)
+    printed(second, 38.3e6, 0.05)  # the middle node's pole, far above, draws it down by 3 %
+    exact(second, 37178302.18552845)
+    exact(third, 184824271.3745359)

@@ -5,7 +5,7 @@ from __future__ import annotations
 
 from math import pi
 
-from tests.published.checks import each_solver, exact, figures_of, printed
+from tests.published.checks import each_solver, exact, figures_of, poles_of, printed, real_hz, zeros_of
 
 
 @each_solver
@@ -22,6 +22,10 @@ def test_common_source_by_miller(read):
     exact(f("n0.pole_hz"), 381808.23132141115)
     exact(f("overall.octc_upper_hz"), 379209.0545942195)
     exact(f("overall.upper_edge_hz"), 379815.25058404834, 1e-5)
+    first, second = real_hz(poles_of(read, "CS-2"))
+    exact(first, 379813.23578620504)
+    exact(second, 238386464.15590608)
+    exact(real_hz(zeros_of(read, "CS-2"))[0], -397887357.72973835)
 
 
 @each_solver
@@ -40,11 +44,16 @@ def test_common_emitter_by_miller(read):
     exact(f("n0.pole_hz"), 759301.0880079482)
     exact(f("overall.octc_upper_hz"), 748639.5018135537)
     exact(f("overall.upper_edge_hz"), 749210.7328277571, 1e-5)
+    first, second = real_hz(poles_of(read, "CE-2"))
+    exact(first, 749209.8225198223)
+    exact(second, 983460818.2267256)
+    exact(real_hz(zeros_of(read, "CE-2"))[0], -6366197723.675814)
 
 
 @each_solver
 def test_active_load_by_three_methods(read):
-    """Example 6.9: Miller 27 % high, time constants 5 % low, and exact. Gain, input capacitance and Στ are recalled."""
+    """Example 6.9: Miller 27 % high, time constants 5 % low, and exact. Gain, input capacitance, Στ and the poles are
+    recalled."""
     f = figures_of(read, "CS-3")
     printed(f("overall.gain"), -12.3, 0.005)
     exact(f("overall.gain"), -12.275)
@@ -62,6 +71,14 @@ def test_active_load_by_three_methods(read):
     printed(f("overall.octc_upper_hz"), 137e6, 0.01)
     exact(f("overall.octc_upper_hz"), 137397973.92143598)
     exact(f("overall.upper_edge_hz"), 145072706.79231945, 1e-6)
+    first, second = real_hz(poles_of(read, "CS-3"))
+    printed(first, 145.3e6, 0.01)
+    exact(first, 145582805.099439)
+    printed(second, 2.45e9, 0.02)
+    exact(second, 2443884549.777968)
+    (zero,) = real_hz(zeros_of(read, "CS-3"))
+    printed(zero, -40e9, 0.01)
+    exact(zero, -39788735772.97383)
 
 
 @each_solver
@@ -79,6 +96,9 @@ def test_lower_corners_of_a_common_emitter(read):
         printed(1 / (2 * pi * f(f"{part}.tau_s")), corner_hz, 0.025)
     exact(f("overall.sctc_lower_hz"), 100.59153033165627)
     exact(f("overall.lower_edge_hz"), 90.88692447623872, 1e-7)
+    corners = (0.6450401961151233, 10.202239941788156, 89.74425019375296)
+    for pole, hz in zip(real_hz(poles_of(read, "LF-2")), corners, strict=True):
+        exact(pole, hz, 1e-7)  # kept with an ideal current source at the emitter
 
 
 @each_solver
@@ -89,6 +109,12 @@ def test_lower_corners_that_do_not_act_on_each_other(read):
         printed(1 / (2 * pi * f(f"{part}.tau_s")), corner_hz, 0.01)
     exact(f("overall.sctc_lower_hz"), 119.52924482971224)
     exact(f("overall.lower_edge_hz"), 101.4450874019549, 2e-6)
+    # rounding the capacitors to two digits moved the corners from 100, 10 and 10 Hz
+    tau_s = [1.6e-6 / (1e-3 + 1e-12), 3.3e-9 * 4.8e6, 0.53e-6 * 30e3]
+    for pole, tau in zip(real_hz(poles_of(read, "LF-3")), sorted(tau_s, reverse=True), strict=True):
+        exact(pole, 1 / (2 * pi * tau), 1e-7)
+    for pole, hz in zip(real_hz(poles_of(read, "LF-3")), (10.01, 10.05, 99.47), strict=True):
+        printed(pole, hz, 0.01)
 
 
 @each_solver
@@ -170,3 +196,17 @@ def test_miller_split_of_a_capacitor(read):
     printed(f("overall.upper_edge_hz"), 157.6e3, 0.001)
     exact(f("overall.upper_edge_hz"), 157579.151576134)
     exact(f("n0.pole_hz"), 157579.151576134)
+
+
+@each_solver
+def test_second_pole_of_a_two_stage_amplifier(read):
+    """Example 9.1: 637 MHz of Gm2 = 3.2 mA/V into 0.8 pF, C for 75°, and the resistor 1/Gm2 that would send the zero
+    away, 863 MHz on the right without it: printed 316 Ω, of 3.16 mA/V not yet rounded."""
+    f = figures_of(read, "COMP-3")
+    printed(1 / f("M6.gm.value"), 316, 0.015)
+    printed(f("M6.c_comp.value"), 0.6e-12, 0.03)
+    _, second = real_hz(poles_of(read, "COMP-3"))
+    printed(second, 637e6, 0.002)
+    exact(second, 636619772.3675814, 2e-4)
+    (zero,) = real_hz(zeros_of(read, "COMP-3"))
+    exact(zero, -f("M6.gm.value") / (2 * pi * f("M6.c_comp.value")))

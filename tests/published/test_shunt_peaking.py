@@ -7,7 +7,7 @@ from math import log10, pi, sqrt
 
 import pytest
 
-from tests.published.checks import each_solver, exact, figures_of, printed
+from tests.published.checks import each_solver, exact, figures_of, poles_of, printed, zeros_of
 
 # |Z/R|² = (1 + y/4)/(1 + y²/4) at m = 1/2, greatest at y = 2√5 - 4 (y: square of the frequency over 1/(RC))
 LEVEL_PEAK = sqrt((1 + (sqrt(5) / 2 - 1)) / (1 + (sqrt(5) - 2) ** 2))
@@ -32,6 +32,16 @@ def test_bandwidth_multiplier(read, case):
     if peak is not None:
         assert f("overall.peaking_db") == pytest.approx(20 * log10(peak), rel=1e-8, abs=1e-12)
     assert f("M1.owns_upper") == pytest.approx(1, rel=1e-9)
+    poles, zeros = poles_of(read, f"SHUNT-1-{case}"), zeros_of(read, f"SHUNT-1-{case}")
+    if case == "no":
+        exact(poles[0], -1 / (1e3 * 1e-12))
+        assert zeros == []
+        return
+    m = f("M1.l_peak.value") / (1e3**2 * 1e-12)
+    exact(zeros[0], -1e3 / f("M1.l_peak.value"))
+    exact(sum(poles), zeros[0].real)  # s² + s·R/L + 1/(LC)
+    exact(abs(poles[0]) / (2 * abs(poles[0].real)), sqrt(m))  # Q, a pair for m over 1/4
+    exact(abs(poles[0]) ** 2, 1 / (f("M1.l_peak.value") * 1e-12))
 
 
 @each_solver

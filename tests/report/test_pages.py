@@ -99,7 +99,37 @@ def test_instability_is_told_first():
     doc["overall"]["unstable"] = True
     doc |= {"targets": None, "account": None}
     doc["overall"] |= {"upper_edge_hz": None, "lower_edge_hz": None}
-    assert drawn(doc).splitlines()[2].startswith(" The chain is unstable")
+    doc["verdict"] = "Unstable: a pair of poles at 3.00 MHz grows."
+    for name in PAGES:
+        text = drawn(doc, name)
+        assert text.splitlines()[2].startswith(" Unstable: a pair of poles at 3.00 MHz")
+        assert text.count("Unstable") == 1
+    doc["verdict"] = None
+    assert drawn(doc).splitlines()[2].startswith(" Unstable: the chain oscillates")
+
+
+def test_the_verdict_leads_the_page_and_is_not_said_twice():
+    told = "Upper edge 274 kHz for 1 MHz: Q1.cmu owns 90 %. It looks like 172 pF at n0 (K -35.6)."
+    doc = document() | {"verdict": told}
+    for name in ("ledger", "all"):
+        lines = drawn(doc, name).splitlines()
+        assert lines[2] == " Upper edge 274 kHz for 1 MHz: Q1.cmu owns 90 %. It looks like 172 pF at n0"
+        assert lines[3] == " (K -35.6)."
+        text = " ".join(" ".join(lines).split())
+        assert "Q1.cmu owns 90 % of the upper edge" not in text
+        assert "Q1.couple owns 75 % of the lower edge" in text
+    assert "Q1.cmu owns 90 % of the upper edge" in " ".join(drawn(doc, "parts").split())
+
+
+def test_a_missed_target_is_explained_below_its_audit_and_not_in_the_table():
+    doc = document()
+    doc["targets"][1]["why"] = "Q1.cmu owns 90 %, its 4.7 pF looks like 172 pF at n0 (K -35.6), on 500 Ω"
+    lines = audit("two.toml", doc, Look()).splitlines()
+    assert lines[3].endswith("missed")
+    assert lines[5] == " upper: Q1.cmu owns 90 %, its 4.7 pF looks like 172 pF at n0 (K -35.6), on"
+    assert lines[6] == "   500 Ω"
+    assert lines[7:] == [" 1 of 3 missed, 1 not judged"]
+    assert "owns 90 %, its" not in drawn(doc)
 
 
 def test_what_a_held_node_passes_on_is_shown():

@@ -12,6 +12,7 @@ from polebook.book.ledger import Ledger, ledger
 from polebook.book.lines import Line
 from polebook.book.poles import Root
 from polebook.book.reach import within_reach
+from polebook.book.verdict import cause
 from polebook.solve.fold import fold
 
 LATER = ("rise_time_s", "overshoot_percent", "settling_1_s", "settling_01_s", "sag_percent", "group_delay_s",
@@ -157,8 +158,9 @@ def account(of: Ledger) -> dict[str, Any]:
 
 
 def targets(of: Ledger) -> list[dict[str, Any]]:
-    """Every target of the file with what was got."""
-    return [{"name": t.name, "want": t.want, "got": t.got, "margin": t.margin, "met": t.met, "why": t.why}
+    """Every target of the file with what was got, and why it is missed or not judged."""
+    return [{"name": t.name, "want": t.want, "got": t.got, "margin": t.margin, "met": t.met,
+             "why": t.why or cause(of, t)}
             for t in of.targets]
 
 
@@ -175,7 +177,7 @@ def _later(_: Ledger) -> None:
 SECTIONS: Mapping[str, Callable[[Ledger], Any]] = {
     "overall": overall, "lines": lines, "nodes": nodes, "parts": parts, "cards": cards, "bias": operating,
     "rails": _later, "poles": lambda of: roots(of.poles.roots), "zeros": lambda of: roots(of.zeros),
-    "account": account, "targets": targets, "levels": _later, "verdict": _later, "cautions": cautions,
+    "account": account, "targets": targets, "levels": _later, "verdict": lambda of: of.verdict, "cautions": cautions,
 }
 """Key of the document -> what computes it."""
 

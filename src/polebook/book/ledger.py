@@ -16,6 +16,7 @@ from polebook.book.shares import owned
 from polebook.book.sites import Site, equal_stage_pole, node_estimate, sites
 from polebook.book.solution import Solution
 from polebook.book.targets import Got, Target, targets
+from polebook.book.verdict import verdict
 from polebook.chain.model import Chain
 from polebook.circuit import bias_cautions
 from polebook.problem import Problem
@@ -141,6 +142,11 @@ class Ledger:
         return targets(self.chain, Got(
             self.solution.gain if gain is None else gain, self.lower_hz, self.upper_hz,
             band.peaking_db if band else 0.0, not self.judged, bool(band and band.clean)))
+
+    @cached_property
+    def verdict(self) -> str:
+        """What limits the chain now, and by which mechanism."""
+        return verdict(self)
 
     @cached_property
     def cautions(self) -> list[Problem]:

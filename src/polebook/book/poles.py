@@ -17,8 +17,14 @@ if TYPE_CHECKING:
     from collections.abc import Mapping
 
 FORMULAS = (
+    Formula("poles.re", "p = re + j·im with det(G + p·C) = 0 of the full network", "all at once by simultaneous Newton "
+            "steps that repel each other (D. A. Bini, L. Gemignani and F. Tisseur, The Ehrlich-Aberth method for the "
+            "nonsymmetric tridiagonal eigenvalue problem, SIAM J. Matrix Anal. Appl. 27, 2005; from memory)"),
     Formula("poles.hz", "|p|/(2·pi), det(G + p·C) = 0 of the full network", "definition"),
     Formula("poles.q", "|p|/(2·|re p|) of a complex pair", "definition"),
+    Formula("zeros.re", "z = re + j·im at which the stage's forward cofactor is 0: nothing of the signal passes it",
+            "definition"),
+    Formula("zeros.q", "|z|/(2·|re z|) of a complex pair", "definition"),
     Formula("poles.stage", "the stage with the largest Re(-sum of d ln p/d ln X) over its C and L",
             "derivative of an eigenvalue by its left and right vectors (any text on matrix perturbation)"),
     Formula("zeros.hz", "|z|/(2·pi) of the stage's forward cofactor", "definition"),

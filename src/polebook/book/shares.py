@@ -11,7 +11,7 @@ from polebook.solve.contributions import contributions
 from polebook.solve.fold import fold
 from polebook.solve.transfer import adjoint, branch_currents, voltages
 
-HOMOGENEITY = "implicit derivative of |H(f)| = |gain|/sqrt 2; all C, L and tau times λ scale every f by 1/λ, so " \
+HOMOGENEITY = "implicit derivative of |H(f)| = |gain|/sqrt 2; all C, L and tau times x scale every f by 1/x, so " \
               "that the shares sum to 1 (Euler's theorem on homogeneous functions)"
 FORMULAS = (
     Formula("parts.owns_upper", "-d ln f_H/d ln X of the exact upper edge", HOMOGENEITY),

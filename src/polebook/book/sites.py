@@ -17,7 +17,7 @@ SHRINKAGE = "product of buffered one-pole stages (P. R. Gray, P. J. Hurst, S. H.
 FORMULAS = (
     Formula("nodes.pole_hz", "f_S = 1/(2·pi·tau_S), tau_S = sum of R_i·C_i over the site's nodes, C_i with its "
                              "Miller halves", "definition"),
-    Formula("nodes.ohm", "driving-point resistance at the interstage node, midband", "definition"),
+    Formula("nodes.ohm", "V/I for a current into the node, midband", "definition"),
     Formula("nodes.farad", "tau_S/R", "definition"),
     Formula("nodes.room", "f_S/(f_a/sqrt(2^(1/n) - 1)), n the interstage sites with a pole", SHRINKAGE),
     Formula("overall.node_upper_hz", "the f at which the product of 1 + (f/f_S)^2 over the sites is 2", SHRINKAGE),

@@ -2,17 +2,17 @@
 
 from __future__ import annotations
 
-from textwrap import wrap
 from typing import TYPE_CHECKING
 
 from polebook.book import verdict_gain, verdict_peak
-from polebook.book.verdict_edge import Limit, limit, name_of
+from polebook.book.verdict_edge import limit, name_of
 from polebook.book.verdict_lever import gain_lever
 from polebook.book.verdict_unstable import unstable
 from polebook.book.verdict_words import (
     capital,
     decibels,
     figure,
+    fits,
     listed,
     loss,
     number,
@@ -27,18 +27,22 @@ if TYPE_CHECKING:
     from polebook.book.targets import Target
 
 EDGES = ("upper", "lower")
-LINES, WIDTH = 3, 78  # that a verdict may take
+AMPLE = 5.0  # margin from which its size says no more
 
 
 def verdict(of: Ledger) -> str:
-    """A few plain sentences, every number in them a figure of the ledger."""
+    """A few plain sentences, every number in them a figure of the ledger.
+
+    Where they would take too many lines, the remedy is left away first, the way in which it comes about next.
+    """
     told, mend, tail = _told(of)
     out = [stage.name for stage in of.chain.stages if stage.left_out]
     verb = "is" if len(out) == 1 else "are"
     if out:
         tail = f"{tail} {sentences(f'{listed(out)} {verb} left out')}".lstrip()
-    whole = " ".join(filter(None, (told, mend, tail)))
-    return whole if len(wrap(whole, WIDTH)) <= LINES else " ".join(filter(None, (told, tail)))
+    ways = (told, mend, tail), (told, tail), (_told(of, short=True)[0], tail)
+    texts = [" ".join(filter(None, way)) for way in ways]
+    return next((text for text in texts if fits(text)), texts[-1])
 
 
 def cause(of: Ledger, target: Target) -> str:
@@ -53,7 +57,7 @@ def cause(of: Ledger, target: Target) -> str:
     return verdict_peak.missed(of)[0].rstrip(".")
 
 
-def _told(of: Ledger) -> tuple[str, str, str]:
+def _told(of: Ledger, short: bool = False) -> tuple[str, str, str]:
     """What limits the chain, what would mend it, and what else is missed."""
     if of.solution.winding.right is None:
         return sentences("whether the chain is stable could not be told, so no edge is given",
@@ -64,10 +68,10 @@ def _told(of: Ledger) -> tuple[str, str, str]:
         return _no_midband(of), "", ""
     missed = [target for target in of.targets if target.met is False]
     if not missed:
-        return *_met(of), ""
+        return *_met(of, short), ""
     worst = min(missed, key=lambda target: target.margin or 0.0)
     others = [_called(target) for target in missed if target is not worst]
-    why, mend = _why(of, worst)
+    why, mend = _why(of, worst, short)
     told = f"{capital(_headline(of, worst))}{',' if worst.name == 'gain' else ':'} {why}"
     return told, mend, sentences(f"{listed(others)} missed too") if others else ""
 
@@ -102,33 +106,33 @@ def _called(target: Target) -> str:
     return f"{target.name} edge" if target.name in EDGES else target.name
 
 
-def _why(of: Ledger, target: Target) -> tuple[str, str]:
+def _why(of: Ledger, target: Target, short: bool) -> tuple[str, str]:
     """(what follows the headline, what would mend it) of a missed target."""
     if target.name == "gain":
         return verdict_gain.missed(of, target)
     if target.name == "peaking":
         return verdict_peak.missed(of)
     found = limit(of, target.name)
-    return (found.told(), sentences(found.mend)) if found else ("no part of it owns the edge.", "")
+    return (found.told(short), sentences(found.mend(of))) if found else ("no part of it owns the edge.", "")
 
 
-def _met(of: Ledger) -> tuple[str, str]:
+def _met(of: Ledger, short: bool) -> tuple[str, str]:
     """(what has the least to spare and what limits it, what would mend that); what limits the band without targets."""
     unjudged = [target.name for target in of.targets if target.met is None]
     met = len(of.targets) - len(unjudged)
     if not met:
         lead = f"not judged yet: {listed(unjudged)}" if unjudged else "no targets are set"
-        return f"{sentences(lead)} {_band(of)}", ""
+        return f"{sentences(lead)} {_band(of, short)}", ""
     lead = {1: "the target is met", 2: "both targets are met"}.get(met, f"all {number(met)} targets are met")
     if unjudged:
         lead += f" ({listed(unjudged)} not judged yet)"
     close = [target for target in of.targets if target.met and target.margin is not None and _tells(target)]
     if not close:
-        return f"{sentences(lead)} {_band(of)}", ""
+        return f"{sentences(lead)} {_band(of, short)}", ""
     least = min(close, key=lambda target: target.margin or 0.0)
     headline = f"{_headline(of, least)}{_spare(of, least)}"
     told = sentences(f"{lead}: {headline}") if met == 1 else sentences(lead, f"least to spare: {headline}")
-    why, mend = _near(of, least)
+    why, mend = _near(of, least, short)
     return f"{told} {why}".rstrip(), mend
 
 
@@ -141,31 +145,34 @@ def _spare(of: Ledger, target: Target) -> str:
     if target.name == "gain":
         within = of.chain.get("target.gain_tolerance") or 1.0
         return f", ±{stated_decibels(within)}"
-    return f" ({per_cent(target.margin or 0.0)}{' to spare' if len(of.targets) == 1 else ''})"
+    margin = target.margin or 0.0
+    return "" if margin > AMPLE else f" ({per_cent(margin)}{' to spare' if len(of.targets) == 1 else ''})"
 
 
-def _near(of: Ledger, target: Target) -> tuple[str, str]:
+def _near(of: Ledger, target: Target, short: bool) -> tuple[str, str]:
     """(what limits a target that is met, what would give it more room)."""
     if target.name in EDGES:
         found = limit(of, target.name)
-        return (capital(found.told()), sentences(found.mend)) if found else ("", "")
+        return (capital(found.told(short)), sentences(found.mend(of))) if found else ("", "")
     if target.name == "peaking":
         return verdict_peak.missed(of)
     return "", sentences(gain_lever(of, verdict_gain.difference(target) < 0.0))
 
 
-def _band(of: Ledger) -> str:
+def _band(of: Ledger, short: bool) -> str:
     """What limits the band, where no target says which end matters."""
     upper, lower = of.upper_hz, of.lower_hz
-    ends = {end: limit(of, end) for end in EDGES}
+    high, low = (_end(of, end, short) for end in EDGES)
     if upper is None and lower is None:
         return f"Nothing in the file limits its band; the gain is {_gain(of)}."
     if upper is None:
-        return f"The band has no upper edge. {_end('Lower', lower, ends['lower'])}"
+        return f"The band has no upper edge. {low}"
     if lower is None:
-        return f"The band reaches down to d.c. {_end('Upper', upper, ends['upper'])}"
-    return f"{_end('Upper', upper, ends['upper'])} {_end('Lower', lower, ends['lower'])}"
+        return f"The band reaches down to d.c. {high}"
+    return f"{high} {low}"
 
 
-def _end(name: str, hz: float | None, found: Limit | None) -> str:
-    return f"{name} edge {figure(hz, 'Hz')}: {found.brief()}." if found else f"{name} edge {figure(hz, 'Hz')}."
+def _end(of: Ledger, end: str, short: bool) -> str:
+    found = limit(of, end)
+    edge = f"{end.capitalize()} edge {figure(of.upper_hz if end == 'upper' else of.lower_hz, 'Hz')}"
+    return f"{edge}: {found.brief(short)}." if found else f"{edge}."

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from polebook.book.sites import interstage_names
 from polebook.book.verdict_edge import name_of, ranked
-from polebook.book.verdict_how import the
+from polebook.book.verdict_how import the, topology_of
 from polebook.book.verdict_lever import gain_lever, lever
 from polebook.book.verdict_words import decibels, figure, loss, per_cent, sentences, stated, stated_decibels
 
@@ -16,6 +16,7 @@ if TYPE_CHECKING:
     from polebook.book.targets import Target
 
 FELT_DB = 0.05  # less loading is none
+STIFF = 10.0  # a driver so many times above what it drives feeds it a current
 HEAVY = 0.3  # share of what is missing from which a joint is to blame
 
 
@@ -38,7 +39,7 @@ def missed(of: Ledger, target: Target) -> tuple[str, str]:
     """(what follows the headline and a comma, what mends it), as sentences."""
     off, why = difference(target), cause(of, target)
     found = _at_reference(of, -off)
-    mend = found[1] if found else gain_lever(of, off < 0.0)
+    mend = lever(of, *found[1:]) if found else gain_lever(of, off < 0.0)
     return f"{loss(abs(off))} {'over' if off > 0 else 'short'}{f': {why}' if why else ''}.", sentences(mend)
 
 
@@ -59,13 +60,15 @@ def cause(of: Ledger, target: Target) -> str:
 
 
 def _tallest(of: Ledger) -> str:
+    if any(fed_by_current(of, k) for k in range(len(of.lines) - 1)):
+        return ""  # voltage gains to and from such a node are small and large together, and tell nothing apart
     stages = [line for line in of.lines[1:-1] if not line.left_out]
     most = max(stages, key=lambda line: abs(line.gain), default=None)
     return f"{most.name} gives the most, {decibels(most.gain)}" if most and abs(most.gain) > 1.0 else ""
 
 
-def _at_reference(of: Ledger, short: float) -> tuple[str, str] | None:
-    """(the edge that has taken most of what is missing by the reference frequency, what would move it)."""
+def _at_reference(of: Ledger, short: float) -> tuple[str, str, int, str] | None:
+    """(clause on the edge that has taken most of what is missing by the reference frequency, end, owner, its name)."""
     hz = of.reference_hz
     if "target.reference" not in of.chain.given or hz is None or not of.gain_at_reference:
         return None
@@ -80,14 +83,27 @@ def _at_reference(of: Ledger, short: float) -> tuple[str, str] | None:
     text = f"the {end} edge at {figure(edge, 'Hz')} takes {loss(taken)} of it"
     first, share = owners[0]
     name = name_of(of, first)
-    return f"{text}; of that edge {name} owns {per_cent(share)}", lever(of, end, first, name)
+    return f"{text}; of that edge {name} owns {per_cent(share)}", end, first, name
+
+
+def fed_by_current(of: Ledger, k: int) -> bool:
+    """Whether line k drives the next one by its current: a current source, a held node, an emitter far below it."""
+    line, after = of.lines[k], of.lines[k + 1]
+    if k == 0 and of.chain.source_kind == "current":
+        return True
+    low = after.name in of.held or topology_of(of, after.name) == "common_control"
+    return low and bool(line.output_ohm and after.input_ohm and line.output_ohm > STIFF * after.input_ohm)
 
 
 def worst_joint(of: Ledger) -> tuple[float, str]:
-    """(dB, clause) of the node where the next line loads the one that drives it most; 0 dB where none does."""
+    """(dB, clause) of the node where the next line loads the one that drives it most; 0 dB where none does.
+
+    Where the current is what is passed on, the voltage that drops is no loss.
+    """
     lines = of.lines
     found = [(-20.0 * log10(abs(line.loading)), k) for k, line in enumerate(lines[:-1])
-             if line.loading and line.output_ohm and abs(line.loading) < 1.0 and not line.left_out]
+             if line.loading and line.output_ohm and abs(line.loading) < 1.0 and not line.left_out
+             and not fed_by_current(of, k)]
     if not found:
         return 0.0, ""
     db, k = max(found)

@@ -21,8 +21,10 @@ if TYPE_CHECKING:
     from polebook.book.ledger import Ledger
 
 MOSTLY = 1.5  # a driver whose resistance is below this many times the node's makes most of it
+AHEAD = 3.0  # a resistance behind the node that raises the whole so many times over is told alone
 SAME = 0.02  # share by which two may differ and be told once
 ALIKE = 0.1  # share by which two resistances may differ and be called the same
+BEYOND = 2.5  # an edge that lies so many times beyond a corner is made by more than it: by a coil, by another part
 FAR = 10.0  # a corner that lies so many times off the edge does not make it
 OPAMP = frozenset(("noninverting", "inverting", "transimpedance"))
 
@@ -42,9 +44,9 @@ def how(of: Ledger, index: int, end: str) -> str:
     if end == "lower":
         return f"{value} {_lower(of, part, ohm)}"
     if part.type == "L":
-        return f"{value} {_coil(of, part, ohm)}"
+        return f"{value} lies in series with {figure(ohm, 'Ω')}"
     bridge = next((b for b in of.bridges.get(part.stage, ()) if b.part == part.name and b.type == "C"), None)
-    if bridge is not None and KINDS[kind_of(of, part.stage)].topology in ("inverting", "cascode", "block"):
+    if bridge is not None and topology_of(of, part.stage) in ("inverting", "cascode", "block"):
         return f"{value} {_miller(of, bridge, ohm)}"
     return f"{value} {_grounded(of, index, ohm)}"
 
@@ -65,6 +67,12 @@ def kind_of(of: Ledger, stage: str) -> str:
     return next((one.kind for one in of.chain.stages if one.name == stage), "")
 
 
+def topology_of(of: Ledger, stage: str) -> str:
+    """Topology of a stage's kind; "" for source and load."""
+    kind = kind_of(of, stage)
+    return KINDS[kind].topology if kind else ""
+
+
 def seen_ohm(of: Ledger, index: int) -> float | None:
     """Resistance that a C or L sees at midband, from its time constant."""
     tau = of.solution.constants.by_part.get(index)
@@ -82,7 +90,9 @@ def _makes(of: Ledger, index: int, end: str) -> bool:
         return False
     corner = 1.0 / (2 * pi * tau)
     weight = max(shares.get(index, 0.0), 0.1)
-    return corner * weight < FAR * edge if end == "upper" else corner > weight * edge / FAR
+    if end == "upper":
+        return edge < BEYOND * corner and corner * weight < FAR * edge
+    return corner < BEYOND * edge and corner > weight * edge / FAR
 
 
 def branches_of(of: Ledger, index: int) -> list[Branch]:
@@ -107,7 +117,10 @@ def _miller(of: Ledger, bridge: Bridge, ohm: float) -> str:
         text = f"looks like {figure(bridge.at_input, 'F')} at {the(site.name)} (K {plain(k)})"
         if abs(at_input - site.ohm) <= ALIKE * at_input:
             return f"{text}, on {figure(site.ohm, 'Ω')}"
-        return f"{text}, behind {_series(of, bridge)}"
+        between = _series(of, bridge)
+        if at_input > AHEAD * site.ohm:
+            return f"{text}, behind {between}"
+        return f"{text}, on {figure(site.ohm, 'Ω')} and {between}"
     if float(inverse.point(bridge.j)) * (1.0 - 1.0 / k) >= 0.5 * ohm and other is not None and other.ohm:
         return f"counts as {figure(bridge.at_output, 'F')} at {the(other.name)}, on {figure(other.ohm, 'Ω')}"
     return sees
@@ -120,7 +133,8 @@ def _series(of: Ledger, bridge: Bridge) -> str:
     found = [(float(values[k]), layout.parts[k].name) for b in stage.branches if b.series for group in b.groups
              for k in group if layout.parts[k].name in ("stopper", "rx", "r_comp")]
     value, name = max(found, default=(0.0, ""))
-    return f"{name} {stated(value, 'Ω')}" if name else "the resistance there"
+    called = {"rx": "the device's rx", "stopper": "the stopper"}.get(name, name)
+    return f"{called}, {stated(value, 'Ω')}" if name else "the resistance there"
 
 
 def _grounded(of: Ledger, index: int, ohm: float) -> str:
@@ -163,15 +177,6 @@ def _where(of: Ledger, ends: list[tuple[int, int]], ohm: float) -> str:
 def the(name: str) -> str:
     """A line in a sentence: "Q1", "the source"."""
     return f"the {name}" if name in ("source", "load") else name
-
-
-def _coil(of: Ledger, part: Part, ohm: float) -> str:
-    if part.name == "l_peak":
-        segment = of.solution.circuit.layout.segments[part.segment]
-        site = site_of(of, segment.after)
-        if site is not None and site.farad:
-            return f"rings with the {figure(site.farad, 'F')} at {the(site.name)}"
-    return f"lies in series with {figure(ohm, 'Ω')}"
 
 
 def _lower(of: Ledger, part: Part, ohm: float) -> str:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from math import isfinite
 from typing import TYPE_CHECKING
 
 from polebook.book.verdict_words import slope
@@ -13,7 +14,7 @@ if TYPE_CHECKING:
     from polebook.book.ledger import Ledger
 
 OWN = 0.5  # share of the greatest leverage from which the owner itself is named
-LEAST = 0.005  # leverage below which there is none to speak of
+LEAST = 0.05  # leverage below which there is none to speak of
 FELT = 0.05  # leverage on the gain from which a remedy's price is told
 BIAS = frozenset(("bias_top", "bias_bottom", "bias_single"))
 
@@ -48,7 +49,7 @@ def fitted(of: Ledger, stage: str, part: str) -> bool:
         return part == "couple"
     if found.kind == "block":
         return part in ("couple", "c_load")
-    return part not in ("stray", "allot", "vout")
+    return part != "stray"
 
 
 def chosen(of: Ledger, part: Part) -> bool:
@@ -60,10 +61,12 @@ def chosen(of: Ledger, part: Part) -> bool:
 def strongest(of: Ledger, figure: str) -> Lever | None:
     """What moves "gain", "lower_edge" or "upper_edge" most; bias resistors only where nothing else does."""
     found: list[tuple[bool, float, Lever]] = []
-    rows = [*of.leverage.parts.items(), *((key, row) for key, (_, row) in of.leverage.currents.items())]
+    parts = {(part.stage, part.name) for part in of.solution.circuit.layout.parts}
+    rows = [(key, row) for key, row in of.leverage.parts.items() if key in parts]
+    rows += [(key, row) for key, (_, row) in of.leverage.currents.items()]
     for (stage, name), row in rows:
         value, gain = row[figure], row["gain"]
-        if value and fitted(of, stage, name):
+        if value and isfinite(value) and fitted(of, stage, name):
             lever = Lever(f"{stage}.{name}", value, gain or 0.0)
             found.append((slot_of(name) not in BIAS, abs(value), lever))
     best = max(found, key=lambda each: each[:2], default=None)
@@ -78,6 +81,7 @@ def lever(of: Ledger, end: str, owner: int, called: str) -> str:
     figure, part = f"{end}_edge", of.solution.circuit.layout.parts[owner]
     row = of.leverage.parts.get((part.stage, part.name), of.leverage.elements[owner])
     own, best = row[figure] or 0.0, strongest(of, figure)
+    own = own if isfinite(own) else 0.0
     raised, verb = end == "upper", "lifts" if end == "upper" else "lowers"
     if own and chosen(of, part) and (best is None or abs(own) >= OWN * abs(best.value)):
         it = Lever("of it" if called == "it" else called, -own if part.type == "tau" else own, row["gain"] or 0.0)
@@ -90,6 +94,6 @@ def lever(of: Ledger, end: str, owner: int, called: str) -> str:
 def gain_lever(of: Ledger, raised: bool) -> str:
     """What moves the gain up (`raised`) or down the most."""
     best = strongest(of, "gain")
-    what = "the midband gain" if of.chain.get("target.reference") else "it"
+    what = "the midband gain" if of.chain.get("target.reference") else "the gain"
     move = ("adds", "to") if raised else ("takes", "from")
     return f"most leverage: {best.step(raised)} {move[0]} {slope(best.value)} {move[1]} {what}" if best else ""

@@ -13,19 +13,20 @@ import numpy as np
 
 from polebook.book.account import account
 from polebook.book.shares import derivatives
-from polebook.book.verdict_how import OPAMP, branches_of, kind_of
+from polebook.book.verdict_how import OPAMP, branches_of, kind_of, topology_of
 from polebook.book.verdict_lever import chosen
 from polebook.book.verdict_words import UNITS, figure, loss, sentences, stated
+from polebook.circuit.elements import Part
 from polebook.solve.edges import DECIBEL
 from polebook.solve.root import bracketed_maximum
 from polebook.solve.sweep import relative_at
 from polebook.stages.base import slot_of
-from polebook.stages.registry import KINDS
 from polebook.stages.terminals import ACROSS_LOWER
 
 if TYPE_CHECKING:
     from polebook.book.ledger import Ledger
 
+FELT = 0.15  # share of the greatest pull from which another part counts
 SLIGHT = 0.005  # dB; less is no peak
 
 
@@ -77,24 +78,39 @@ def cause(of: Ledger, found: dict[int, float]) -> str:
     """What the parts with the greatest pull, or the greatest weight in a pole, do to each other."""
     parts = of.solution.circuit.layout.parts
     order = sorted(found, key=lambda k: -abs(found[k]))
-    for index in order[:3]:
+    for index in (k for k in order if abs(found[k]) > FELT * abs(found[order[0]])):
         part = parts[index]
-        if part.name in ACROSS_LOWER and found[index] > 0 and _topology(of, part.stage) == "follower":
+        if part.name in ACROSS_LOWER and found[index] > 0 and topology_of(of, part.stage) == "follower":
             load = next((k for k in order if found[k] > 0 and k != index and parts[k].type == "C"), None)
             if load is not None:
                 return f"{part.stage} is a follower and turns {_named(of, load)} into negative resistance at its input"
     if len(order) < 2:
         return ""
-    first, second = order[:2]
+    first = order[0]
+    second = next((k for k in order[1:] if _other(parts[first], parts[k], found[k] / found[first])), order[1])
     if parts[first].name == "c_peak":
         return f"{_named(of, first)} lifts it by bypassing {_below(of, first)}"
     loop = next((parts[k].stage for k in (first, second) if kind_of(of, parts[k].stage) in OPAMP), "")
     if loop:
-        text = f"{loop}'s loop rings between {_named(of, first)} and {_named(of, second)}"
-        bare = at_input(of, first, loop) or at_input(of, second, loop)
-        bare = bare and bool(of.chain.get(f"{loop}.rf")) and not of.chain.get(f"{loop}.cf")
-        return f"{text}, with no cf across rf" if bare else text
+        return _rings(of, loop, [k for k in order if parts[k].name != "cf"][:2])
+    if {parts[first].type, parts[second].type} != {"C", "L"}:
+        return f"{_named(of, first)} has the most pull on it"
     return f"{_named(of, first)} rings with {_named(of, second)}"
+
+
+def _other(first: Part, second: Part, pull: float) -> bool:
+    """A coil for a capacitor, or the converse, that is felt."""
+    return {first.type, second.type} == {"C", "L"} and abs(pull) > FELT
+
+
+def _rings(of: Ledger, loop: str, two: list[int]) -> str:
+    """What an op-amp's loop rings between; a capacitor across its feedback resistor is its brake."""
+    text = f"{loop}'s loop rings between {' and '.join(_named(of, k) for k in two)}"
+    if not any(at_input(of, k, loop) for k in two) or not of.chain.get(f"{loop}.rf"):
+        return text
+    brake = of.chain.get(f"{loop}.cf")
+    some = f"only {stated(brake, 'F')} of" if brake else "no"
+    return f"{text}, with {some} cf across rf"
 
 
 def at_input(of: Ledger, index: int, stage: str) -> bool:
@@ -110,11 +126,6 @@ def _below(of: Ledger, index: int) -> str:
     parts = of.solution.circuit.layout.parts
     return next((_named(of, k) for k, part in enumerate(parts)
                  if part.stage == parts[index].stage and slot_of(part.name) == "r_low"), "")
-
-
-def _topology(of: Ledger, stage: str) -> str:
-    kind = kind_of(of, stage)
-    return KINDS[kind].topology if kind else ""
 
 
 def _calm(of: Ledger, found: dict[int, float]) -> str:

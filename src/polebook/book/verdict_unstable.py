@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 from polebook.book.verdict_edge import BESIDE, name_of
 from polebook.book.verdict_how import loop_of
 from polebook.book.verdict_peak import cause
-from polebook.book.verdict_words import figure, listed, number, per_cent
+from polebook.book.verdict_words import figure, fits, listed, number, per_cent
 from polebook.solve.modes import modes
 from polebook.solve.poles import poles
 
@@ -36,4 +36,6 @@ def unstable(of: Ledger) -> str:
     owns = listed([f"{name_of(of, k)}{' owns' if k == first else ''} {per_cent(weights[k])}" for k in named])
     loops = {loop_of(of, k) for k in named}
     why = f"the loop of {loops.pop()} turns too far" if len(loops) == 1 and loops != {""} else cause(of, weights)
-    return f"Unstable: {grows}{more}. {owns}{f': {why}' if why else ''}."
+    texts = [f"Unstable: {grows}{count}. {owns}{f': {reason}' if reason else ''}."
+             for count, reason in ((more, why), ("", why), ("", ""))]
+    return next((text for text in texts if fits(text)), texts[-1])

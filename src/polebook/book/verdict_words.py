@@ -5,11 +5,13 @@ from __future__ import annotations
 import re
 from collections.abc import Sequence
 from math import log10
+from textwrap import wrap
 
 from polebook.quantity import engineering
 
-_NODE = re.compile(r"n\d+ ")
+_NAME = re.compile(r"n\d+ |(source|load)\.")
 NUMBERS = ("no", "one", "two", "three", "four", "five", "six", "seven", "eight", "nine", "ten", "eleven", "twelve")
+LINES, WIDTH = 3, 78  # that a verdict may take
 UNITS = {"C": "F", "L": "H", "R": "Ω", "tau": "s", "I": "A", "gm": "S"}
 
 
@@ -71,9 +73,14 @@ def number(count: int) -> str:
     return NUMBERS[count] if count < len(NUMBERS) else str(count)
 
 
+def fits(text: str) -> bool:
+    """Whether a verdict takes no more lines than it may."""
+    return len(wrap(text, WIDTH)) <= LINES
+
+
 def capital(text: str) -> str:
-    """With a capital, but for a node's name (n1) in front."""
-    return text if _NODE.match(text) else text[:1].upper() + text[1:]
+    """With a capital, but for a name in front (n1, load.couple)."""
+    return text if _NAME.match(text) else text[:1].upper() + text[1:]
 
 
 def sentences(*clauses: str) -> str:

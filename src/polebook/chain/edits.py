@@ -7,8 +7,9 @@ from collections import Counter
 from collections.abc import Mapping
 from typing import Any
 
+from polebook.chain.desk import TextPath
 from polebook.chain.paths import Located, PathRefused, locate
-from polebook.chain.read import Reading, reading_of
+from polebook.chain.read import Reading, known_reading
 from polebook.param import Param
 from polebook.problem import Problem, ProblemsFound
 from polebook.quantity import DIMENSIONS
@@ -24,7 +25,7 @@ def set_value(text: str, file: str, path: str, value: str) -> tuple[Edit, list[P
     Raises ProblemsFound where the path leads nowhere, the text is not TOML, or the edit would add a fault to a
     file without taking others away.
     """
-    before = reading_of(text, file)
+    before = known_reading(text, file)
     found = locate(path, content(before, text))
     edit = splice.set_value(text, found.path, written(found, value), file)
     return edit, judged(before, edit.apply(text), file)
@@ -32,7 +33,7 @@ def set_value(text: str, file: str, path: str, value: str) -> tuple[Edit, list[P
 
 def unset(text: str, file: str, path: str) -> tuple[Edit, list[Problem]]:
     """The edit that takes the key at `path` out, and the faults that the file then still has; raises as `set_value`."""
-    before = reading_of(text, file)
+    before = known_reading(text, file)
     found = locate(path, content(before, text))
     if not _stands(content(before, text), found.path):
         raise PathRefused(f"{file} gives no {path}", "only what the file gives can be taken out of it",
@@ -58,17 +59,30 @@ def content(reading: Reading, text: str) -> Mapping[str, Any]:
     return reading.data
 
 
-def judged(before: Reading, after: str, file: str) -> list[Problem]:
-    """The faults of the changed text. Raises ProblemsFound with those that the edit adds, where it takes none away."""
-    reading = reading_of(after, file)
-    old = Counter((problem.what, path) for problem, path in before.faults)
-    new = Counter((problem.what, path) for problem, path in reading.faults)
+def judged(before: Reading, after: str, file: str, moves: Mapping[int, int] | None = None) -> list[Problem]:
+    """The faults of the changed text. Raises ProblemsFound with those that the edit adds, where it takes none away.
+
+    moves  of an edit that puts stages elsewhere or names them anew: number that a stage had -> number that it has. A
+           fault is then the same where it stands at the same place, else where it also says the same.
+    """
+    reading = known_reading(after, file)
+    old = Counter(_known(problem, path, moves) for problem, path in before.faults)
+    new = Counter(_known(problem, path, None if moves is None else {}) for problem, path in reading.faults)
     added = new - old
     if added and new.total() >= old.total():
-        raise ProblemsFound(
-            dict.fromkeys(problem for problem, path in reading.faults if (problem.what, path) in added), after
-        )
+        raise ProblemsFound(dict.fromkeys(
+            problem for problem, path in reading.faults if _known(problem, path, None if moves is None else {}) in added
+        ), after)
     return reading.problems
+
+
+def _known(problem: Problem, path: TextPath, moves: Mapping[int, int] | None) -> tuple[object, ...]:
+    """What a fault is known by in two readings."""
+    if moves is None:
+        return problem.what, path
+    if len(path) > 1 and path[0] == "stage" and isinstance(path[1], int):
+        return "", ("stage", moves.get(path[1], path[1]), *path[2:])
+    return "", path
 
 
 def written(found: Located, value: str) -> str:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
+from functools import lru_cache
 from types import MappingProxyType
 from typing import Any
 
@@ -63,6 +64,12 @@ def reading_of(text: str, file: str) -> Reading:
     if desk.found:
         return Reading(None, tuple(desk.found), desk.problems(), data)
     return Reading(replace(chain, digest=digest.of(chain)), (), [], data)
+
+
+@lru_cache(maxsize=4)
+def known_reading(text: str, file: str) -> Reading:
+    """`reading_of`, kept for the texts that were read last: an edit and what follows it read each one once."""
+    return reading_of(text, file)
 
 
 def _and_more(file: str) -> Problem:

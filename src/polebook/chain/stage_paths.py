@@ -29,7 +29,7 @@ def in_stage(name: str, rest: list[str], data: Data) -> Located:
     at = found[0]
     stage, path, key = tables[at], ("stage", at), rest[0]
     kind = KINDS.get(stage["kind"]) if isinstance(stage.get("kind"), str) else None
-    family = _family(stage, data) if kind else ""
+    family = family_of(stage, data) if kind else ""
     if key == "arms" and len(rest) > 1:
         return _in_arm(name, path, rest[1:], stage)
     if key == "tolerance" and len(rest) > 1:
@@ -50,14 +50,15 @@ def _any_stage() -> list[Param]:
     return list({param.key: param for param in rows}.values())
 
 
-def _family(stage: Data, data: Data) -> str:
+def family_of(stage: Data, data: Data) -> str:
+    """The family of the stage's card, "" where that can't be told."""
     cards = data.get("device")
     card = cards.get(stage.get("device")) if isinstance(cards, dict) and isinstance(stage.get("device"), str) else None
     family = card.get("family", "") if isinstance(card, dict) else ""
     return family if isinstance(family, str) else ""
 
 
-def _arms(stage: Data) -> tuple[Arm, ...]:
+def arms_of(stage: Data) -> tuple[Arm, ...]:
     """The arms as far as their parts' names go."""
     raw = stage.get("arms")
     tables = raw if isinstance(raw, list) else []
@@ -87,7 +88,7 @@ def _in_tolerance(name: str, path: TextPath, key: str, stage: Data, kind: Kind |
     held = stage.get("tolerance")
     if kind is None or (isinstance(held, dict) and key in held):
         return Located(inner, f"{name}.tolerance.{key}", Param(key, "share", "", sign="nonnegative"))
-    known = stage_lists.tolerance_keys(kind, family, _arms(stage))
+    known = stage_lists.tolerance_keys(kind, family, arms_of(stage))
     if key not in known:
         raise no_key(key, known, f"tolerance of stage {name}")
     return Located(inner, f"{name}.tolerance.{key}", Param(key, "share", "", sign="nonnegative"))

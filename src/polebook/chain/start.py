@@ -112,7 +112,7 @@ def _names(stages: Sequence[Wanted]) -> list[str]:
 
 
 def _head(stages: Sequence[Wanted], rail: float) -> str:
-    what = ", ".join(one.kind for one in stages[:6]) + (" ..." if len(stages) > 6 else "")
+    what = ", ".join(one.kind for one in stages[:4]) + (" ..." if len(stages) > 4 else "")
     return (
         f"# A chain to begin with, biased for {rail:g} V by rules of thumb. The cards at the end carry\n"
         "# typical figures: put in those of your own devices. `polebook kinds` lists every key.\n"

@@ -20,7 +20,11 @@ FAMILY: Mapping[str, str] = {
 LETTER = {"bjt": "Q", "jfet": "Q", "mosfet": "Q", "triode": "V", "opamp": "U"}
 """Family -> the letter that names of its stages begin with; B for a block, L for a ladder."""
 
-_INVERTING = frozenset(name for name, kind in KINDS.items() if kind.topology in ("inverting", "common_control"))
+# kinds whose output stands near half the rail, so that a grid can be tied straight to it
+_LIFTING = frozenset(
+    name for name, kind in KINDS.items()
+    if kind.topology in ("inverting", "common_control", "cascode") or name in ("emitter-follower", "source-follower")
+)
 
 
 @dataclass(frozen=True, slots=True)
@@ -88,26 +92,28 @@ def _follower(family: str, site: Site) -> list[Row]:
     point = bias.follower(family, site.rail)
     low = _key("r_low", family)
     seen = bias.divider_ohm(family, point, site.rail)
+    stopper = 100.0 if family != "bjt" else 220.0 if site.rail <= start_cards.HIGH_V else 470.0
     return [
         ("couple", farad(seen), ""),
         *bias.divider(family, point, site.rail),
-        ("stopper", '"100R"', "keeps it quiet into capacitance"),
+        ("stopper", ohm(stopper), "keeps it quiet into capacitance"),
         (low, ohm(point.low / point.amps), _current(point)),
     ]
 
 
 def _cathode_follower(site: Site) -> list[Row]:
-    """Straight on an anode ahead where there is one, for only that lifts its grid; else the grid at ground."""
-    if site.after in ("common-cathode", "common-grid"):
+    """Straight on the output ahead where that stands high, for only so its grid is lifted; else the grid at ground."""
+    if site.after in _LIFTING:
         point = bias.valve(0.48 * site.rail, 0.4)
-        return [("stopper", '"1k"', "no couple: the grid stands at the anode's voltage before it"),
+        return [("stopper", '"1k"', "no couple: the output ahead sets the grid's voltage"),
                 ("rk", ohm(0.52 * site.rail / point.amps), _current(point))]
     point = bias.follower("triode", site.rail)
     rows: list[Row] = [("couple", farad(1e6), ""), ("rg", '"1M"', ""), ("stopper", '"1k"', "")]
     if site.negative < 0:
         return [*rows, ("rk", ohm((point.low - site.negative) / point.amps), _current(point)),
                 ("lower_to", '"negative"', "")]
-    return [*rows, ("rk", ohm(point.low / point.amps), "small swing: after a common-cathode stage, leave couple out")]
+    small = "small swing; straight on a collector, drain or anode it has more"
+    return [*rows, ("rk", ohm(point.low / point.amps), small)]
 
 
 def _common_control(family: str, site: Site) -> list[Row]:
@@ -142,6 +148,9 @@ def _current(point: Point) -> str:
     return f"for {point.amps * 1e3:.2g} mA"
 
 
+_R_OUT: Row = ("r_out", '"100R"', "keeps capacitance off the amplifier")
+
+
 def _noninverting(family: str, site: Site) -> list[Row]:
     return [
         ("couple", farad(100e3), ""),
@@ -149,19 +158,20 @@ def _noninverting(family: str, site: Site) -> list[Row]:
         ("rf", '"9k1"', ""),
         ("rg", '"1k"', "gain 1 + rf/rg"),
         ("c_rg", farad(1e3), "gain one at d.c."),
+        _R_OUT,
     ]
 
 
 def _inverting_opamp(family: str, site: Site) -> list[Row]:
     return [("couple", farad(10e3), ""), ("rg", '"10k"', "the input resistance"), ("rf", '"100k"', "gain -rf/rg"),
-            ("r_out", '"47R"', "keeps capacitance off the amplifier")]
+            _R_OUT]
 
 
 def _transimpedance(family: str, site: Site) -> list[Row]:
     if not site.after:
-        return [("rf", '"100k"', "volts for an ampere"), ("cf", '"4p7"', "keeps the step free of ringing")]
+        return [("rf", '"100k"', "volts for an ampere"), ("cf", '"4p7"', "keeps the step free of ringing"), _R_OUT]
     return [("couple", '"100u"', "sees only the resistance of what drives it"),
-            ("rf", '"10k"', "volts for an ampere"), ("cf", '"10p"', "")]
+            ("rf", '"10k"', "volts for an ampere"), ("cf", '"10p"', ""), _R_OUT]
 
 
 def _block(family: str, site: Site) -> list[Row]:

@@ -22,12 +22,12 @@ def region(family: str, card: Get, sign: int, point: Operating) -> Iterator[tupl
         across = sign * (point.output_v - point.lower_v)  # what the rails leave, also where a voltage is stated
     if family == "bjt":
         least = card("vce_sat")
-        yield from _short(across, 0.2 if least is None else least, "is saturated: vce", "vce_sat")
+        yield from _short(across, 0.2 if least is None else least, "is saturated, vce", "vce_sat")
     elif family == "triode":
         if across is not None and across <= 0.0:
-            yield f"has no anode voltage: vak is {engineering(across, 'V')}", KEPT
+            yield f"has no anode voltage, vak is {engineering(across, 'V')}", KEPT
         if point.control_v is not None and point.lower_v is not None and point.control_v > point.lower_v:
-            yield (f"has a positive grid: vgk is {engineering(point.control_v - point.lower_v, 'V')}",
+            yield (f"has a positive grid, vgk is {engineering(point.control_v - point.lower_v, 'V')}",
                    "grid current, which the law leaves out, loads what drives it")
     else:
         yield from _channel(card, across, point.current)
@@ -36,10 +36,10 @@ def region(family: str, card: Get, sign: int, point: Operating) -> Iterator[tupl
 def _channel(card: Get, across: float | None, current: float | None) -> Iterator[tuple[str, str]]:
     idss, k = card("idss"), fet.strength(card, current)
     if idss is not None and current is not None and current > idss:
-        yield (f"runs above idss: id is {engineering(current, 'A')}, idss {engineering(idss, 'A')}",
+        yield (f"runs above idss, id is {engineering(current, 'A')} and idss {engineering(idss, 'A')}",
                "its gate is forward biased, and the gate current is left out")
     if k is not None and current is not None:
-        yield from _short(across, fet.overdrive(k, current), "is not pinched off: vds", "the overdrive 2·id/gm")
+        yield from _short(across, fet.overdrive(k, current), "is not pinched off, vds", "the overdrive 2·id/gm")
 
 
 def _short(across: float | None, least: float, what: str, limit: str) -> Iterator[tuple[str, str]]:

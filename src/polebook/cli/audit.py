@@ -38,7 +38,8 @@ def _judge(file: str, out: Out, quiet: bool) -> dict[str, Any]:
         chain = read.load(file)
         from polebook.book import build  # deferred: a faulty file is told without numpy, 75 ms sooner
 
-        document = build.document(build.ledger(chain), ("overall", "targets", "verdict"))
+        ledger = build.ledger(chain)  # leverage, which the verdict takes, is more than an audit asks for
+        document = build.document(ledger, ("overall", "targets", *(() if ledger.judged else ("verdict",))))
     except ProblemsFound as found:
         out.found(found)
         problems = [_problem(problem) for problem in found.problems]

@@ -13,12 +13,14 @@ if TYPE_CHECKING:
     from polebook.problem import Problem
     from polebook.text.edit import Edit
 
-_ABOUT = """Take the table [device.NAME] over from another chain file, its comments with it. It goes after
-the last card of FILE; every other line stays.
+_ABOUT = """Take the table [device.NAME] over from another chain file, its comments with
+it. It goes after the last card of FILE; every other line stays.
 
-Refused where FILE has another card of that name. Where it has the same one, nothing is changed.
+Refused where FILE has another card of that name. Where it has the same one,
+nothing is changed.
 
-example:  polebook card new.toml VF --from chains/wire-break-listener.toml"""
+example:
+  polebook card new.toml VF --from chains/wire-break-listener.toml"""
 
 
 def _arguments(parser: argparse.ArgumentParser) -> None:

@@ -16,6 +16,7 @@ from polebook.problem import Problem, ProblemsFound
 COMMANDS = {
     "show": "print the ledger of a chain file, or one page of it",
     "audit": "does each chain reach its targets?",
+    "working": "how a figure came about: formula, numbers put in, source",
     "sweep": "put one value through a range: gain, edges, any figure",
     "start": "write a new chain that computes at once",
     "set": "change one value in a chain file",
@@ -31,7 +32,8 @@ A ledger of gain, poles and bandwidth for discrete amplifier chains.
 
 {commands}
 
-polebook FILE prints the ledger of FILE, as show does.
+polebook FILE opens FILE in the app; where the output is no terminal it prints
+the ledger, as show does. --plain: the app in ASCII.
 polebook COMMAND --help tells what a command takes. A file that is named like a
 command is reached by its path: ./show
 
@@ -94,16 +96,23 @@ def _command(argv: list[str], out: Out) -> tuple[str, list[str]]:
     if first in COMMANDS:
         return first, argv[1:]
     if first == "--":
-        return "show", argv
+        return _file(argv[1:], argv)
     if first.startswith("-"):
         raise Usage(f'polebook: no option "{first}" stands before a command', "polebook --help lists the commands")
     if _names_a_file(first):
-        return "show", argv
+        return _file(argv, argv)
     from difflib import get_close_matches  # deferred: only a misspelt command pays for it
 
     near = get_close_matches(first, COMMANDS, n=1)
     fix = f"did you mean polebook {near[0]}?" if near else "polebook --help lists the commands"
     raise Usage(f'polebook: "{first}" is neither a command nor a file here', fix)
+
+
+def _file(words: list[str], argv: list[str]) -> tuple[str, list[str]]:
+    """The app for a file alone; with options of `show` it is shown."""
+    from polebook.cli.app import asked_for
+
+    return ("app" if asked_for(words) else "show"), argv
 
 
 def _names_a_file(text: str) -> bool:

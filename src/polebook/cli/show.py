@@ -6,6 +6,7 @@ import argparse
 
 from polebook.cli.command import MET, Command, Usage
 from polebook.cli.out import Out
+from polebook.cli.table_file import check, csv_option, deliver
 from polebook.report.pages import LEDGER, PAGES
 
 _ABOUT = """Print the ledger of a chain file: targets, lines, nodes, account and cautions.
@@ -14,6 +15,9 @@ _ABOUT = """Print the ledger of a chain file: targets, lines, nodes, account and
   lines    gain, loading, resistances, and the Miller split of every bridge
   nodes    resistance, capacitance, pole and loss of every node
   parts    every part: value, time constant, owned share of both edges
+  times    time constants ranked, and the edges that their sums estimate
+  poles    poles and zeros, each with the stage that makes it
+  leverage what 1 % more of a part, card figure or stated current moves
   bias     currents and voltages, the d.c. plan
   account  what each node loses of what it was allotted
   all      everything"""
@@ -23,7 +27,9 @@ def _arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("file", metavar="FILE", help="a chain file (TOML)")
     parser.add_argument("--page", choices=[name for name in PAGES if name != LEDGER], help="one bank of figures")
     parser.add_argument("--at", metavar="HZ", help="each line's gain, phase and loss at one frequency, such as 100k")
-    parser.add_argument("--json", action="store_true", help="the whole ledger as JSON, at full precision")
+    output = parser.add_mutually_exclusive_group()
+    output.add_argument("--json", action="store_true", help="the whole ledger as JSON, at full precision")
+    csv_option(output)
 
 
 def frequency(text: str) -> float:
@@ -40,6 +46,7 @@ def frequency(text: str) -> float:
 
 
 def _run(args: argparse.Namespace, out: Out) -> int:
+    check(args.csv, args.file)
     hertz = None if args.at is None else frequency(args.at)
     from polebook.chain import read
 
@@ -56,8 +63,11 @@ def _run(args: argparse.Namespace, out: Out) -> int:
         out.write(dump(document))
     else:
         from polebook.report.pages import page
+        from polebook.report.pages_csv import page_csv
 
-        out.write(page(document, args.page or LEDGER, out.look, args.file))
+        name = args.page or LEDGER
+        deliver(args.csv, lambda: page_csv(document, name), lambda: page(document, name, out.look, args.file),
+                args.file, out)
     return MET
 
 

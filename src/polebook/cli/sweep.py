@@ -15,21 +15,24 @@ if TYPE_CHECKING:
     from polebook.plan.ranges import Swept
     from polebook.plan.sweep import Point
 
-_ABOUT = """Put one value of a chain through a range, and show gain and both edges at each.
-The file is not changed; its own value is marked among the points.
+_ABOUT = """Put one value of a chain through a range: gain and both edges at each point.
+The file is not changed; the value that it has now is marked among the points.
 
-PATH is written as for polebook set: Q1.rc, source.resistance, device.D.beta, L1.arms.2.shunt_c
+PATH is written as for polebook set: Q1.rc, source.resistance, device.D.beta
 RANGE is two values with a colon between, both included: 1k:10k, 0:100p, -15:-5
 
-Steps are of equal ratio. They are of equal size where the range touches or crosses zero, and for
-voltages, temperatures, shares and dB that stay dB. --series walks the values that one can buy.
+Steps are of equal ratio. They are of equal size where the range touches or
+crosses zero, and for voltages, temperatures, shares and dB that stay dB.
+--series walks the values that one can buy.
 
-A point at which the chain has no figures (bias not solved, a node that nothing holds, no edge)
-shows dashes, and the reason below the table. Ctrl-C stops, and shows what is done so far.
+A point at which the chain has no figures (bias not solved, a node that nothing
+holds, no edge) shows dashes, and the reason stands below the table. Ctrl-C
+stops, and shows what is done so far.
 
-example:  polebook sweep chain.toml Q1.rc 1k:10k --series E12 --figure n1.pole --figure overall.peaking"""
+example:
+  polebook sweep chain.toml Q1.rc 1k:10k --series E12 --figure n1.pole"""
 POINTS = 25
-QUICK_S = 0.4  # a sweep that is done by then shows no progress
+QUICK_S, REPAINT_S = 0.4, 0.1  # a sweep that is done by then shows no progress; least time between two paints
 
 
 def _arguments(parser: argparse.ArgumentParser) -> None:
@@ -38,9 +41,10 @@ def _arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("range", metavar="RANGE", help="first and last value, such as 1k:10k")
     steps = parser.add_mutually_exclusive_group()
     steps.add_argument("--points", metavar="N", help=f"how many values (default {POINTS})")
-    steps.add_argument("--series", choices=NAMES, help="the preferred values of this series within the range")
+    steps.add_argument("--series", choices=NAMES, metavar="E12",
+                       help=f"the preferred values within the range: {', '.join(NAMES)}")
     parser.add_argument("--figure", metavar="NAME", action="append", default=[],
-                        help="a further figure, by line, node or part and its key: Q1.input_ohm, n1.pole_hz, "
+                        help="a further figure, named as for polebook working: Q1.input_ohm, n1.pole_hz, "
                         "overall.peaking_db; a unique beginning will do; may be given again")
     output = parser.add_mutually_exclusive_group()
     output.add_argument("--json", action="store_true", help="the answer as JSON, at full precision")
@@ -88,14 +92,14 @@ def _answer(file: str, swept: Swept, asked: list[str], out: Out) -> dict[str, An
     from polebook.plan import sweep as sweeping  # deferred: a faulty file is told without numpy, 75 ms sooner
 
     figures = sweeping.resolved(swept.chain, swept.path, swept.values, asked)
-    names = [figure.name for figure in figures]
-    now = None if swept.now is None else next(sweeping.sweep(swept.chain, swept.path, [swept.now], names))[2]
+    now = None if swept.now is None else next(sweeping.sweep(swept.chain, swept.path, [swept.now], figures))[2]
     done: list[Point] = []
-    stopped, begun = False, monotonic()
+    stopped, next_s = False, monotonic() + QUICK_S
     try:
-        for count, total, point in sweeping.sweep(swept.chain, swept.path, swept.values, names):
+        for count, total, point in sweeping.sweep(swept.chain, swept.path, swept.values, figures):
             done.append(point)
-            if monotonic() - begun > QUICK_S:
+            if (now_s := monotonic()) > next_s:
+                next_s = now_s + REPAINT_S
                 out.progress(f" {swept.path}: {count} of {total} (ctrl-c stops)")
     except KeyboardInterrupt:
         stopped = len(done) < len(swept.values)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import argparse
 import os
 from collections.abc import Callable
 from typing import Protocol
@@ -13,25 +14,31 @@ STANDARD = "-"
 
 
 class _Options(Protocol):
-    def add_argument(self, *names: str, metavar: str, nargs: str, const: str, help: str) -> object: ...
+    def add_argument(
+        self, *names: str, metavar: str, nargs: str, const: str, type: Callable[[str], str], help: str
+    ) -> object: ...
 
 
 def csv_option(options: _Options) -> None:
     """--csv alone is the standard output; with a name, a file of that name."""
     options.add_argument(
-        "--csv", metavar="OUT.csv", nargs="?", const=STANDARD,
+        "--csv", metavar="OUT.csv", nargs="?", const=STANDARD, type=_table_name,
         help="as CSV, units in its heading, at full precision; with a name ending in .csv into that file",
     )
 
 
+def _table_name(name: str) -> str:
+    """`name` where a table may be written there: no chain file is to be written over by a slip."""
+    if name != STANDARD and not name.lower().endswith(".csv"):
+        raise argparse.ArgumentTypeError(f'"{name}" does not end in .csv; write --csv last for the standard output')
+    return name
+
+
 def check(name: str | None, chain: str) -> None:
-    """Raises Usage where --csv names what is not to be a table: `chain` itself, or a name without .csv."""
-    if name in (None, STANDARD):
-        return
-    assert name is not None
-    if not name.lower().endswith(".csv") or os.path.realpath(name) == os.path.realpath(chain):
-        raise Usage(f'--csv: "{name}" is no name for a table', "name a file that ends in .csv, or write --csv last",
-                    "so that no chain file is written over by mistake")
+    """Raises Usage where --csv names the chain itself."""
+    if name is not None and os.path.realpath(name) == os.path.realpath(chain):
+        raise Usage(f'--csv: "{name}" is the chain itself', "choose another name for the table",
+                    "the table would be written over it")
 
 
 def deliver(name: str | None, table: Callable[[], str], text: Callable[[], str], chain: str, out: Out) -> None:

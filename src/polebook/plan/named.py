@@ -1,110 +1,52 @@
-"""Every figure of a ledger's document under the name by which one asks for it: `Q1.input_ohm`, `overall.gain`."""
+"""Figures by the names of `polebook working`: those that are numbers, each with its unit and where it stands."""
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 from typing import Any
 
-from polebook.chain.suggest import listed, nearest
+from polebook.book import build
+from polebook.book.ledger import Ledger
+from polebook.book.workings.index import Entry, entries, find
+from polebook.book.workings.units import unit
 from polebook.problem import Problem, ProblemsFound
-from polebook.refusal import quoted
 
-Row = Mapping[str, Any]
 SHARE = "share"  # the unit of a part of one, shown in per cent
-_OF_TYPE = {"C": "F", "L": "H", "R": "Ω", "gm": "S", "tau": "s", "I": "A"}
-_OF_ENDING = {
-    "hz": "Hz", "db": "dB", "ohm": "Ω", "farad": "F", "s": "s", "a": "A", "v": "V", "w": "W", "percent": "%",
-    "share": SHARE, "margin": SHARE, "upper": SHARE, "lower": SHARE,
-}
-_OF_SOURCE = frozenset({"largest_source", "noise_total_input"})
-_FEW = 12  # names that a message lists
+_SHARES = frozenset({"owns_upper", "owns_lower", "noise_share", "margin"})
+_HOLDS = {"bridges": "lines"}  # rows inside a section -> that section of the document
+SECTIONS = frozenset(build.SECTIONS) - {"verdict", "cautions"}
+"""Keys of the document that hold figures."""
 
 
 @dataclass(frozen=True, slots=True)
 class Figure:
-    """A figure in base SI units, None where it does not apply. `unit` is "" for a plain number, "share" for a share."""
+    """A number of the ledger in base SI units. `unit` is "" for a plain number, "share" for a share of one."""
 
     name: str
-    value: float | None
     unit: str
+    section: str
 
 
-class NoFigure(ProblemsFound):
-    """A name that is no figure's, with the near ones."""
+def named(of: Ledger, words: Collection[str]) -> list[Figure]:
+    """The figures that `words` name, or are the only beginning of; each once. Raises ProblemsFound with near names."""
+    document = build.document(of, SECTIONS)
+    known = entries(document)
+    return list({one.name: one for one in (_figure(known, document, word) for word in words)}.values())
 
 
-def catalog(document: Mapping[str, Any]) -> dict[str, Figure]:
-    """Name -> figure, in the order of the document."""
-    unit = document["overall"]["gain_unit"]
-    return {figure.name: figure for figure in _figures(document, "" if unit == "V/V" else unit)}
+def _figure(known: Mapping[str, Entry], document: Mapping[str, Any], words: str) -> Figure:
+    entry = find(known, document, words)
+    if isinstance(entry.value, bool):
+        raise ProblemsFound([Problem(None, f"{entry.name} is no number", "it is true or false",
+                                     "name a figure that is a number")])
+    shown = SHARE if entry.key in _SHARES else unit(document, entry)
+    return Figure(entry.name, shown, _HOLDS.get(entry.section, entry.section))
 
 
-def _figures(document: Mapping[str, Any], gain_unit: str) -> Iterator[Figure]:
-    volts = "V" if not gain_unit else "A"
-    of_key = {"gain": gain_unit, "gain_at_reference": gain_unit, "noise_density": f"{volts}/√Hz",
-              "noise_total_output": "V", **dict.fromkeys(_OF_SOURCE, volts)}
-    yield from _numbers("overall", document["overall"], of_key)
-    for end, side in (document["account"] or {}).items():
-        yield from _numbers(f"account.{end}", side)
-    for at, line in enumerate(document["lines"]):
-        yield from _numbers(line["name"], line, {"gain": gain_unit if at == 0 else ""})
-        for bridge in line["bridges"] or ():
-            of_part = _OF_TYPE[bridge["type"]]
-            part = bridge["part"].rpartition(".")[2]
-            yield from _numbers(f"{line['name']}.{part}", bridge,
-                                {"value": of_part, "at_input": of_part, "at_output": of_part})
-    for node in document["nodes"] or ():
-        yield from _numbers(node["name"], node)
-    for part in document["parts"] or ():
-        yield from _numbers(f"{part['stage']}.{part['part']}", part, {"value": _OF_TYPE.get(part["type"], "")})
-    for card in document["cards"] or ():
-        yield from _numbers(f"device.{card['device']}.{card['figure']}", card)
-    for entry in document["bias"] or ():
-        yield from _numbers(entry["stage"], entry)
-    for rail in document["rails"] or ():
-        yield from _numbers(rail["rail"], rail)
-    for level in document["levels"] or ():
-        yield from _numbers(level["node"], level)
-    for target in document["targets"] or ():
-        yield Figure(f"target.{target['name']}.margin", target["margin"], SHARE)
-
-
-def _numbers(head: str, row: Row, units: Mapping[str, str] | None = None) -> Iterator[Figure]:
-    """The numbers of a row; those of a table inside it with both keys."""
-    for key, value in row.items():
-        if isinstance(value, Mapping):
-            yield from _numbers(f"{head}.{key}", value)
-        elif value is None or (isinstance(value, int | float) and not isinstance(value, bool)):
-            unit = units[key] if units and key in units else _OF_ENDING.get(key.rpartition("_")[2], "")
-            yield Figure(f"{head}.{key}", value, unit)
-
-
-def find(known: Mapping[str, Figure], words: str) -> Figure:
-    """The figure that `words` names, or the only one whose name they begin. Raises NoFigure with the near names."""
-    asked = words.strip()
-    for name in (asked, f"overall.{asked}"):
-        if name in known:
-            return known[name]
-        begun = [one for one in known if asked and one.startswith(name) and "." not in one[len(name):]]
-        if len(begun) == 1:
-            return known[begun[0]]
-        if begun:
-            raise _refused(f"{quoted(asked)} is not one figure", f"it begins {len(begun)} of them",
-                           f"name one: {_some(begun)}")
-    head = asked.rpartition(".")[0]
-    beside = [name for name in known if name.rpartition(".")[0] == head] if head else []
-    near = nearest(asked, beside or known)
-    why = f"{head} has the figures {_some(name.rpartition('.')[2] for name in beside)}" if beside else (
-        "a figure is named by its line, node or part and its key, as in the JSON of the ledger")
-    example = f"did you mean {near}?" if near else "name one like overall.upper_edge_hz, n1.pole_hz or Q1.input_ohm"
-    raise _refused(f"there is no figure {quoted(asked)}", why, example)
-
-
-def _some(names: Iterable[str]) -> str:
-    some = list(names)
-    return listed(some) if len(some) <= _FEW else f"{', '.join(some[:_FEW])} and {len(some) - _FEW} more"
-
-
-def _refused(what: str, why: str, fix: str) -> NoFigure:
-    return NoFigure([Problem(None, what, why, fix)])
+def values(of: Ledger, figures: Collection[Figure]) -> dict[str, float | None]:
+    """What each of `figures` is in the ledger `of`; None for one that it does not have. Sections not asked for rest."""
+    if not figures:
+        return {}
+    known = entries(build.document(of, {"overall", *(figure.section for figure in figures)}))
+    return {one.name: known[one.name].value if one.name in known else None for one in figures}

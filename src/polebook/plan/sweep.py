@@ -2,16 +2,17 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 
-from polebook.book import build
 from polebook.book.ledger import Ledger, ledger
 from polebook.book.reach import within_reach
 from polebook.chain.model import Chain
 from polebook.circuit.bias_region import KEPT
-from polebook.plan.named import Figure, catalog, find
+from polebook.plan.named import Figure, named
+from polebook.plan.named import values as get
 from polebook.problem import ProblemsFound
 
 UNSOLVED = "the bias of {} is not solved"
@@ -42,54 +43,42 @@ def with_value(chain: Chain, path: str, value: float) -> Chain:
 def resolved(chain: Chain, path: str, values: Sequence[float], asked: Sequence[str]) -> list[Figure]:
     """The figures that `asked` names, from the chain as it is, else from the first of `values` that has a ledger.
 
-    Raises NoFigure for a name that is none. [] where no value gives a ledger.
+    Raises ProblemsFound with the near names for a name that is none. [] where no value gives a ledger.
     """
-    if not asked:
-        return []
-    for one in (chain, *(with_value(chain, path, value) for value in values)):
+    for one in (chain, *(with_value(chain, path, value) for value in values)) if asked else ():
         try:
-            known = catalog(build.document(ledger(one)))
+            of = ledger(one)
         except ProblemsFound:
             continue
-        return list({figure.name: figure for figure in (find(known, words) for words in asked)}.values())
+        return named(of, asked)
     return []
 
 
-def sweep(chain: Chain, path: str, values: Sequence[float], names: Sequence[str] = (),
+def sweep(chain: Chain, path: str, values: Sequence[float], figures: Sequence[Figure] = (),
           stop: Callable[[], bool] = lambda: False) -> Iterator[tuple[int, int, Point]]:
     """(done, total, point) for each of `values` at `path` in turn; ends early once `stop` says so.
 
-    path    a number of the chain, "Q1.rc"; the chain's structure is that of the file
-    names   full names of further figures, as `resolved` gives them
+    path     a number of the chain, "Q1.rc"; the chain's structure is that of the file
+    figures  further ones, as `resolved` gives them
     """
     for at, value in enumerate(values):
         if stop():
             return
-        yield at + 1, len(values), point(with_value(chain, path, value), value, names)
+        yield at + 1, len(values), point(with_value(chain, path, value), value, figures)
 
 
-def point(chain: Chain, value: float, names: Sequence[str] = ()) -> Point:
+def point(chain: Chain, value: float, figures: Sequence[Figure] = ()) -> Point:
     """The figures of `chain`, in which what is swept has `value`."""
+    none: dict[str, float | None] = {figure.name: None for figure in figures}
     try:
         of = ledger(chain)
         unsolved = [name for name, one in of.solution.circuit.points.items() if not one.converged]
         if unsolved:
-            return Point(value, figures=dict.fromkeys(names), why=UNSOLVED.format(", ".join(unsolved)))
+            return Point(value, figures=none, why=UNSOLVED.format(", ".join(unsolved)))
         with within_reach(chain):
-            return _solved(of, value, names)
+            return Point(value, of.solution.gain, of.lower_hz, of.upper_hz, get(of, figures), _why(of))
     except ProblemsFound as found:
-        return Point(value, figures=dict.fromkeys(names), why="; ".join(problem.what for problem in found.problems))
-
-
-def _solved(of: Ledger, value: float, names: Sequence[str]) -> Point:
-    figures: dict[str, float | None] = {}
-    if all(name.startswith("overall.") for name in names):  # spares the sections that nobody asks for
-        overall = build.overall(of)
-        figures = {name: overall[name.removeprefix("overall.")] for name in names}
-    else:
-        known = catalog(build.document(of))
-        figures = {name: known[name].value if name in known else None for name in names}
-    return Point(value, of.solution.gain, of.lower_hz, of.upper_hz, figures, _why(of))
+        return Point(value, figures=none, why="; ".join(problem.what for problem in found.problems))
 
 
 def _why(of: Ledger) -> str:
@@ -101,5 +90,5 @@ def _why(of: Ledger) -> str:
         told.append("stability can't be told")
     elif not of.solution.band.clean:
         told.append("no clean midband")
-    told += [problem.what.partition(":")[0] for problem in of.cautions if problem.why == KEPT]
+    told += [re.split("[:,]", problem.what)[0] for problem in of.cautions if problem.why == KEPT]
     return "; ".join(dict.fromkeys(told))

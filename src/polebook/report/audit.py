@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from polebook.report.document import Document, Entry, entries, finite
 from polebook.report.look import Look
-from polebook.report.sections import target_row, unstable
+from polebook.report.sections import paragraph, target_row, unparted, unstable
 from polebook.report.table import Column, table
 
 
@@ -18,6 +18,9 @@ def audit(file: str, document: Document, look: Look) -> str:
     names = ("target", "want", "got", "margin", "", "")
     columns = [Column(name, right=name in ("want", "got", "margin")) for name in names]
     lines += table(columns, [target_row(entry, document["overall"]["gain_unit"]) for entry in targets], look)
+    for entry in targets:
+        if entry["met"] is False and entry["why"]:
+            lines += paragraph(unparted(f"{entry['name']}: {entry['why']}"), look, hang=3)
     return "\n".join([*lines, _count(targets, look)]) + "\n"
 
 

@@ -8,6 +8,7 @@ from polebook.quantity import engineering
 
 NONE = "–"
 UNIT_OF_TYPE = {"C": "F", "L": "H", "R": "Ω", "gm": "S", "tau": "s", "I": "A"}
+_DECIBELS = frozenset(("dB", "dBΩ"))
 _NO_PREFIX = frozenset(("°C", "%", "1/V"))  # a column in one of these has plain numbers
 _TARGET_UNITS = {"lower": "Hz", "upper": "Hz", "reference": "Hz", "swing": "V", "current": "A", "rise": "s"}
 
@@ -53,7 +54,7 @@ def by_unit(value: float | None, unit: str, digits: int = 3) -> str:
     """A figure with its unit: "" is a plain number, "share" a share of one."""
     if unit == "share":
         return share(value)
-    if unit == "dB":
+    if unit in _DECIBELS:
         return decibel(value, unit)
     return eng(value, unit, digits) if unit else ratio(value)
 
@@ -62,7 +63,7 @@ def bare(value: float | None, unit: str, digits: int = 3) -> str:
     """A figure whose unit stands in the heading of its column ("%" for a share)."""
     if unit == "share":
         return share(value).removesuffix(" %")
-    if unit == "dB":
+    if unit in _DECIBELS:
         return decibel(value)
     return eng(value, "" if unit not in _NO_PREFIX else unit, digits).removesuffix(f" {unit}") if unit else ratio(value)
 
@@ -85,3 +86,20 @@ def target(name: str, value: float | None, gain_unit: str) -> str:
     if name in ("overshoot", "sag", "yield"):
         return share(value)
     return eng(value, _TARGET_UNITS.get(name, ""))
+
+
+def signed(delta: float | None, unit: str) -> str:
+    """A change in few cells, its sign written: "+0.31" (dB), "-11k" (Hz, Ω, F), "+3" (%); "" for one too small to show."""
+    if delta is None or not isfinite(delta):
+        return ""
+    size = abs(delta)
+    if unit == "dB":
+        text = f"{delta:+.{2 if size < 9.995 else 1}f}"
+    elif unit == "%":
+        text = f"{delta:+.0f}"
+    elif unit:
+        text = engineering(delta, "", 2)
+        text = text if delta < 0 else f"+{text}"
+    else:
+        text = f"{delta:+.{3 if size < 0.0995 else 2 if size < 0.995 else 1 if size < 9.95 else 0}f}"
+    return text if any(digit in text for digit in "123456789") else ""

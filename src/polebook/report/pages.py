@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from polebook.report import sections, tables
+from polebook.report import leverage, roots, sections, tables, times
 from polebook.report.document import Document, finite
 from polebook.report.look import Look
 
@@ -18,12 +18,15 @@ PAGES: dict[str, tuple[Section, ...]] = {
         tables.short_lines,
         tables.nodes,
         sections.account,
-        sections.owners,
+        sections.other_owners,
         sections.cautions,
     ),
     "lines": (tables.lines, sections.bridges),
     "nodes": (tables.nodes, sections.bridges, sections.account),
     "parts": (tables.parts, sections.owners),
+    "times": (times.upper, times.lower),
+    "poles": (roots.poles, roots.zeros),
+    "leverage": (leverage.leverage,),
     "bias": (tables.bias, sections.cautions),
     "account": (tables.accounts, sections.account, sections.owners),
     "all": (
@@ -34,8 +37,13 @@ PAGES: dict[str, tuple[Section, ...]] = {
         tables.nodes,
         tables.accounts,
         sections.account,
-        sections.owners,
+        sections.other_owners,
         tables.parts,
+        times.upper,
+        times.lower,
+        roots.poles,
+        roots.zeros,
+        leverage.leverage,
         tables.bias,
         sections.cautions,
     ),

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from textwrap import wrap
 
 from polebook.report import figures as show
@@ -10,6 +11,7 @@ from polebook.report.look import Look, cells, fit
 from polebook.report.table import Cell, Column, table
 
 NO_BREAK = "\u00a0"
+_FIGURE = re.compile(r"(?<=\d) (?=(?:[fpnumkMGT]?(?:Hz|F|H|Ω|V|A|s)|dBΩ?|%)(?!\w))|(?<=\(K) (?=-?\d)")
 _VERDICTS = {True: Cell("met", "good"), False: Cell("missed", "bad"), None: Cell("not judged", "warn")}
 
 
@@ -29,14 +31,12 @@ def heading(document: Document, file: str, look: Look) -> list[str]:
 def unstable(document: Document, look: Look) -> list[str]:
     """Instability is told before any figure."""
     unstable = document["overall"]["unstable"]
-    if unstable is None:
-        return paragraph(
-            "Whether the chain is stable could not be told: edges and what rests on them are left out.", look, "bad"
-        )
-    if not unstable:
+    if unstable is False:
         return []
-    text = "The chain is unstable: it would oscillate. Edges, account and targets have no meaning."
-    return paragraph(text, look, "bad")
+    plain = "Unstable: the chain oscillates and has no edges."
+    if unstable is None:
+        plain = "Whether the chain is stable could not be told, so no edge is given."
+    return paragraph(unparted(document["verdict"] or plain), look, "bad")
 
 
 def targets(document: Document, look: Look) -> list[str]:
@@ -58,7 +58,7 @@ def target_row(entry: Entry, gain_unit: str) -> list[Cell | str]:
         show.target(name, entry["got"], gain_unit),
         show.share(entry["margin"]),
         _VERDICTS[entry["met"]],
-        entry["why"] or "",
+        "" if entry["met"] is False else entry["why"] or "",  # why one is missed is for sentences
     ]
 
 
@@ -86,19 +86,26 @@ def account(document: Document, look: Look) -> list[str]:
     return table([Column(name, right=name != "account") for name in names], rows, look)
 
 
-def owners(document: Document, look: Look) -> list[str]:
-    """Who owns most of each edge, in plain words, and by what multiplication."""
+def owners(document: Document, look: Look, told: str = "") -> list[str]:
+    """Who owns most of each edge, in plain words, and by what multiplication; not what has been `told`."""
     lines: list[str] = []
     for end in ("upper", "lower"):
         part = greatest(document, end)
-        if part is not None:
+        if part is not None and f"{part_name(part)} owns" not in told:
             share = _whole(show.about(part[f"owns_{end}"]))
             lines += paragraph(f"{part_name(part)} owns {share} of the {end} edge: {_how(document, part)}.", look)
     return lines
 
 
+def other_owners(document: Document, look: Look) -> list[str]:
+    """Who owns most of each edge, on a page that the verdict leads."""
+    return owners(document, look, document["verdict"] or "")
+
+
 def _how(document: Document, part: Entry) -> str:
     """The part's value, what it counts as where it bridges a stage, and its time constant."""
+    if part["type"] == "tau":  # its value is its time constant
+        return f"a time constant of {_whole(show.eng(part['value'], 's'))}"
     text = value = _whole(show.eng(part["value"], show.UNIT_OF_TYPE[part["type"]]))
     bridge = bridge_of(document, part["stage"], part["part"])
     # where the stage holds its input node, what the part counts as there is huge and tells nothing
@@ -114,16 +121,19 @@ def _how(document: Document, part: Entry) -> str:
 
 
 def verdict(document: Document, look: Look) -> list[str]:
-    """The one sentence on what limits the chain, where the document has it."""
-    return paragraph(document["verdict"], look) if document["verdict"] else []
+    """What limits the chain, in a few sentences; of an unstable one it has been told already."""
+    if document["overall"]["unstable"] is not False or not document["verdict"]:
+        return []
+    return paragraph(unparted(document["verdict"]), look)
 
 
 def cautions(document: Document, look: Look) -> list[str]:
-    """Every caution with its stage."""
+    """Every caution, with the name of what it is about where it does not say so itself."""
     lines: list[str] = []
     for caution in entries(document, "cautions"):
-        lead = f"{caution['stage']}: " if caution["stage"] else ""
-        lines += paragraph(lead + caution["text"], look, hang=3)
+        about, text = caution["stage"], caution["text"]
+        named = not about or about == "supply" or re.search(rf"(?<!\w){re.escape(about)}(?!\w)", text)
+        lines += paragraph(text if named else f"{about}: {text}", look, hang=3)
     return [" " + look.paint("cautions", "warn"), *lines] if lines else []
 
 
@@ -163,6 +173,11 @@ def paragraph(text: str, look: Look, style: str = "", hang: int = 1) -> list[str
     """`text` wrapped to the width, indented by one; lines after the first by `hang`. No-break spaces hold."""
     lines = wrap(look.text(text), look.width - 1, initial_indent=" ", subsequent_indent=" " * hang)
     return [look.paint(line.replace(NO_BREAK, " "), style) for line in lines]
+
+
+def unparted(text: str) -> str:
+    """Sentences whose figures are not parted from their units at the end of a line."""
+    return _FIGURE.sub(NO_BREAK, text)
 
 
 def _whole(text: str) -> str:

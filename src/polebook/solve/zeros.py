@@ -55,8 +55,8 @@ def zeros(net: Network, low: float, high: float) -> list[Zeros]:
     result = []
     with np.errstate(all="ignore"):
         for segment in net.layout.segments:
-            if segment.after == segment.before:
-                continue
+            if not segment.branches and not segment.drives:
+                continue  # a wire
             if segment.kind in ("voltage", "current", "load"):
                 coupled = any(net.layout.parts[index].name == "couple" for branch in segment.branches
                               for group in branch.groups for index in group)
@@ -68,24 +68,37 @@ def zeros(net: Network, low: float, high: float) -> list[Zeros]:
 
 
 def _of(cofactor: Cofactor, low: float, high: float) -> Complex | None:
-    ends = 2j * pi * np.array([low, high / 1.1])
-    growth = np.log(np.abs(cofactor.ratio(ends, 1.1 * ends))) / log(1.1)
-    if not np.isfinite(growth).all() or (np.abs(growth - np.round(growth)) > 0.1).any():
+    below, low = _growth(cofactor, low, 0.01)
+    above, high = _growth(cofactor, high, 100.0)
+    if below is None or above is None:
         return None
-    at_zero, total = (round(x) for x in growth.tolist())
-    none: Complex = np.zeros(at_zero, dtype=complex)
-    if total <= at_zero:
+    none: Complex = np.zeros(below, dtype=complex)
+    if above <= below:
         return none
     start = _eigenvalues(cofactor, 2 * pi * sqrt(low * high))
-    start = start[np.argsort(np.abs(start))][at_zero:total]
-    if start.size < total - at_zero:
+    start = start[np.argsort(np.abs(start))][below:above]
+    if start.size < above - below:
         return None
 
     def ratio(p: Complex, q: Complex, _: Ints) -> Complex:
-        return cofactor.ratio(p, q) * (q / p) ** -at_zero
+        return cofactor.ratio(p, q) * (q / p) ** -below
 
     roots, _ = aberth(ratio, start, np.zeros(start.size, dtype=np.int64), (low / 1e3, high * 1e6))
     return np.concatenate([none, np.where(np.abs(roots.imag) < 1e-10 * np.abs(roots), roots.real + 0j, roots)])
+
+
+def _growth(cofactor: Cofactor, hz: float, outward: float) -> tuple[int | None, float]:
+    """Power of s by which the cofactor goes at an end, and how far out (Hz) it is a whole number and stays one.
+
+    A stage may have a zero far beyond every corner of the chain (a nulling resistor that all but cancels it).
+    """
+    points = (2j * pi * hz * outward ** np.arange(7.0)).astype(np.complex128)
+    slopes = np.log(np.abs(cofactor.ratio(points, 1.1 * points))) / log(1.1)
+    whole = np.abs(slopes - np.round(slopes)) < 1e-3
+    for k in range(points.size - 1):
+        if whole[k] and whole[k + 1] and np.round(slopes[k]) == np.round(slopes[k + 1]):
+            return round(float(slopes[k])), float(hz * outward ** k)
+    return None, hz
 
 
 def _eigenvalues(cofactor: Cofactor, s0: float) -> Complex:
@@ -180,6 +193,8 @@ def _cofactor(net: Network, segment: Segment, s0: float) -> Cofactor:
     rows = [k for k in range(size) if k != equations.places[segment.before]]
     columns = [k for k in range(size) if k != equations.places[segment.after]]
     g, c = g[np.ix_(rows, columns)], c[np.ix_(rows, columns)]
+    if not rows:
+        return Cofactor(np.ones((1, 1)), np.zeros((1, 1)))
     for _ in range(3):
         for axis in (1, 0):
             largest = (np.abs(g) + s0 * np.abs(c)).max(axis=axis, keepdims=True)

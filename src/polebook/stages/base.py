@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 
 from polebook.param import Param
@@ -149,5 +149,16 @@ def device_kind(name: str, topology: str, families: tuple[str, ...], about: str,
     """A kind built on three-terminal cards: `head` and the general parts, named as each family names them."""
     head = head or (device_param(),)
     own = {family: (*head, *slot_params(slots, family, zero)) for family in families}
-    union = {p.key: p for rows in own.values() for p in rows}
+    union: dict[str, Param] = {}
+    for family, rows in own.items():
+        for p in rows:
+            said = union.get(p.key)
+            union[p.key] = p if said is None or said.about == p.about else _of_either(said, families, family)
     return Kind(name, topology, families, tuple(union.values()), about, MappingProxyType(own))
+
+
+def _of_either(param: Param, families: tuple[str, ...], family: str) -> Param:
+    """A row that several groups of families share, with what each of them calls the terminals."""
+    groups = dict.fromkeys(GROUP[one] for one in families[:families.index(family) + 1])
+    words = {terminal: " or ".join(TERMINALS[group][terminal] for group in groups) for terminal in TERMINALS["bjt"]}
+    return replace(param, about=SLOTS[slot_of(param.key)].about.format(**words))

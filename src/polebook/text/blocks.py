@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from bisect import bisect_left
+from bisect import bisect_right
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -139,7 +139,7 @@ def _end(text: str, header: int, ends: Sequence[int], limit: int) -> int:
 
     `ends` are the ends of all values, sorted. Comment lines that follow the last line at once belong to it.
     """
-    number = bisect_left(ends, limit)
+    number = bisect_right(ends, limit)  # the last value may end where the text does
     at = _past_line(text, max(header, ends[number - 1] if number else 0))
     while at < limit and text[at:limit].lstrip(" \t").startswith("#"):
         at = _past_line(text, at)

@@ -69,9 +69,20 @@ def read(path: str | os.PathLike[str]) -> FileText:
         raise ProblemsFound([too_large(name, max(status.st_size, len(data)))])
     text = _decoded(name, data)
     feed = text.find("\n")
-    identity = Identity(status.st_dev, status.st_ino, status.st_size, status.st_mtime_ns)
     newline = "\r\n" if feed > 0 and text[feed - 1] == "\r" else "\n"
-    return FileText(name, text, stat.S_IMODE(status.st_mode), identity, newline, not os.access(name, os.W_OK))
+    mode = stat.S_IMODE(status.st_mode)
+    return FileText(name, text, mode, _identity(status), newline, not os.access(name, os.W_OK))
+
+
+def identity(path: str | os.PathLike[str]) -> Identity | None:
+    """What the file at `path` is now, to be compared with what it was when it was read; None where there is none."""
+    with suppress(OSError, ValueError):  # ValueError: a NUL in the name
+        return _identity(os.stat(path))
+    return None
+
+
+def _identity(status: os.stat_result) -> Identity:
+    return Identity(status.st_dev, status.st_ino, status.st_size, status.st_mtime_ns)
 
 
 def save(path: str | os.PathLike[str], text: str) -> None:
@@ -96,6 +107,35 @@ def save(path: str | os.PathLike[str], text: str) -> None:
         if temporary:
             _remove(temporary)
     _flush_folder(folder)
+
+
+def create(path: str | os.PathLike[str], text: str) -> None:
+    """Writes `text` to a new file at `path`. Raises ProblemsFound; what stands there already is left as it is."""
+    name = os.fspath(path)
+    made = ""
+    try:
+        data = text.encode("utf-8")
+        handle = os.open(name, os.O_WRONLY | os.O_CREAT | os.O_EXCL | _NO_BLOCK, 0o666)
+        made = name
+        try:
+            _write_all(handle, data)
+            os.fsync(handle)
+        finally:
+            os.close(handle)
+        made = ""
+    except FileExistsError:
+        raise ProblemsFound([Problem(Place(name), "there is such a file already",
+                                     "a new chain is never written over one that is there",
+                                     "choose another name, or move that file away")]) from None
+    except FileNotFoundError:
+        raise ProblemsFound([Problem(Place(name), "the file can't be written", "its folder is not there",
+                                     "make the folder first, or choose another")]) from None
+    except (OSError, ValueError) as error:
+        raise _failed(name, error, "written") from None
+    finally:
+        if made:
+            _remove(made)
+    _flush_folder(os.path.dirname(os.path.realpath(name)))
 
 
 def _existing(name: str, target: str) -> os.stat_result | None:
@@ -149,13 +189,17 @@ def _decoded(name: str, data: bytes) -> str:
 def _write(temporary: str, data: bytes, status: os.stat_result | None) -> None:
     handle = os.open(temporary, os.O_WRONLY | os.O_CREAT | os.O_EXCL | _NO_BLOCK, 0o666 if status is None else 0o600)
     try:
-        while data:
-            data = data[os.write(handle, data) :]
+        _write_all(handle, data)
         if status is not None:
             _take_over(handle, status)
         os.fsync(handle)
     finally:
         os.close(handle)
+
+
+def _write_all(handle: int, data: bytes) -> None:
+    while data:
+        data = data[os.write(handle, data) :]
 
 
 def _take_over(handle: int, status: os.stat_result) -> None:

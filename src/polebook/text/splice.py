@@ -16,7 +16,7 @@ from polebook.text.edit import Edit, Splice
 from polebook.text.spans import Entry, Path, Span, Spans, Unscannable, scan
 from polebook.text.toml import read
 
-_Change = Callable[[Any], None]
+Change = Callable[[Any], None]
 
 
 class EditRefused(ProblemsFound):
@@ -33,7 +33,7 @@ def set_value(text: str, path: Path, value: str, file: str = "") -> Edit:
     format's order of tables, or inline where it belongs to a stage. Raises ProblemsFound for a text that is not
     TOML and EditRefused where the edit would not say what is meant.
     """
-    data, spans = _load(text, path, file)
+    data, spans = load(text, path, file)
     meant, _ = read(f"value = {value}", "")
     if meant is None:
         why = "only a number, a text in quotes, a list or an inline table is"
@@ -42,7 +42,7 @@ def set_value(text: str, path: Path, value: str, file: str = "") -> Edit:
         raise EditRefused(f"{value[:40]} is more than one value", "one edit sets one key", "give one value")
     splice = _setting(data, spans, path, value, file)
     edit = Edit.of([splice], f"set {shown(path)} to {value}")
-    return _checked(text, data, edit, path, lambda whole: put(whole, path, meant["value"]), file)
+    return checked(text, data, edit, path, lambda whole: put(whole, path, meant["value"]), file)
 
 
 def unset(text: str, path: Path, file: str = "") -> Edit:
@@ -50,7 +50,7 @@ def unset(text: str, path: Path, file: str = "") -> Edit:
 
     Raises ProblemsFound for a text that is not TOML and EditRefused where nothing stands there or a table does.
     """
-    data, spans = _load(text, path, file)
+    data, spans = load(text, path, file)
     entry = spans.entries.get(path)
     if entry and not entry.inline:
         splice = _line(text, entry)
@@ -63,7 +63,7 @@ def unset(text: str, path: Path, file: str = "") -> Edit:
         raise EditRefused(f"there is no {shown(path)}", "the file does not give it", "name a key that it gives")
     stays = {known[:length] for known in spans.headers for length in range(len(known) + 1)} | set(spans.values)
     edit = Edit.of([splice], f"take out {shown(path)}")
-    return _checked(text, data, edit, path, lambda whole: drop(whole, path, stays), file)
+    return checked(text, data, edit, path, lambda whole: drop(whole, path, stays), file)
 
 
 def insert_block(text: str, path: Path, block: str, file: str = "") -> Edit:
@@ -74,7 +74,7 @@ def insert_block(text: str, path: Path, block: str, file: str = "") -> Edit:
     Raises ProblemsFound for a text that is not TOML and EditRefused where the block is not that one table, or where
     there is one already.
     """
-    data, spans = _load(text, path, file)
+    data, spans = load(text, path, file)
     meant, problems = read(block, file)
     if meant is None:
         raise ProblemsFound(problems, block)
@@ -87,7 +87,7 @@ def insert_block(text: str, path: Path, block: str, file: str = "") -> Edit:
                           spans.place(path, file), text)
     lines = block.replace("\r\n", "\n").strip("\n").split("\n")
     edit = Edit.of([_block_splice(spans, path, lines)], f"add {shown(path)}")
-    return _checked(text, data, edit, path, lambda whole: _added(whole, path, content), file)
+    return checked(text, data, edit, path, lambda whole: _added(whole, path, content), file)
 
 
 def _block_splice(spans: Spans, path: Path, lines: list[str]) -> Splice:
@@ -111,7 +111,8 @@ def _added(whole: Any, path: Path, content: Any) -> None:
         put(whole, path, content)
 
 
-def _load(text: str, path: Path, file: str) -> tuple[dict[str, Any], Spans]:
+def load(text: str, path: Path, file: str) -> tuple[dict[str, Any], Spans]:
+    """What the text says and where: raises ProblemsFound for a text that is not TOML, EditRefused for no path."""
     if not path:
         raise EditRefused("no key is named", "an edit is made at a key", "name one")
     data, problems = read(text, file)
@@ -239,7 +240,7 @@ def _item(spans: Spans, path: Path) -> Splice:
     return Splice(start, text[start:end], "")
 
 
-def _checked(text: str, data: dict[str, Any], edit: Edit, path: Path, change: _Change, file: str) -> Edit:
+def checked(text: str, data: dict[str, Any], edit: Edit, path: Path, change: Change, file: str) -> Edit:
     """`edit`, where the text that it leaves says what `change` makes of the data; else EditRefused."""
     after, problems = read(edit.apply(text), file)
     if after is None:

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+import dataclasses
+from dataclasses import dataclass
 from typing import Literal
 
 from polebook.session.state import Session
@@ -60,6 +61,7 @@ class View:
     figure  focused figure in the page's row, row of the page (nodes page: constants)
     upper   which end of the band the ledger's columns show
     top     first line of the strip and first row of the sheet and the page that are in sight
+    digit_at  when a digit last chose a page (s): a letter that follows at once, as in "2u2", is no command
     """
 
     page: Page = "ledger"
@@ -75,7 +77,8 @@ class View:
     overlay: Overlay | None = None
     message: str = ""
     bad: bool = False  # the message tells of something refused
-    top: dict[str, int] = field(default_factory=dict)
+    top: dict[str, int] = dataclasses.field(default_factory=dict)
+    digit_at: float = float("-inf")
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,22 +3,24 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
+from functools import partial
 
 from polebook.book.workings.direct import Found, Wiring, amplifier_input, find, level_of
+from polebook.book.workings.laws import control_drop, idss, perveance, strength
 from polebook.book.workings.sheet import Books, Sheet
 from polebook.circuit.bias_compile import solution
 from polebook.devices import bjt, fet, triode
 from polebook.formula import Formula, Working
 
 NEAR = 1e-9
-_LAW = "law of the device (the formula of its gm tells where it stands)"
 FORMULAS = (
     Formula("bias.current_a.given", "as the file states it", "the chain file"),
     Formula("bias.current_a", "the current at which the device's law and the resistors agree", "Kirchhoff's laws"),
     Formula("bias.current_a.upper", "the lower device's current but for the upper base current", "Kirchhoff's laws"),
     Formula("bias.across_v", "|V_output - V_lower|", "definition"),
     Formula("bias.across_v.given", "as the file states it; it wins over the rails", "the chain file"),
-    Formula("bias.control_v", "V_lower + the control's voltage by the device's law, else as the network has it", _LAW),
+    Formula("bias.control_v", "V_lower + the control's voltage by the device's law, else as the network has it",
+            "Kirchhoff's laws"),
     Formula("bias.lower_v", "as the resistors at the terminal have it, else V_control - the law's voltage",
             "Kirchhoff's laws"),
     Formula("bias.output_v", "as the resistors at the terminal have it", "Kirchhoff's laws"),
@@ -35,16 +37,17 @@ def bias(books: Books, sheet: Sheet) -> Working:
         current, across = sheet.figure("I", f"{owner}.current_a"), sheet.figure("V", f"{owner}.across_v")
         sheet.result(f"P = {current}·{across}")
         return sheet.done(FORMULA["bias.dissipation_w"])
-    stage = sheet.entry.row["stage"]
-    found = find(books, stage)
+    name = sheet.entry.row["stage"]
+    upper = all(stage.name != name for stage in books.chain.stages)
+    found = find(books, name.removesuffix("_upper") if upper else name)
     if found is None:
-        return _amplifier(books, sheet, stage)
-    device = _Upper(books, found) if owner.endswith(".upper") else _Device(books, found)
+        return _amplifier(books, sheet, name)
+    device = _Upper(books, found) if upper else _Device(books, found)
     for formula, way in device.ways(key):
         page = Sheet(books, sheet.entry)
         if way(page) and _holds(page):
             device.also(key, page)
-            return page.done(FORMULA[formula])
+            return page.stated(FORMULA[formula].text, device.source(FORMULA[formula], page))
     return sheet.done(FORMULA[f"bias.{key}"], "It comes out of the whole d.c. network at once.")
 
 
@@ -52,7 +55,7 @@ def _holds(page: Sheet) -> bool:
     """Whether the last step comes to the figure, the sizes that it is a difference of taken into account."""
     value, wanted = page.steps[-1].value, page.entry.value
     sizes = [abs(number.value) for number in page.numbers if number.unit == page.steps[-1].unit]
-    return abs(value - wanted) <= NEAR * max([abs(wanted), *sizes])
+    return bool(abs(value - wanted) <= NEAR * max([abs(wanted), *sizes]))
 
 
 def _amplifier(books: Books, sheet: Sheet, stage: str) -> Working:
@@ -80,6 +83,12 @@ class _Device:
         self.owner, self.card, self.family = f"bias.{self.device.name}", self.device.card, self.device.family
         self.sign = "+" if self.device.sign > 0 else "-"
 
+    def source(self, formula: Formula, page: Sheet) -> str:
+        """The formula's source, and that of the device's law where a step uses it."""
+        by_law = any(step.symbol in ("vbe", "vgs", "vgk") or step.must == "vbe" for step in page.steps)
+        law = {"bjt": bjt.LAW, "triode": triode.LAW, "jfet": fet.LAW_JFET}.get(self.family, fet.LAW_MOSFET)
+        return f"{formula.source}; {law.text}: {law.source}" if by_law else formula.source
+
     def wiring(self, page: Sheet) -> Wiring:
         return Wiring(self.books, page, self.found.solved)
 
@@ -98,7 +107,10 @@ class _Device:
         if self.family != "bjt":
             yield "bias.current_a", self._by_law
         for end in ("lower", "output", "control"):
-            yield "bias.current_a", lambda page, end=end: self.wiring(page).balanced_current(self.found.place, end)
+            yield "bias.current_a", partial(self._by_balance, end)
+
+    def _by_balance(self, end: str, page: Sheet) -> bool:
+        return self.wiring(page).balanced_current(self.found.place, end)
 
     def _across(self) -> Iterator[tuple[str, Way]]:
         if self.device.across:
@@ -156,7 +168,8 @@ class _Device:
     def _ahead(self, figure: str) -> bool:
         """Whether a figure is of a stage further ahead: so that two that share a node don't point at each other."""
         order = [stage.name for stage in self.books.chain.stages]
-        return order.index(figure.split(".")[1]) < order.index(self.device.name)
+        stage = figure.split(".")[1]
+        return order.index(stage if stage in order else stage.removesuffix("_upper")) < order.index(self.device.name)
 
     def _behind_stopper(self, page: Sheet) -> bool:
         if not self.device.stopper or self.family != "bjt" or not self.law.share:
@@ -190,13 +203,14 @@ class _Device:
         page.step(f"{word} = {self.volts(page, first)} - {self.volts(page, second)}", "V", "from control to lower:")
         if self.family == "triode":
             page.figure("vak", f"{self.owner}.across_v")
-            _perveance(self.books, page, self.card, self.owner)
+            perveance(self.books, page, self.card, self.owner)
             page.result(triode.LAW.text, "by its law:")
         elif self.family == "jfet":
-            _idss(self.books, page, self.card)
+            if not idss(self.books, page, self.card, self.owner):
+                return False
             page.result(fet.LAW_JFET.text, "by its law:")
         else:
-            _strength(self.books, page, self.card, self.owner)
+            strength(self.books, page, self.card, self.owner)
             page.file("vgs_th", f"device.{self.card}.vgs_th")
             page.result(fet.LAW_MOSFET.text, "by its law:")
         return True
@@ -226,7 +240,7 @@ class _Upper(_Device):
 
     def __init__(self, books: Books, found: Found) -> None:
         super().__init__(books, found)
-        self.owner = f"bias.{self.device.name}.upper"
+        self.owner = f"bias.{self.device.name}_upper"
         self.card, self.family = self.device.upper, self.device.upper_family
 
     def _current(self) -> Iterator[tuple[str, Way]]:
@@ -248,7 +262,8 @@ class _Upper(_Device):
         yield "bias.lower_v", self._on_the_lower
 
     def _on_the_lower(self, page: Sheet) -> bool:
-        page.result(f"V = {page.figure('V_middle', f'bias.{self.device.name}.output_v')}", "it stands on the lower one:")
+        middle = page.figure("V_middle", f"bias.{self.device.name}.output_v")
+        page.result(f"V = {middle}", "it stands on the lower one:")
         return True
 
     def _output(self) -> Iterator[tuple[str, Way]]:
@@ -262,80 +277,3 @@ class _Upper(_Device):
 def _file(page: Sheet, symbol: str, path: str) -> bool:
     page.result(f"{symbol} = {page.file(path.rpartition('.')[2], path)}")
     return True
-
-
-def control_drop(books: Books, page: Sheet, family: str, card: str, owner: str) -> str:
-    """Enters what the law puts between control and lower terminal, as for an n-type; "" where the card tells not."""
-    if family == "bjt":
-        page.file("vbe_25", f"device.{card}.vbe")
-        page.file("T", "supply.temperature", "temperature of every part")
-        return page.step(bjt.VBE.text, "V", "at this temperature:")
-    if books.value(f"{owner}.current_a") is None:
-        return ""
-    current = page.figure("I", f"{owner}.current_a")
-    if family == "triode":
-        if books.value(f"{owner}.across_v") is None:
-            return ""
-        p, mu = _perveance(books, page, card, owner)
-        vak = page.figure("vak", f"{owner}.across_v")
-        return page.step(f"vgk = ({current}/{p})^(2/3) - {vak}/{mu}", "V", "grid to cathode by the law at this current:")
-    if family == "jfet" and _idss(books, page, card):
-        return page.step(f"vgs = vgs_off·(sqrt({current}/idss) - 1)", "V", "gate to source by the law at this current:")
-    if family == "mosfet" and f"device.{card}.vgs_th" in books.chain.numbers:
-        k = _strength(books, page, card, owner)
-        threshold = page.file("vgs_th", f"device.{card}.vgs_th")
-        return page.step(f"vgs = {threshold} + sqrt(2·{current}/{k})", "V", "gate to source by the law at this current:")
-    return ""
-
-
-def _strength(books: Books, page: Sheet, card: str, owner: str) -> str:
-    """Enters k of the square law; without a current of its own, gm was measured at the quiescent one."""
-    prefix = f"device.{card}."
-    if f"{prefix}k" in books.chain.numbers:
-        return page.file("k", f"{prefix}k")
-    page.file("gm_0", f"{prefix}gm")
-    if f"{prefix}gm_id" in books.chain.numbers:
-        page.file("gm_id", f"{prefix}gm_id")
-    else:
-        page.figure("gm_id", f"{owner}.current_a", "taken as measured at the quiescent current")
-    return page.step(fet.K_MEASURED.text, "A/V²", "from gm as it was measured:")
-
-
-def _idss(books: Books, page: Sheet, card: str) -> bool:
-    """Enters idss and vgs_off of a junction fet, the latter by gm as it was measured where the card has none."""
-    prefix = f"device.{card}."
-    if f"{prefix}idss" not in books.chain.numbers:
-        return False
-    page.file("idss", f"{prefix}idss")
-    if f"{prefix}vgs_off" in books.chain.numbers:
-        page.file("vgs_off", f"{prefix}vgs_off")
-    elif {f"{prefix}gm", f"{prefix}gm_id"} <= set(books.chain.numbers):
-        page.file("gm_0", f"{prefix}gm")
-        page.file("gm_id", f"{prefix}gm_id")
-        page.step(fet.K_MEASURED.text, "A/V²", "from gm as it was measured:")
-        page.step(fet.VGS_OFF.text, "V", "what cuts it off:")
-    else:
-        return False
-    return True
-
-
-def _perveance(books: Books, page: Sheet, card: str, owner: str) -> tuple[str, str]:
-    """Enters P and mu of a triode."""
-    prefix = f"device.{card}."
-    stands = books.chain.numbers
-    if f"{prefix}mu" in stands:
-        mu = page.file("mu", f"{prefix}mu")
-        if f"{prefix}gm" in stands:
-            page.file("gm_0", f"{prefix}gm")
-        else:
-            page.file("rp", f"{prefix}rp")
-            page.step(triode.GM_MEASURED.text, "S", "as measured:")
-    else:
-        page.file("gm_0", f"{prefix}gm")
-        page.file("rp", f"{prefix}rp")
-        mu = page.step(triode.MU.text, "", "amplification factor:")
-    if f"{prefix}gm_ia" in stands:
-        page.file("gm_ia", f"{prefix}gm_ia")
-    else:
-        page.figure("gm_ia", f"{owner}.current_a", "taken as measured at the quiescent current")
-    return page.step(triode.PERVEANCE.text, "A/V^1.5", "what the law takes:"), mu

@@ -82,8 +82,8 @@ def _between(books: Books, sheet: Sheet, branch: Branch) -> str:
     inverse = books.solution.inverse
     ends = [node for node in (branch.i, branch.j) if node != GROUND]
     free = [node for node in ends if not books.layout.driven[node]]
-    if len(ends) == 1 and books.between.get(ends[0]):
-        name = books.between[ends[0]]
+    name = books.node_label(ends[0])
+    if len(ends) == 1 and f"{name}.ohm" in books.entries and not books.layout.driven[ends[0]]:
         return sheet.figure("R", f"{name}.ohm", f"resistance of {name}, where it stands")
     terms = []
     for node in free:
@@ -91,7 +91,8 @@ def _between(books: Books, sheet: Sheet, branch: Branch) -> str:
             value = float(inverse.z[other, node])
             if value:
                 a, b = books.node_label(other), books.node_label(node)
-                symbol = sheet.put(f"R_{a}_{b}" if a != b else f"R_{a}", value, "Ω", f"V({a}) for 1 A into {b}", NETWORK)
+                name = f"R_{a}_{b}" if a != b else f"R_{a}"
+                symbol = sheet.put(name, value, "Ω", f"V({a}) for 1 A into {b}", NETWORK)
                 terms.append(f"{' - ' if a != b else ' + '}{symbol}")
     text = "".join(terms).removeprefix(" + ")
     return sheet.step(f"R = {text.replace(' - ', '-', 1) if text.startswith(' - ') else text}", "Ω",

@@ -11,7 +11,7 @@ from polebook.circuit.views import impedance
 from polebook.solve.transfer import adjoint, branch_currents
 from polebook.stages.stamper import GROUND
 
-Volts = Callable[[int], float]
+Volts = Callable[[int, int], float]
 
 
 @dataclass(frozen=True, slots=True)
@@ -20,21 +20,6 @@ class Flow:
 
     element: str
     amperes: float
-
-
-def merged(books: Books) -> dict[int, int]:
-    """Node -> a node that stands for all those that a short makes one with it at midband."""
-    root = {node: node for node in range(GROUND, len(books.layout.names))}
-
-    def find(node: int) -> int:
-        while root[node] != node:
-            node = root[node]
-        return node
-
-    for branch in books.layout.branches:
-        if branch.series and impedance(books.net, branch, 0.0, "midband") == 0.0:
-            root[find(branch.j)] = find(branch.i)
-    return {node: find(node) for node in root}
 
 
 def branch_name(books: Books, branch: Branch) -> str:
@@ -48,10 +33,10 @@ def out_of(books: Books, node: int, segments: Iterable[Segment], volts: Volts,
            series: Callable[[int, Branch], float] | None = None) -> Iterator[Flow]:
     """Currents out of `node` and all that is one with it, into the elements of `segments`.
 
-    volts   voltage of a node;  series  current from i to j of a series branch by its number, where known without
-            a difference of two near voltages
+    volts   voltage of a node, for the end of its element that lies inside
+    series  current from i to j of a series branch by its number, where known without a difference of near voltages
     """
-    root = merged(books)
+    root = books.root
     inside = {k for k, top in root.items() if top == root[node]}
     number = {id(branch): k for k, branch in enumerate(books.layout.branches)}
     for segment in segments:
@@ -61,14 +46,17 @@ def out_of(books: Books, node: int, segments: Iterable[Segment], volts: Volts,
             z = impedance(books.net, branch, 0.0, "midband")
             if z is None:
                 continue
+            end = branch.i if branch.i in inside else branch.j
             if branch.series and series:
                 current = series(number[id(branch)], branch)
             else:
-                current = (volts(branch.i) - volts(branch.j)) / z
+                current = (volts(branch.i, end) - volts(branch.j, end)) / z
             yield Flow(branch_name(books, branch), current if branch.i in inside else -current)
         for transfer in segment.transfers:
             if (transfer.output in inside) != (transfer.lower in inside):
-                current = books.net.values[transfer.part] * (volts(transfer.plus) - volts(transfer.minus))
+                end = transfer.output if transfer.output in inside else transfer.lower
+                across = volts(transfer.plus, end) - volts(transfer.minus, end)
+                current = books.net.values[transfer.part] * across
                 yield Flow(books.full_name(books.layout.parts[transfer.part]),
                            current if transfer.output in inside else -current)
 
@@ -81,7 +69,7 @@ def driven_by_source(books: Books, reference: int) -> tuple[Volts, Callable[[int
     parents = {step.step.branch: step.step.parent for taken in folded.taken for step in taken
                if step.step.branch >= 0}
 
-    def volts(node: int) -> float:
+    def volts(node: int, _: int) -> float:
         return 0.0 if node == GROUND else float(v[node] / scale)
 
     def series(number: int, branch: Branch) -> float:
@@ -91,7 +79,7 @@ def driven_by_source(books: Books, reference: int) -> tuple[Volts, Callable[[int
     return volts, series
 
 
-def for_one_ampere(books: Books, node: int) -> Volts:
-    """Voltages for 1 A into a node, where the network has an element between it and them."""
+def for_one_ampere(books: Books) -> Volts:
+    """Voltages for 1 A into the node that an element stands at."""
     z = books.solution.inverse.z
-    return lambda other: 0.0 if other == GROUND else float(z[other, node])
+    return lambda other, node: 0.0 if other == GROUND else float(z[other, node])

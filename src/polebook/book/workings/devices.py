@@ -16,7 +16,7 @@ def device_value(books: Books, sheet: Sheet, stage_name: str, part: str) -> Work
     stage = next(stage for stage in books.chain.stages if stage.name == stage_name)
     card = books.chain.cards[(stage.upper or stage.device) if upper else stage.device]
     family, path = card.family, f"device.{card.name}.{figure}"
-    reader = _Card(books, sheet, card.name, f"bias.{stage_name}{'.upper' if upper else ''}")
+    reader = _Card(books, sheet, card.name, stage_name, "_upper" if upper else "")
     own = path in books.chain.numbers and not (figure == "gm" and reader.measured()) and family != "opamp"
     if own or (family == "opamp" and figure not in ("gbw", "f2")):
         sheet.result(f"{figure} = {sheet.file(figure, path)}")
@@ -27,8 +27,9 @@ def device_value(books: Books, sheet: Sheet, stage_name: str, part: str) -> Work
 class _Card:
     """The numbers of a card, and the operating point that goes with it."""
 
-    def __init__(self, books: Books, sheet: Sheet, card: str, bias: str) -> None:
-        self.books, self.sheet, self.card, self.bias = books, sheet, card, bias
+    def __init__(self, books: Books, sheet: Sheet, card: str, stage: str, after: str) -> None:
+        self.books, self.sheet, self.card, self.stage, self.after = books, sheet, card, stage, after
+        self.bias = f"bias.{stage}{after}"
         self.family = books.chain.cards[card].family
 
     def has(self, key: str) -> bool:
@@ -64,9 +65,7 @@ def _bjt_gm(card: _Card) -> Working:
 
 def _gm(card: _Card) -> str:
     """gm of the same device, as a figure."""
-    stage = card.bias.split(".")[1]
-    after = "_upper" if card.bias.endswith(".upper") else ""
-    return card.sheet.figure("gm", f"{stage}.gm{after}.value")
+    return card.sheet.figure("gm", f"{card.stage}.gm{card.after}.value")
 
 
 def _bjt_rpi(card: _Card) -> Working:
@@ -88,7 +87,7 @@ def _bjt_cmu(card: _Card) -> Working:
     across = f"{card.bias}.across_v"
     note = ""
     if card.books.value(across) is None:
-        sheet.put("VCB", 0.0, "V", "collector to base: cannot be known, so taken as 0", "no operating point", "constant")
+        sheet.put("VCB", 0.0, "V", "collector to base: not known, so taken as 0", "no operating point", "constant")
         note = "Give vce, or what lets it be solved, to have it at the true voltage."
     else:
         sheet.figure("vce", across)

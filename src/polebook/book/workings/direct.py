@@ -71,9 +71,10 @@ class Wiring:
             if not device.stopper:
                 ends.append(("control_v", device.control))
             for key, end in ends:
-                upper = ".upper" if device.upper and key == "output_v" else ""
+                upper = "_upper" if device.upper and key == "output_v" else ""
                 name = f"bias.{device.name}{upper}.{key}"
-                if end == node and name != self.sheet.entry.name and self.books.value(name) == self.solved.voltage(node):
+                own = name == self.sheet.entry.name
+                if end == node and not own and self.books.value(name) == self.solved.voltage(node):
                     return name
         return ""
 

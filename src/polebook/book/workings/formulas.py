@@ -5,10 +5,10 @@ from __future__ import annotations
 from collections.abc import Mapping
 from types import MappingProxyType
 
-from polebook.book import account, band, lines, miller, shares, sites, targets, time_constants
+from polebook.book import account, band, leverage, lines, miller, poles, shares, sites, targets, time_constants
 from polebook.formula import Formula
 
-_MODULES = (account, band, lines, miller, shares, sites, targets, time_constants)
+_MODULES = (account, band, leverage, lines, miller, poles, shares, sites, targets, time_constants)
 
 _FILE = (
     Formula("parts.value.file", "as the file gives it", "the chain file"),
@@ -17,4 +17,4 @@ _FILE = (
 )
 
 FORMULA: Mapping[str, Formula] = MappingProxyType(
-    {formula.figure: formula for formulas in (*(module.FORMULAS for module in _MODULES), _FILE) for formula in formulas})
+    {formula.figure: formula for table in (*(module.FORMULAS for module in _MODULES), _FILE) for formula in table})

@@ -25,19 +25,20 @@ CLOSED = {
 }
 
 
-def closed_form(books: Books, sheet: Sheet, index: int, loaded: bool) -> bool:
-    """Enters the steps of the closed form of line `index`, with or without what follows; False where it has none."""
+def closed_form(books: Books, sheet: Sheet, index: int, loaded: bool) -> Formula | None:
+    """Enters the steps of the closed form of line `index`, with or without what follows; None where it has none."""
     segment = books.layout.segments[index]
     if segment.name == "source":
-        return _source(books, sheet, loaded)
+        return CLOSED["source"] if _source(books, sheet, loaded) else None
     if segment.name == "load" or segment.after == segment.before:
-        return False
+        return None
     topology = KINDS[segment.kind].topology
     if topology == "block":
-        return _block(books, sheet, index, loaded)
+        return CLOSED["block"] if _block(books, sheet, index, loaded) else None
     if topology not in ("inverting", "follower", "common_control"):
-        return False
-    return _Device(books, sheet, index, loaded).write(topology)
+        return None
+    device = _Device(books, sheet, index, loaded)
+    return CLOSED[topology if device.bipolar else f"{topology}_fet"] if device.write(topology) else None
 
 
 def _source(books: Books, sheet: Sheet, loaded: bool) -> bool:
@@ -54,13 +55,13 @@ def _source(books: Books, sheet: Sheet, loaded: bool) -> bool:
 
 def _block(books: Books, sheet: Sheet, index: int, loaded: bool) -> bool:
     name = books.layout.segments[index].name
-    drive = books.layout.segments[index].drives[0]
     if f"{name}.r_bridge.value" in books.entries or f"{name}.rout.value" not in books.entries:
         return False
     gain, into = sheet.file("gain", f"{name}.gain"), f"{name}.gain_into"
     rout = sheet.figure("rout", f"{name}.rout.value")
     if into in books.chain.numbers:
-        sheet.step(f"G = {gain}·(1 + {rout}/{sheet.file('R_into', into)})", "", "freed of the load it was measured with:")
+        test = sheet.file("R_into", into)
+        sheet.step(f"G = {gain}·(1 + {rout}/{test})", "", "freed of the load it was measured with:")
     else:
         sheet.step(f"G = {gain}", "")
     following = f"{books.following(index + 1)}.input_ohm"
@@ -69,7 +70,7 @@ def _block(books: Books, sheet: Sheet, index: int, loaded: bool) -> bool:
         sheet.result(f"A = G·{load}/({rout} + {load})", "in closed form:")
     else:
         sheet.result("A = G", "in closed form, nothing behind it:")
-    return books.net.values[drive.gain] != 0.0
+    return True
 
 
 class _Device:
@@ -100,7 +101,7 @@ class _Device:
         return True
 
     def _has(self, part: str) -> bool:
-        return f"{self.name}.{part}.value" in self.books.entries
+        return self.books.value(f"{self.name}.{part}.value") is not None
 
     def _value(self, part: str) -> str:
         return self.sheet.figure(part, f"{self.name}.{part}.value")

@@ -2,7 +2,7 @@
 
     overall.upper_edge_hz   Q1.gain         n1.pole_hz         Q1.mid.pole_hz       account.upper.lost_db
     Q1.cmu.k                Q1.cmu.tau_s    Q1.rc.leverage.gain                     target.upper.margin
-    bias.Q1.current_a       bias.Q4.upper.current_a (of a cascode's upper device)   rail.positive.current_a
+    bias.Q1.current_a       bias.Q4_upper.current_a (of a cascode's upper device)   rail.positive.current_a
     device.D.beta.value     poles.1.hz      zeros.2.hz (counted from 1)
 """
 
@@ -10,6 +10,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from math import isfinite
 from typing import Any
 
 from polebook.chain.suggest import listed
@@ -36,12 +37,13 @@ class Entry:
 
 
 def entries(document: Mapping[str, Any]) -> dict[str, Entry]:
-    """Every figure of the document by name, in its order; null ones too."""
+    """Every figure of the document by name, in its order; null ones too, which those are that are not finite."""
     found: dict[str, Entry] = {}
     for owner, section, row, at in _rows(document):
         for key, value in _figures(row):
             name = f"{owner}.{key}"
-            found.setdefault(name, Entry(name, section, row, at, key, value))
+            finite = None if isinstance(value, float) and not isfinite(value) else value
+            found.setdefault(name, Entry(name, section, row, at, key, finite))
     return found
 
 
@@ -64,10 +66,7 @@ def _rows(document: Mapping[str, Any]) -> Iterator[tuple[str, str, Row, int]]:
         yield from ((f"{line['name']}.{row['part']}", "bridges", row, at) for row in line["bridges"] or [])
     yield from ((f"device.{row['device']}.{row['figure']}", "cards", row, at)
                 for at, row in enumerate(document["cards"] or []))
-    seen: set[str] = set()
-    for at, row in enumerate(document["bias"] or []):
-        yield f"bias.{row['stage']}{'.upper' if row['stage'] in seen else ''}", "bias", row, at
-        seen.add(row["stage"])
+    yield from ((f"bias.{row['stage']}", "bias", row, at) for at, row in enumerate(document["bias"] or []))
     yield from ((f"rail.{row['rail']}", "rails", row, at) for at, row in enumerate(document["rails"] or []))
     for name in ("poles", "zeros"):
         yield from ((f"{name}.{at + 1}", name, row, at) for at, row in enumerate(document[name] or []))
@@ -105,12 +104,12 @@ def _unknown(wanted: str, known: Mapping[str, Entry]) -> Problem:
     from difflib import get_close_matches  # deferred: only a wrong name pays for it
 
     owner = wanted.rpartition(".")[0]
-    own = [one.removeprefix(f"{owner}.") for one in known if owner and one.startswith(f"{owner}.")]
-    if own and len(own) <= _FEW:
-        why = f"the figures of {owner} are {listed(own)}"
+    own = [one for one in known if owner and one.startswith(f"{owner}.") and "." not in one[len(owner) + 1:]]
+    if own:
+        why = f"the figures of {owner} are {listed(one[len(owner) + 1:] for one in own)}"
     else:
         why = "a figure is named by its line, node, part, bias, account, target or overall, a dot and its key"
-    folded = {one.casefold(): one for one in known}
-    near = [folded[one] for one in get_close_matches(wanted.casefold(), folded, n=4, cutoff=0.6)]
+    folded = {one.casefold(): one for one in own or known}
+    near = [folded[one] for one in get_close_matches(wanted.casefold(), folded, n=3, cutoff=0.6)]
     fix = f"did you mean {listed(near, 'or')}?" if near else "polebook working FILE lists them all"
     return Problem(None, f"there is no figure {quoted(wanted)}", why, fix)

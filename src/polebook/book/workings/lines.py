@@ -7,9 +7,10 @@ from polebook.book.workings.currents import driven_by_source, out_of
 from polebook.book.workings.formulas import FORMULA
 from polebook.book.workings.gains import closed_form
 from polebook.book.workings.sheet import Books, Sheet, plus
-from polebook.formula import Working
+from polebook.formula import Formula, Working
+from polebook.solve.transfer import adjoint
 
-MIDBAND = "midband solution, 1 V of EMF or 1 A"
+MIDBAND = "midband solution"
 
 
 def line(books: Books, sheet: Sheet) -> Working:
@@ -20,8 +21,8 @@ def line(books: Books, sheet: Sheet) -> Working:
 def voltage(books: Books, sheet: Sheet, node: int) -> str:
     """Enters the midband voltage of a node; returns its symbol."""
     label = books.node_label(node)
-    return sheet.put(f"V_{label}", books.solution.volts[node], "V", f"voltage of {label} for 1 V of EMF or 1 A",
-                     MIDBAND)
+    given = "1 V of EMF" if books.chain.source_kind == "voltage" else "1 A"
+    return sheet.put(f"V_{label}", books.solution.volts[node], "V", f"V({label}) for {given}", MIDBAND)
 
 
 def _ends(books: Books, index: int) -> tuple[int, int]:
@@ -43,8 +44,11 @@ def _gain(books: Books, sheet: Sheet, index: int) -> Working:
         name = books.layout.segments[index].name
         into, out = voltage(books, sheet, before), voltage(books, sheet, after)
         sheet.result(f"A_{name} = {out}/{into}")
-    closed_form(books, sheet, index, loaded=True)
-    return sheet.done(formula)
+    return sheet.stated(formula.text, _source(formula, closed_form(books, sheet, index, loaded=True)))
+
+
+def _source(formula: Formula, closed: Formula | None) -> str:
+    return f"{formula.source}; closed form: {closed.source}" if closed else formula.source
 
 
 def _one_node(books: Books, index: int) -> str:
@@ -79,11 +83,9 @@ def _open_gain(books: Books, sheet: Sheet, index: int) -> Working:
         gain = sheet.figure(f"A_{name}", f"{name}.gain")
         sheet.result(f"A_open = {gain}", "nothing that follows draws current:" if following is None
                      else "an ideal output does not feel what it drives:")
-        closed_form(books, sheet, index, loaded=False)
-        return sheet.done(formula)
-    _unload(books, sheet, index, before, after)
-    closed_form(books, sheet, index, loaded=False)
-    return sheet.done(formula)
+    else:
+        _unload(books, sheet, index, before, after)
+    return sheet.stated(formula.text, _source(formula, closed_form(books, sheet, index, loaded=False)))
 
 
 def _unload(books: Books, sheet: Sheet, index: int, before: int, after: int) -> None:
@@ -93,10 +95,10 @@ def _unload(books: Books, sheet: Sheet, index: int, before: int, after: int) -> 
     node = sheet.figure("R_n", f"{books.between[after]}.ohm", "resistance of the node, what follows attached")
     sheet.step(f"V_2 = {out}·{own}/{node}", "V", f"voltage of {books.node_label(after)} freed of what follows:")
     into = voltage(books, sheet, before)
-    back = float(books.solution.inverse.z.get((before, after), 0.0))
+    back = float(adjoint(books.solution.midband, before).u[after])
     if back:
         ohm = sheet.figure("R_next", f"{books.following(index + 1)}.input_ohm", "input resistance of what follows")
-        z = sheet.put("R_back", back, "Ω", f"voltage at {books.node_label(before)} for 1 A into "
+        z = sheet.put("R_back", back, "Ω", f"V({books.node_label(before)}) for 1 A into "
                       f"{books.node_label(after)}", "midband network")
         sheet.step(f"V_1 = {into} + {z}·V_2/{ohm}", "V", f"and of {books.node_label(before)}, which hears of it:")
     else:
@@ -130,11 +132,11 @@ def _input(books: Books, sheet: Sheet, index: int) -> Working:
     segments = books.layout.segments[index:]
     before = segments[0].before
     volts, series = driven_by_source(books, before)
-    stop = next((at for at, segment in enumerate(segments) if segment.after != before), len(segments) - 1)
+    root = books.root
+    stop = next((at for at, one in enumerate(segments) if root[one.after] != root[before]), len(segments) - 1)
     label = books.node_label(before)
     flows = [
-        sheet.put(f"I_{flow.element}", flow.amperes, "A", f"current into {flow.element} for 1 V at {label}",
-                  "midband solution")
+        sheet.put(f"I_{flow.element}", flow.amperes, "A", f"into {flow.element} for 1 V at {label}", MIDBAND)
         for flow in out_of(books, before, segments[:stop + 1], volts, series) if flow.amperes
     ]
     sheet.step(f"I_in = {plus(flows)}", "A", f"what flows for 1 V at {label}:")
@@ -156,7 +158,7 @@ def _output(books: Books, sheet: Sheet, index: int) -> Working:
         whole = sheet.figure("R_n", own)
         sheet.result(f"R_out = {whole}", "nothing that follows draws current: it is the resistance of the node,")
         return sheet.done(formula)
-    out = sheet.put("R_out", sheet.entry.value, "Ω", "the output resistance", "midband network from source to line")
+    out = sheet.put("R_out", sheet.entry.value, "Ω", "the output resistance", "midband network")
     load = sheet.figure("R_next", behind, "input resistance of what follows")
     whole = sheet.figure("R_n", own)
     sheet.check(f"1/(1/{out} + 1/{load})", whole, "Ω", "with what follows beside it, it makes the node's resistance:")

@@ -7,20 +7,25 @@ from dataclasses import dataclass
 
 from polebook.book.account import Account, line_losses
 from polebook.book.sites import FAINT
-from polebook.book.workings.currents import for_one_ampere, merged, out_of
+from polebook.book.workings.currents import for_one_ampere, out_of
 from polebook.book.workings.formulas import FORMULA
 from polebook.book.workings.sheet import Books, Sheet, plus
+from polebook.chain.suggest import listed
 from polebook.formula import Working
 from polebook.stages.stamper import GROUND
 
 
 @dataclass(frozen=True, slots=True)
 class Half:
-    """What one capacitor puts on a node: its part, K to its other end, None where that is ground or the rail."""
+    """What one capacitor puts on a node: its part, K to its other end, None where that is ground or the rail.
+
+    of_use is False for a negative half that is no input half of a bridge: it is left out of the node's pole.
+    """
 
     part: int
     other: int
     k: float | None
+    of_use: bool = True
 
 
 def node(books: Books, sheet: Sheet) -> Working:
@@ -64,9 +69,9 @@ def _ohm(books: Books, sheet: Sheet) -> Working:
 
 def _inner_ohm(books: Books, sheet: Sheet, number: int) -> Working:
     flows = [
-        sheet.put(f"I_{flow.element}", flow.amperes, "A", f"current into {flow.element} for 1 A into the node",
-                  "midband network, 1 A into the node")
-        for flow in out_of(books, number, books.layout.segments, for_one_ampere(books, number)) if flow.amperes
+        sheet.put(f"I_{flow.element}", flow.amperes, "A", f"into {flow.element} for 1 A into the node",
+                  "midband network")
+        for flow in out_of(books, number, books.layout.segments, for_one_ampere(books)) if flow.amperes
     ]
     sheet.check(plus(flows), "1", "A", "at this voltage for 1 A, the elements at the node take just that:")
     return sheet.done(FORMULA["nodes.ohm"])
@@ -85,32 +90,34 @@ def halves(books: Books, volts: list[float], root: dict[int, int]) -> Iterator[t
                 yield root[own], Half(index, other, None)
             else:
                 k = volts[other] / volts[own]
-                if k <= 1.0 or (branch.bridge and own == branch.i):
-                    yield root[own], Half(index, other, k)
+                yield root[own], Half(index, other, k, k <= 1.0 or (branch.bridge and own == branch.i))
 
 
 def _pole(books: Books, sheet: Sheet) -> Working:
     name = sheet.entry.name.rpartition(".")[0]
+    parts_out: list[str] = []
     storage = next((s for segment in books.layout.segments for s in segment.storages
                     if books.site_of.get(s.node) == name and books.layout.parts[s.part].role == "high"), None)
     if storage is not None:
         part = books.layout.parts[storage.part]
         sheet.figure("tau", f"{books.full_name(part)}.tau_s", "time constant of the storage, its loop closed")
     else:
-        terms = _terms(books, sheet, name)
+        terms = _terms(books, sheet, name, parts_out)
         sheet.step(f"tau = {plus(terms)}", "s", "time constant of the node:")
     if sheet.entry.key == "farad":
         sheet.result(f"C = tau/{sheet.figure('R', f'{name}.ohm')}")
     else:
         sheet.result("f = 1/(2·pi·tau)")
-    left_out = next(site.left_out for site in books.ledger.sites if site.name == name)
-    note = f"Left out, as the signal does not reach it: {', '.join(left_out)}." if left_out else ""
-    return sheet.done(FORMULA[f"nodes.{sheet.entry.key}"], note)
+    unheard = next(site.left_out for site in books.ledger.sites if site.name == name)
+    notes = [f"The signal does not reach {listed(unheard)}: left out."] if unheard else []
+    if parts_out:
+        notes.append(f"The half of {listed(parts_out)} that lands here is negative and of no use: left out.")
+    return sheet.done(FORMULA[f"nodes.{sheet.entry.key}"], " ".join(notes))
 
 
-def _terms(books: Books, sheet: Sheet, name: str) -> list[str]:
-    """R·C of every node of a site, each capacitance with its Miller half."""
-    volts, root = [*books.solution.volts[:len(books.layout.names)], 0.0], merged(books)
+def _terms(books: Books, sheet: Sheet, name: str, left_out: list[str]) -> list[str]:
+    """R·C of every node of a site, each capacitance with its Miller half; parts of no use go to `left_out`."""
+    volts, root = [*books.solution.volts[:len(books.layout.names)], 0.0], books.root
     first: dict[int, int] = {}
     for number in books.site_of:
         first.setdefault(root[number], number)
@@ -118,8 +125,12 @@ def _terms(books: Books, sheet: Sheet, name: str) -> list[str]:
     loudest = max((abs(volts[n]) for n, site in books.site_of.items() if site == name), default=0.0)
     landed: dict[int, list[Half]] = {}
     for top, half in halves(books, volts, root):
-        if top in own and abs(volts[own[top]]) >= FAINT * loudest:
+        if top not in own or abs(volts[own[top]]) < FAINT * loudest:
+            continue
+        if half.of_use:
             landed.setdefault(top, []).append(half)
+        else:
+            left_out.append(books.full_name(books.layout.parts[half.part]))
     terms = []
     for top, found in landed.items():
         ohm = _resistance(books, sheet, own[top])
@@ -141,12 +152,12 @@ def _resistance(books: Books, sheet: Sheet, number: int) -> str:
 def _landed(books: Books, sheet: Sheet, half: Half, label: str) -> str:
     """How much of a capacitor lands on a node, as a term."""
     name = books.full_name(books.layout.parts[half.part])
-    value = sheet.figure(f"C_{name}", f"{name}.value", f"{name}")
+    value = sheet.figure(f"C_{name}", f"{name}.value")
     if half.k is None:
         return value
     far = books.node_label(half.other)
-    k = sheet.put(f"K_{name}", half.k, "", f"V({far})/V({label}), of {name}", "midband solution")
-    return f"{value}·(1 - {k})"
+    k = sheet.put(f"K_{name}", half.k, "", f"V({far})/V({label})", "midband solution")
+    return sheet.step(f"c_{name} = {value}·(1 - {k})", "F")
 
 
 def _room(books: Books, sheet: Sheet) -> Working:
@@ -174,7 +185,7 @@ def _lost(books: Books, sheet: Sheet) -> Working:
     while first and account.lost[order[first - 1]] is None:
         first -= 1
     run = set(order[first:at + 1])
-    edge = sheet.figure("f_a", f"account.{end}.edge_hz")
+    sheet.figure("f_a", f"account.{end}.edge_hz")
     hz = account.edge_hz or 0.0
     losses = line_losses(books.solution, hz)
     there, here = [], []
@@ -184,18 +195,16 @@ def _lost(books: Books, sheet: Sheet) -> Working:
             continue
         size = abs(books.solution.gains[index])
         unit = "Ω" if index == 0 and books.chain.source_kind == "current" else ""
-        here.append(sheet.put(f"A_{segment.name}", size, unit, f"size of the gain of {segment.name}, midband",
-                              "midband solution"))
+        here.append(sheet.put(f"A_{segment.name}", size, unit, f"|A| of {segment.name}", "midband solution"))
         there.append(sheet.put(f"H_{segment.name}", size * 10.0 ** (-losses[index] / 20.0), unit,
-                               f"size of the gain of {segment.name} at f_a", "full network at f_a"))
+                               f"|A(f_a)| of {segment.name}", "full network"))
     if not here:
         return sheet.done(FORMULA[f"nodes.lost_{end}_db"], "No line ends in a node of its own here.")
     quotient = "·".join(f"{b}/{a}" for a, b in zip(here, there, strict=True))
     sheet.result(f"lost_db = -20·log10({quotient})")
-    held = [node for node in order[first:at]]
-    note = f"{edge} is the frequency of the account."
-    if held:
-        note += f" {' and '.join(held)}: held by the stage behind, so that what is lost there is booked here."
+    held = order[first:at]
+    stands = "is held by the stage behind it" if len(held) == 1 else "are held by the stages behind them"
+    note = f"{listed(held)} {stands}: what is lost there is booked here." if held else ""
     return sheet.done(FORMULA[f"nodes.lost_{end}_db"], note)
 
 

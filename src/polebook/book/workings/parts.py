@@ -6,8 +6,9 @@ from polebook.book.shares import derivatives
 from polebook.book.workings.constants import time_constant
 from polebook.book.workings.devices import device_value
 from polebook.book.workings.formulas import FORMULA
+from polebook.book.workings.levers import lever
 from polebook.book.workings.lines import voltage
-from polebook.book.workings.sheet import Books, Sheet
+from polebook.book.workings.sheet import Books, Sheet, path_of
 from polebook.formula import Working
 from polebook.quantity import engineering
 
@@ -17,7 +18,19 @@ def part(books: Books, sheet: Sheet) -> Working:
     key = sheet.entry.key
     if key == "value":
         return _value(books, sheet)
+    if key.startswith("leverage."):
+        return lever(books, sheet)
     return time_constant(books, sheet) if key == "tau_s" else _owns(books, sheet)
+
+
+def card(books: Books, sheet: Sheet) -> Working:
+    """The working of a figure of `cards`."""
+    if sheet.entry.key != "value":
+        return lever(books, sheet)
+    row = sheet.entry.row
+    path = f"device.{row['device']}.{row['figure']}"
+    sheet.result(f"value = {sheet.file(row['figure'], path)}")
+    return sheet.done(FORMULA["parts.value.file"])
 
 
 def bridge(books: Books, sheet: Sheet) -> Working:
@@ -57,29 +70,14 @@ def _value(books: Books, sheet: Sheet) -> Working:
     return device_value(books, sheet, row["stage"], row["part"])
 
 
-def path_of(books: Books, stage: str, name: str) -> str:
-    """Number path of a part that a key of its table sets, as far as it can be one."""
-    if name.startswith("arm") and name[3:4].isdigit():
-        number, _, letter = name[3:].partition(".")
-        prefix = f"{stage}.arms.{number}."
-        return next((path for path in books.chain.numbers if path.startswith(prefix)
-                     and path[-1] == (letter or path[-1])), "")
-    for word, key in (("pole", "poles"), ("lower", "lower_poles")):
-        if name.startswith(word) and name[len(word):].isdigit():
-            return f"{stage}.{key}.{name[len(word):]}"
-    return f"{stage}.{name}"
-
-
 def _owns(books: Books, sheet: Sheet) -> Working:
     key = sheet.entry.key
     index = books.part_of[sheet.entry.name.removesuffix(f".{key}")]
     edge = "overall.upper_edge_hz" if key == "owns_upper" else "overall.lower_edge_hz"
     hz = books.value(edge)
     slopes = {k: d.real for k, d in derivatives(books.net, hz).by_part.items()}
-    where = f"full network and its adjoint at {engineering(hz, 'Hz', 4)}"
-    own = sheet.put("D_X", slopes[index], "", "d ln|H|/d ln X: per cent that |H| rises there for 1 % more of the part",
-                    where)
-    all_parts = sheet.put("D_f", sum(slopes.values()), "", "d ln|H|/d ln f there, the sum of D over all C, L and tau",
-                          where)
+    where = f"adjoint, {engineering(hz, 'Hz', 4)}"
+    own = sheet.put("D_X", slopes[index], "", "d ln|H|/d ln X of the part", where)
+    all_parts = sheet.put("D_f", sum(slopes.values()), "", "d ln|H|/d ln f", where)
     sheet.result(f"owns = {own}/{all_parts}")
-    return sheet.done(FORMULA[f"parts.{key}"])
+    return sheet.done(FORMULA[f"parts.{key}"], "D_f is the sum of D_X over all C, L and time constants.")

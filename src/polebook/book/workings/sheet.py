@@ -7,29 +7,33 @@ from collections.abc import Mapping
 from functools import cached_property
 from typing import Any
 
+from polebook.book.build import SECTIONS as SECTIONS_OF_DOCUMENT
 from polebook.book.build import document
 from polebook.book.ledger import Ledger
 from polebook.book.sites import interstage_names, site_names
 from polebook.book.workings.expression import evaluate
 from polebook.book.workings.index import Entry, entries
-from polebook.book.workings.units import about, unit
+from polebook.book.workings.units import about, device_figure, unit
 from polebook.chain.tables import SECTIONS
 from polebook.circuit.elements import Part
+from polebook.circuit.views import impedance
 from polebook.devices.registry import FAMILIES
 from polebook.formula import Formula, Number, Step, Working
 from polebook.quantity import DIMENSIONS
 from polebook.stages.registry import KINDS
+from polebook.stages.stamper import GROUND
 
+_SECTIONS = frozenset(SECTIONS_OF_DOCUMENT) - {"verdict", "cautions"}
 _UNFIT = re.compile(r"[^\w.]")
 
 
 class Books:
-    """A ledger with its document, and where to find things in it."""
+    """A ledger with its document (without poles and zeros unless `roots`), and where to find things in it."""
 
-    def __init__(self, of: Ledger) -> None:
+    def __init__(self, of: Ledger, roots: bool) -> None:
         self.ledger, self.chain, self.solution = of, of.chain, of.solution
         self.layout, self.net = of.solution.circuit.layout, of.solution.circuit.network
-        self.document: Mapping[str, Any] = document(of)
+        self.document: Mapping[str, Any] = document(of, _SECTIONS if roots else _SECTIONS - {"poles", "zeros"})
         self.entries = entries(self.document)
 
     def value(self, name: str) -> Any:
@@ -59,6 +63,18 @@ class Books:
     def left_out(self) -> set[str]:
         return {stage.name for stage in self.chain.stages if stage.left_out}
 
+    def about(self, entry: Entry) -> str:
+        """What a figure is, in a line."""
+        if entry.section == "parts" and entry.key == "value":
+            return self._part(entry.row["stage"], entry.row["part"])
+        if entry.section == "cards" and entry.key == "value":
+            return _key(self, f"device.{entry.row['device']}.{entry.row['figure']}")[1]
+        return about(entry.section, entry.key)
+
+    def _part(self, stage: str, name: str) -> str:
+        path = path_of(self, stage, name)
+        return _key(self, path)[1] if path in self.chain.numbers else device_figure(name)
+
     def following(self, index: int) -> str:
         """The line that loads what stands before line `index`, left-out ones passed over; "" behind the load."""
         rest = self.layout.segments[index:]
@@ -69,9 +85,25 @@ class Books:
         rest = reversed(self.layout.segments[:index])
         return next((segment.name for segment in rest if segment.name not in self.left_out), "")
 
+    @cached_property
+    def root(self) -> dict[int, int]:
+        """Node -> a node that stands for all those that a short makes one with it at midband."""
+        root = {node: node for node in range(GROUND, len(self.layout.names))}
+
+        def find(node: int) -> int:
+            while root[node] != node:
+                node = root[node]
+            return node
+
+        for branch in self.layout.branches:
+            if branch.series and impedance(self.net, branch, 0.0, "midband") == 0.0:
+                root[find(branch.j)] = find(branch.i)
+        return {node: find(node) for node in root}
+
     def node_label(self, node: int) -> str:
-        """A node as a reader knows it: n1, or Q1.inner."""
-        return self.between.get(node, self.layout.names[node])
+        """A node as a reader knows it: n1, also behind what is a short at midband; else Q1.inner."""
+        same = (name for other, name in self.between.items() if self.root[other] == self.root[node])
+        return self.between.get(node) or next(same, self.layout.names[node])
 
     def full_name(self, part: Part) -> str:
         return f"{part.stage}.{part.name}"
@@ -99,7 +131,7 @@ class Sheet:
     def figure(self, symbol: str, name: str, text: str = "") -> str:
         """Enters another figure of the ledger."""
         entry = self.books.entries[name]
-        shown = text or about(entry.section, entry.key)
+        shown = text or self.books.about(entry)
         return self.put(symbol, entry.value, unit(self.books.document, entry), shown, name, "figure")
 
     def file(self, symbol: str, path: str, text: str = "") -> str:
@@ -145,7 +177,7 @@ class Sheet:
 
     def stated(self, text: str, source: str, note: str = "", why: str = "") -> Working:
         entry = self.entry
-        return Working(entry.name, entry.value, unit(self.books.document, entry), about(entry.section, entry.key), text,
+        return Working(entry.name, entry.value, unit(self.books.document, entry), self.books.about(entry), text,
                        source, tuple(self.numbers), tuple(self.steps), why, note)
 
 
@@ -156,6 +188,19 @@ def plus(symbols: list[str]) -> str:
 
 def times(symbols: list[str]) -> str:
     return "·".join(symbols) if symbols else "1"
+
+
+def path_of(books: Books, stage: str, name: str) -> str:
+    """Number path of a part that a key of its table sets, as far as it can be one."""
+    if name.startswith("arm") and name[3:4].isdigit():
+        number, _, letter = name[3:].partition(".")
+        prefix = f"{stage}.arms.{number}."
+        return next((path for path in books.chain.numbers if path.startswith(prefix)
+                     and path[-1] == (letter or path[-1])), "")
+    for word, key in (("pole", "poles"), ("lower", "lower_poles")):
+        if name.startswith(word) and name[len(word):].isdigit():
+            return f"{stage}.{key}.{name[len(word):]}"
+    return f"{stage}.{name}"
 
 
 def _key(books: Books, path: str) -> tuple[str, str]:

@@ -25,6 +25,23 @@ ABOUT: Mapping[str, str] = {
     "overall.sctc_lower_hz": "estimate of the lower edge by short-circuit time constants",
     "overall.node_upper_hz": "estimate of the upper edge by the poles of the nodes",
     "overall.shrinkage": "upper edge over the lowest node pole",
+    "overall.rise_time_s": "10-90 % rise time of the step response",
+    "overall.overshoot_percent": "overshoot of the step response, of its final value",
+    "overall.settling_1_s": "time that the step response takes to settle to 1 %",
+    "overall.settling_01_s": "time that the step response takes to settle to 0.1 %",
+    "overall.sag_percent": "sag of a pulse",
+    "overall.group_delay_s": "group delay at the reference frequency",
+    "overall.group_delay_spread_s": "spread of the group delay between the edges",
+    "overall.noise_density": "input-referred noise density at the reference frequency",
+    "overall.noise_total_output": "noise at the output, rms",
+    "overall.noise_total_input": "noise referred to the input, rms",
+    "overall.noise_from_hz": "lower end of the noise band", "overall.noise_to_hz": "upper end of the noise band",
+    "overall.noise_figure_db": "noise figure",
+    "overall.supply_current_a": "quiescent current of the greater rail",
+    "overall.largest_source": "largest source that passes without clipping",
+    "overall.dynamic_range_db": "largest source that passes over the input noise",
+    "overall.noise_margin_db": "smallest source over the input noise",
+    "overall.full_power_hz": "highest frequency at which the full output is reached",
     "lines.gain": "gain of the line into what it drives, midband",
     "lines.gain_db": "size of the line's gain in dB",
     "lines.open_gain": "gain of the line with all that follows taken away",
@@ -49,7 +66,7 @@ ABOUT: Mapping[str, str] = {
     "nodes.allotted_lower_db": "allotted to the node of what may be lost at the lower edge",
     "nodes.room": "the node's pole over the pole that it needs",
     "parts.value": "value of the part",
-    "parts.tau_s": "time constant of the part",
+    "parts.tau_s": "time constant",
     "parts.owns_upper": "share of the upper edge that the part owns",
     "parts.owns_lower": "share of the lower edge that the part owns",
     "parts.noise_share": "share of the output noise power",
@@ -71,8 +88,20 @@ ABOUT: Mapping[str, str] = {
     "targets.met": "whether the target is met",
     "poles.re": "real part of the pole", "zeros.re": "real part of the zero",
     "poles.im": "imaginary part of the pole", "zeros.im": "imaginary part of the zero",
-    "poles.hz": "distance of the pole from 0, as a frequency", "zeros.hz": "distance of the zero from 0, as a frequency",
+    "poles.hz": "distance of the pole from 0, as a frequency",
+    "zeros.hz": "distance of the zero from 0, as a frequency",
     "poles.q": "quality factor of the pole", "zeros.q": "quality factor of the zero",
+}
+_DEVICE = {
+    "gm": "transconductance at the operating point", "rpi": "base-emitter resistance at the operating point",
+    "ro": "output resistance at the operating point", "rx": "resistance in series with the control",
+    "cpi": "base-emitter capacitance", "cmu": "collector-base capacitance", "ccs": "collector to ground",
+    "cgs": "gate-source capacitance", "cgd": "gate-drain capacitance", "cds": "drain-source capacitance",
+    "cdb": "drain to ground", "cgk": "grid-cathode capacitance", "cga": "grid-anode capacitance",
+    "cak": "anode-cathode capacitance", "gbw": "time constant of the dominant pole",
+    "f2": "time constant of the second pole", "rin": "resistance between the inputs",
+    "rout": "output resistance, loop open", "cin_diff": "capacitance between the inputs",
+    "cin_cm": "capacitance from each input to ground",
 }
 _LEVERAGE = {"gain": "the midband gain", "lower_edge": "the lower edge", "upper_edge": "the upper edge",
              "noise": "the input noise"}
@@ -84,6 +113,13 @@ def about(section: str, key: str) -> str:
         figure = key.removeprefix("leverage.")
         return f"per cent that {_LEVERAGE.get(figure, figure)} moves for 1 % more"
     return ABOUT.get(f"{section}.{key}", "")
+
+
+def device_figure(part: str) -> str:
+    """What a device's own figure is; a cascode's upper device's has the same name with _upper behind it."""
+    upper = part.endswith("_upper")
+    told = _DEVICE.get(part.removesuffix("_upper"), "")
+    return f"{told}, upper device" if upper and told else told
 
 
 def unit(document: Mapping[str, Any], entry: Entry) -> str:

@@ -49,7 +49,7 @@ def _unstable(books: Books, sheet: Sheet) -> Working:
     solution = books.solution
     n = sheet.put("N", solution.winding.finite or 0, "", "finite poles that are not at 0", "growth of the determinant")
     turned = float(_turns(solution.sweep).sum())
-    angle = sheet.put("Δ", turned, "rad", "turn of arg det(G + jωC) along the sweep",
+    angle = sheet.put("turn", turned, "rad", "turn of arg det(G + j·2·pi·f·C) along the sweep",
                       f"full network, {_hz(solution.sweep.hz[0])} to {_hz(solution.sweep.hz[-1])}")
     sheet.step(f"n_R = ({n} - {angle}/(pi/2))/2", "", "poles with a positive real part, to the nearest whole number:")
     return sheet.done(FORMULA["overall.unstable"])
@@ -63,8 +63,7 @@ def _edge(books: Books, sheet: Sheet) -> Working:
     value = sheet.entry.value
     losses = line_losses(books.solution, value)
     lost = [
-        sheet.put(f"L_{segment.name}", db, "dB", f"what {segment.name} loses there against midband",
-                  f"full network at {_hz(value)}")
+        sheet.put(f"L_{segment.name}", db, "dB", f"lost by {segment.name} there", f"full network, {_hz(value)}")
         for segment, db in zip(books.layout.segments, losses, strict=True)
     ]
     sheet.check(plus(lost), "10·log10(2)", "dB", "at this frequency the lines lose half the power, 3 dB:")
@@ -74,7 +73,7 @@ def _edge(books: Books, sheet: Sheet) -> Working:
 
 def _peaking(books: Books, sheet: Sheet) -> Working:
     hz, loss = _top(books)
-    size = sheet.put("h", exp(loss), "", "|H|/|gain| where it is greatest", f"full network at {_hz(hz)}")
+    size = sheet.put("h", exp(loss), "", "|H|/|gain| where it is greatest", f"full network, {_hz(hz)}")
     sheet.result(f"peaking_db = max(0, 20·log10({size}))")
     return sheet.done(FORMULA["overall.peaking_db"])
 
@@ -109,9 +108,9 @@ def _reference(books: Books, sheet: Sheet) -> Working:
     if seed != start:
         rise = exp(relative_at(books.net, start, books.solution.gains))
         sheet.put("h", rise, "", f"|H|/|gain| at {_hz(start)}, where the two estimates would have it",
-                  f"full network at {_hz(start)}")
-        i = sheet.put("i", round(40 * log10(seed)), "", "number of the frequency of 40 a decade at which |H| is nearest "
-                      "to |gain|", "full network")
+                  f"full network, {_hz(start)}")
+        i = sheet.put("i", round(40 * log10(seed)), "", "which of 40 frequencies a decade has |H| nearest to |gain|",
+                      "full network")
         sheet.result(f"f_s = 10^({i}/40)")
         return sheet.done(FORMULA["overall.reference_hz.moved"])
     if low and high:
@@ -131,7 +130,7 @@ def _at_reference(books: Books, sheet: Sheet) -> Working:
     gains = fold(books.net, 1j * tau * hz, "full").gains
     sizes = [
         sheet.put(f"A_{segment.name}", abs(gain), _gain_unit(books) if index == 0 else "",
-                  f"size of the gain of {segment.name} there", f"full network at {_hz(hz)}")
+                  f"|A| of {segment.name} there", f"full network, {_hz(hz)}")
         for index, (segment, gain) in enumerate(zip(books.layout.segments, gains, strict=True))
     ]
     sheet.result(f"H = {times(sizes)}")

@@ -1,0 +1,54 @@
+"""`polebook FILE`: the app on a terminal; the ledger as text where the output goes elsewhere."""
+
+from __future__ import annotations
+
+import argparse
+import os
+import sys
+from collections.abc import Mapping
+from dataclasses import replace
+
+from polebook.cli.command import Command
+from polebook.cli.out import Out
+
+PLAIN = "--plain"
+_ABOUT = """Open a chain file in the terminal app; where the output is no terminal, or TERM is dumb, print its ledger.
+A file that does not exist becomes a new chain."""
+
+
+def asked_for(argv: list[str]) -> bool:
+    """Whether these words ask for the app: a file, and at most `--plain`."""
+    return len([word for word in argv if word != PLAIN]) == 1
+
+
+def usable(environ: Mapping[str, str] = os.environ) -> bool:
+    """Whether the app can open: a person at both ends, and a terminal that can place its cursor."""
+    ends = (sys.__stdin__, sys.__stdout__)
+    if sys.stdout is not sys.__stdout__ or any(end is None or end.closed or not end.isatty() for end in ends):
+        return False
+    return environ.get("TERM", "dumb") not in ("", "dumb", "unknown")
+
+
+def _arguments(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("file", metavar="FILE", help="a chain file (TOML)")
+    parser.add_argument(PLAIN, action="store_true", help="nothing but ASCII on the screen")
+
+
+def _run(args: argparse.Namespace, out: Out) -> int:
+    if not usable():
+        from polebook.cli.main import load
+
+        show = load("show")
+        look = replace(out.look, encoding="ascii") if args.plain else out.look
+        return show.run(show.parser("show").parse_args(["--", args.file]), replace(out, look=look))
+    from polebook.tui import terminal  # deferred: a command that prints needs nothing of the app
+    from polebook.tui.control import opening
+
+    colour = not os.environ.get("NO_COLOR")
+    state = opening(args.file, args.plain or terminal.ascii_only(), colour)
+    from polebook.tui.app import run  # deferred: a file that can't be read is told without Textual, 200 ms sooner
+
+    return run(state)
+
+
+COMMAND = Command(_ABOUT, _arguments, _run)

@@ -1,0 +1,89 @@
+"""A user at the app without a terminal: keys by name, a clock that the test sets, the screen as text."""
+
+from __future__ import annotations
+
+import shutil
+from copy import copy
+from pathlib import Path
+
+from polebook.tui.control import Outcome, opening, paste, press
+from polebook.tui.draw.screen import screen
+from polebook.tui.lines import plain_text
+
+CHAINS = Path(__file__).parents[2] / "chains"
+LISTENER = CHAINS / "wire-break-listener.toml"
+SIX = CHAINS / "six-stage.toml"
+
+
+class Desk:
+    """`seconds` pass before each key; `outcome` is that of the last one."""
+
+    def __init__(self, path, seconds=5.0, plain=False):
+        self.state, self.outcome = opening(str(path), plain), Outcome.NONE
+        self.seconds, self.now = seconds, 100.0
+
+    def again(self):
+        """Another desk in the same state."""
+        return copy(self)
+
+    def press(self, *names):
+        """Keys: a character, or a name such as "enter"."""
+        for name in names:
+            self.now += self.seconds
+            character = name if len(name) == 1 else " " if name == "space" else None
+            self.state, self.outcome = press(self.state, name, character, self.now)
+        return self
+
+    def type(self, text):
+        """A text, key by key."""
+        return self.press(*text)
+
+    def paste(self, text):
+        self.now += self.seconds
+        self.state, self.outcome = paste(self.state, text, self.now)
+        return self
+
+    def go(self, path):
+        """To a key by its whole path, with the find list."""
+        assert self.state.view.overlay is None and self.state.view.field is None
+        self.press("f").type(path).press("enter")
+        assert self.key == path, (self.key, path)
+        return self
+
+    @property
+    def text(self):
+        return self.state.session.history.text
+
+    @property
+    def view(self):
+        return self.state.view
+
+    @property
+    def key(self):
+        """Path of the focused key."""
+        from polebook.tui.control.base import focused
+
+        return focused(self.state).path
+
+    @property
+    def line(self):
+        from polebook.tui.control.base import line
+
+        return line(self.state)
+
+    @property
+    def overlay(self):
+        return self.state.view.overlay
+
+    @property
+    def labels(self):
+        """The rows of the open list."""
+        return [choice.label for choice in self.overlay.choices]
+
+    def screen(self, columns=80, rows=24):
+        return plain_text(screen(self.state, columns, rows))
+
+
+def copied(folder, of=LISTENER, name="chain.toml"):
+    """A demo chain as a file that may be written."""
+    return Path(shutil.copy(of, folder / name))

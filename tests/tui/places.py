@@ -1,0 +1,51 @@
+"""Every place of the app where a key can be pressed: how it is reached from the opening, by its name."""
+
+from __future__ import annotations
+
+from tests.tui.desk import LISTENER, SIX, Desk
+
+PLACES = {
+    "sheet of a stage": (),
+    "sheet of the source": ("home",),
+    "sheet of the load": ("end",),
+    "ledger": ("tab",),
+    "ledger, lower end": ("tab", "b"),
+    "ledger in V/V": ("tab", "g"),
+    "ledger, last figure": ("tab", *["."] * 9),
+    "nodes": ("tab", "2"),
+    "nodes, sheet": ("pagedown",),
+    "nodes, a row": ("tab", "2", "down", "down"),
+    "nodes of the load": ("end", "tab", "2"),
+    "targets": ("t", "enter"),
+    "supply": ("t", "down", "enter"),
+    "preferred": ("t", "down", "down", "down", "enter"),
+    "card": ("t", "down", "down", "down", "down", "enter"),
+    "file": ("t", "end", "up", "enter"),
+    "pinned": ("p",),
+    "field": ("enter",),
+    "field refused": ("4", "V", "enter"),
+    "help": ("?",),
+    "working": ("=",),
+    "cautions": ("!",),
+    "find": ("f",),
+    "add": ("a",),
+    "kind": ("k",),
+    "card list": ("f", *"Q1.device", "enter", "enter"),
+    "flag list": ("f", *"Q1.left_out", "enter", "enter"),
+    "sheets": ("t",),
+    "take": ("t", "end", "enter"),
+    "note": ("n",),
+    "rename": ("r",),
+    "leave": ("+", "q"),
+}
+OVER_TEXT = frozenset({"field", "field refused", "find", "add", "kind", "card list", "flag list", "sheets", "take", "note",
+                       "rename"})
+"""Places where every character is text."""
+
+
+def at(place, of=LISTENER, plain=False):
+    """A desk at the place."""
+    return Desk(of, plain=plain).press(*PLACES[place])
+
+
+__all__ = ["LISTENER", "OVER_TEXT", "PLACES", "SIX", "at"]
