@@ -60,11 +60,13 @@ def main() -> None:
     for count in COUNTS:
         longer = repeated(chain, count)
         runs = 21 if count < 20 else 5
-        rows[count] = (milliseconds(longer, FIGURES, runs), milliseconds(longer, None, min(runs, 3 if count > 30 else 9)))
+        few = 3 if count > 30 else min(runs, 9)
+        rows[count] = (milliseconds(longer, FIGURES, runs), milliseconds(longer, None, few))
     print("stages  figures ms  to six      all ms  to six   upper edge, Hz")
     for count, (figures, everything) in rows.items():
         edge = ledger(repeated(chain, count)).upper_hz
-        print(f"{count:6} {figures:11.2f} {figures / rows[6][0]:7.2f} {everything:11.2f} {everything / rows[6][1]:7.2f}   {edge}")
+        ratios = figures / rows[6][0], everything / rows[6][1]
+        print(f"{count:6} {figures:11.2f} {ratios[0]:7.2f} {everything:11.2f} {ratios[1]:7.2f}   {edge}")
 
 
 if __name__ == "__main__":

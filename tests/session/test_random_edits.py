@@ -36,7 +36,7 @@ def stage_blocks(session: Session) -> dict[str, str]:
 
 
 @given(st.integers(0, 10**9))
-@settings(max_examples=25, deadline=None, derandomize=True)
+@settings(max_examples=12, deadline=None, derandomize=True)
 def test_any_edits_are_undone_to_the_byte_and_redone(seed: int) -> None:
     rng = random.Random(seed)
     session, now = begun(rng), 0.0
@@ -62,7 +62,7 @@ def test_any_edits_are_undone_to_the_byte_and_redone(seed: int) -> None:
 
 
 @given(st.integers(0, 10**9))
-@settings(max_examples=25, deadline=None, derandomize=True)
+@settings(max_examples=12, deadline=None, derandomize=True)
 def test_an_edit_of_one_stage_leaves_the_others_as_they_are(seed: int) -> None:
     rng = random.Random(seed)
     session = begun(rng)
@@ -78,7 +78,7 @@ def test_an_edit_of_one_stage_leaves_the_others_as_they_are(seed: int) -> None:
 
 
 @given(st.integers(0, 10**9))
-@settings(max_examples=15, deadline=None, derandomize=True)
+@settings(max_examples=6, deadline=None, derandomize=True)
 def test_a_new_name_and_the_old_one_again_change_nothing(seed: int) -> None:
     rng = random.Random(seed)
     session = begun(rng)
@@ -91,7 +91,7 @@ def test_a_new_name_and_the_old_one_again_change_nothing(seed: int) -> None:
 
 
 @given(st.integers(0, 10**9))
-@settings(max_examples=15, deadline=None, derandomize=True)
+@settings(max_examples=6, deadline=None, derandomize=True)
 def test_to_the_source_and_back_to_the_load_changes_nothing(seed: int) -> None:
     rng = random.Random(seed)
     session = begun(rng)

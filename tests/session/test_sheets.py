@@ -28,7 +28,7 @@ def test_the_sheets_stand_in_the_order_of_the_signal(opened: Session) -> None:
 
 def test_a_row_tells_what_the_file_has_and_what_counts_otherwise(opened: Session) -> None:
     q1 = rows(opened, "Q1")
-    assert q1["rc"].text == "2k2" and q1["rc"].path == "Q1.rc" and q1["rc"].unit == "Ω" and "collector" in q1["rc"].about
+    assert (q1["rc"].text, q1["rc"].path, q1["rc"].unit) == ("2k2", "Q1.rc", "Ω") and "collector" in q1["rc"].about
     assert q1["rf"].text == "" and q1["c_comp"].role == "high" and q1["couple"].role == "low"
     assert q1["name"].required and not q1["rc"].required
     assert q1["device"].choices == ("VF",) and "common-base" in q1["kind"].choices
@@ -45,7 +45,7 @@ def test_a_row_tells_what_the_file_has_and_what_counts_otherwise(opened: Session
 def test_it_tells_what_the_figures_lean_on(opened: Session) -> None:
     q2 = rows(opened, "Q2")
     assert q2["c_comp"].leans and q2["rc"].leans and q2["rf"].leans is None and q2["note"].leans is None
-    assert rows(opened, "device.VF")["beta"].leans and rows(opened, "device.VF")["p_max"].leans is None
+    assert rows(opened, "device.VF")["beta"].leans and rows(opened, "device.VF")["p_max"].leans is False
     assert rows(opened, "source")["resistance"].leans
     faulty = state.set_text(opened, opened.history.text.replace('"2k2"', '"2k2 V"'), 0.0)
     assert rows(faulty, "Q2")["c_comp"].leans is None and rows(faulty, "Q2")["rc"].text == "2k2 V"

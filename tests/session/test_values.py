@@ -129,8 +129,7 @@ def test_a_step_takes_the_next_value(opened: Session, path: str, direction: int,
     after = state.step(opened, path, direction, 0.0)
     assert value(after, path) == now and literal in after.history.text
     before = value(opened, path)
-    owner, _, key = path.rpartition(".")
-    assert now in label(after) and key in label(after)
+    assert now in label(after) and path.rpartition(".")[2] in label(after)
     assert not before or before in label(after)
     assert state.undo(after)[0].history.text == TEXT
 
@@ -160,7 +159,8 @@ def test_a_run_of_steps_is_one_step_of_undo(opened: Session) -> None:
     assert [step.edit.label for step in session.history.past] == ["rc of Q1: 4k7 to 62k"]
     other = state.step(session, "Q1.rb1", 1, 103.0)
     later = state.step(other, "Q1.rb1", 1, 105.0)
-    assert [step.edit.label for step in later.history.past[1:]] == ["rb1 of Q1: 100k to 110k", "rb1 of Q1: 110k to 120k"]
+    labels = [one.edit.label for one in later.history.past[1:]]
+    assert labels == ["rb1 of Q1: 100k to 110k", "rb1 of Q1: 110k to 120k"]
     assert state.undo(session)[0].history.text == TEXT
     assert not state.step(state.step(opened, "Q1.rc", 1, 0.0), "Q1.rc", -1, 0.5).history.past
 
@@ -284,19 +284,20 @@ def test_arms_come_and_go_with_their_parts(arms: str, feed: str) -> None:
     assert tomllib.loads(less.history.text)["stage"][1]["arms"] == [{"series_r": "50"}, {"series_l": "10u"}]
     assert label(less) == "arms.2.shunt_c of L1 taken out: was 22p, its arm with it"
     assert "# in" in less.history.text or "# in" not in arms
-    for path, typed in (("L1.arms.9.series_r", "1k"), ("L1.arms.3.series_r", ""), ("L1.arms.3.series_r", "1 F")):
+    for path, typed in (("L1.arms.9.series_r", "1k"), ("L1.arms.3.series_r", "1 F")):
         with pytest.raises(ProblemsFound):
             state.set_value(session, path, typed, 0.0)
+    assert state.set_value(session, "L1.arms.3.series_r", "", 0.0) is session
     only = state.set_value(less, "L1.arms.2.series_l", "", 2.0)
     with pytest.raises(ProblemsFound):  # a ladder without an arm is none
         state.set_value(only, "L1.arms.1.series_r", "", 3.0)
 
 
-def test_every_key_that_a_file_may_have_steps_or_says_why() -> None:
+def test_every_sort_of_key_steps_or_says_why() -> None:
     text = good.everything()
     session = state.new_session("x.toml", text)
-    rows = {row.key: row for sheet in state.sheets_of(session) for row in state.keys_of(session, sheet)
-            if "tolerance" not in row.key}
+    rows = {(row.dimension, row.sign, row.choices, bool(row.text)): row
+            for sheet in state.sheets_of(session) for row in state.keys_of(session, sheet)}
     stepped = refused = 0
     for row in rows.values():
         try:
@@ -308,7 +309,7 @@ def test_every_key_that_a_file_may_have_steps_or_says_why() -> None:
             continue
         stepped += 1
         assert edit and edit.inverse().apply(edit.apply(text)) == text
-    assert stepped > 100 > refused
+    assert stepped > 30 > refused
 
 
 def test_a_step_is_quick_enough_to_be_felt_at_once() -> None:

@@ -38,8 +38,8 @@ PLACES = {
     "rename": ("r",),
     "leave": ("+", "q"),
 }
-OVER_TEXT = frozenset({"field", "field refused", "find", "add", "kind", "card list", "flag list", "sheets", "take", "note",
-                       "rename"})
+OVER_TEXT = frozenset({"field", "field refused", "find", "add", "kind", "card list", "flag list", "sheets", "take",
+                       "note", "rename"})
 """Places where every character is text."""
 
 

@@ -6,7 +6,8 @@ from polebook.formula import Formula
 
 FORMULAS = (
     Formula("overall.unstable", "n_R = (N - turn/(pi/2))/2 > 0, turn that of arg det(G + j·2·pi·f·C) for f from 0+ to "
-                                "infinity, N the finite poles not at 0", "argument principle (any text on complex analysis)"),
+                                "infinity, N the finite poles not at 0",
+            "argument principle (any text on complex analysis)"),
     Formula("overall.lower_edge_hz", "first f below the band seed where |H(f)| = |gain|/sqrt 2", "definition"),
     Formula("overall.upper_edge_hz", "first f above the band seed where |H(f)| = |gain|/sqrt 2", "definition"),
     Formula("overall.peaking_db", "20·log10(max|H|/|gain|), not below 0", "definition"),

@@ -46,8 +46,10 @@ class Change:
         """Whether the two differ by more than rounding."""
         if self.before is None or self.after is None:
             return self.before is not self.after
+        if not (isfinite(self.before) and isfinite(self.after)):
+            return self.before != self.after
         size = max(abs(self.before), abs(self.after), 0.0 if self.way == "ratio" else 1.0)
-        return not (self.before == self.after or abs(self.after - self.before) <= SAME * size)
+        return abs(self.after - self.before) > SAME * size
 
 
 OVERALL: Mapping[str, tuple[Way, Callable[[Ledger], Number]]] = {

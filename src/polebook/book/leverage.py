@@ -127,7 +127,8 @@ def _through_bias(of: Solution, partial: dict[str, dict[int, float] | None], pat
         override[path] = stepped
     with np.errstate(all="ignore"):
         moved = np.array([np.broadcast_to(value, (count,)) for value in values(of.circuit, override)], dtype=complex)
-    relative = moved.imag / STEP / np.array(of.circuit.network.values, dtype=float)[:, None]
+        relative = moved.imag / STEP / np.array(of.circuit.network.values, dtype=float)[:, None]
+    relative = np.where(np.isfinite(relative), relative, 0.0)  # a device cut off has figures that nothing moves
     rows: dict[str, Any] = {}
     for name, each in partial.items():
         weights = None if each is None else np.array([each[index] for index in range(relative.shape[0])])

@@ -20,7 +20,8 @@ from polebook.text.splice import set_value, unset
 def arm(text: str, file: str, path: str, typed: str) -> Edit | None:
     """The edit for the key at `path` ("L1.arms.3.series_r") where an arm comes or goes with it, else None.
 
-    A key of the arm after the last one begins a new arm; to take the last part out of an arm takes the arm out.
+    A key of the arm after the last one begins a new arm; to take the last part out of an arm takes the arm out. To
+    take out what is not there is an edit that changes nothing.
     """
     name, _, rest = path.partition(".")
     words = rest.split(".")
@@ -36,8 +37,7 @@ def arm(text: str, file: str, path: str, typed: str) -> Edit | None:
     whole: Path = ("stage", at, "arms")
     if number == len(arms) + 1:
         if not typed:
-            raise PathRefused(f"{printable(name)} has no arm {number}", f"it has {len(arms)} of them",
-                              "type a value to begin one")
+            return Edit(())
         edit = set_value(text, whole, _longer(text, whole, len(arms), f"{{ {key} = {literal.literal(typed)} }}"), file)
         edit = replace(edit, label=f"{printable(name)}: arm {number} added, {key} {printable(typed)}")
     elif not typed and isinstance(arms[number - 1], dict) and set(arms[number - 1]) - {"role"} == {key}:
@@ -50,7 +50,7 @@ def arm(text: str, file: str, path: str, typed: str) -> Edit | None:
 
 
 def _gone(text: str, whole: Path, at: int, file: str) -> Edit:
-    """Takes item number `at` out of the list: with its line where it has one alone, so that no other loses a comment."""
+    """Takes item number `at` out of the list: with its line where it has that alone: no other loses a comment."""
     spans = scan(text)
     held, item = spans.value(whole), spans.value((*whole, at))
     if held and item and held.start < item.start:

@@ -19,7 +19,7 @@ GM_MEASURED = Formula("devices.gm_0", "gm_0 = mu/rp", "definition")
 MU = Formula("devices.mu", "mu = gm_0·rp", "definition")
 RO = Formula("parts.ro", "ro = mu/gm", CHILD_LANGMUIR)
 PERVEANCE = Formula("devices.P", "P = gm_ia/(1.5·gm_ia/gm_0)^1.5", CHILD_LANGMUIR)
-LAW = Formula("bias.triode", "ia = P·(vgk + vak/mu)^1.5", CHILD_LANGMUIR)
+LAW = Formula("bias.triode", "ia = P·max(0, vgk + vak/mu)^1.5", CHILD_LANGMUIR)
 FORMULAS = (GM, GM_THERE, GM_MEASURED, MU, RO, PERVEANCE, LAW)
 
 PARAMS = (

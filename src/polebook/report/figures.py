@@ -89,7 +89,10 @@ def target(name: str, value: float | None, gain_unit: str) -> str:
 
 
 def signed(delta: float | None, unit: str) -> str:
-    """A change in few cells, its sign written: "+0.31" (dB), "-11k" (Hz, Ω, F), "+3" (%); "" for one too small to show."""
+    """A change in few cells, its sign written: "+0.31" (dB), "-11k" (Hz, Ω, F), "+3" (%); "" for what would not show.
+
+    A plain number such as K has the unit "".
+    """
     if delta is None or not isfinite(delta):
         return ""
     size = abs(delta)

@@ -28,7 +28,7 @@ def set_value(session: Session, path: str, typed: str, now: float) -> Session:
     if path.endswith("note") and "\n" in typed:
         sheet = path.removesuffix("note").removesuffix(".") or "file"
         return apply(session, note_edits.set_note(text, file, sheet, typed)[0], now)
-    if ".arms." in path and (edit := ladder_edits.arm(text, file, path, typed)):
+    if ".arms." in path and (edit := ladder_edits.arm(text, file, path, typed)) is not None:
         return apply(session, edit, now)
     if not data:
         return apply(session, edits.set_value(text, file, path, typed)[0], now)

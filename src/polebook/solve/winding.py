@@ -28,7 +28,7 @@ def winding(s: Sweep) -> Winding:
     """Counts poles from a sweep that reaches well below and above all of them."""
     if not s.fine:
         return Winding(None, None)
-    turn = float(_turns(s).sum()) / (pi / 2)
+    turn = float(turns_of(s).sum()) / (pi / 2)
     total = s.sizes.sum(axis=0)
     below = float(total[1] - total[0]) / log(s.hz[1] / s.hz[0])
     above = float(total[-1] - total[-2]) / log(s.hz[-1] / s.hz[-2])
@@ -40,7 +40,7 @@ def winding(s: Sweep) -> Winding:
     return Winding(round(grown), round(right))
 
 
-def _turns(s: Sweep) -> Array:
+def turns_of(s: Sweep) -> Array:
     """Turn of arg D between neighbours, rad.
 
     Where a pivot still turns within a hair's breadth, a zero of it lies on the axis and a pole of another one with

@@ -92,6 +92,7 @@ class PolebookApp(App[int], inherit_bindings=False):
             loop.call_soon_threadsafe(self._catch_up)
 
         terminal.when_sent(self._driver, told)
+        self.app_resume_signal.subscribe(self, lambda _: self._anew())
 
     async def on_event(self, event: events.Event) -> None:
         """Every key and every paste goes to `control`, and none to a binding of Textual's."""
@@ -110,9 +111,13 @@ class PolebookApp(App[int], inherit_bindings=False):
         elif outcome is Outcome.SUSPEND:
             self.action_suspend_process()
         elif outcome is Outcome.REPAINT:
-            self.refresh(repaint=True, layout=True)
+            self._anew()
         if self._painting is None and outcome is not Outcome.QUIT:
             self._painting = asyncio.get_running_loop().call_later(_GATHER_S, self._paint)
+
+    def _anew(self) -> None:
+        """Everything painted once more: another program has written on the screen."""
+        self.refresh(repaint=True, layout=True)
 
     def _paint(self) -> None:
         """Paints, unless earlier output is still unsent: then once, when it has gone."""

@@ -7,38 +7,30 @@ line drives), and stands in the working beside the two voltages of the solution.
 from __future__ import annotations
 
 from polebook.book.workings.sheet import Books, Sheet, plus
-from polebook.formula import Formula
 from polebook.stages.base import slot_key
 from polebook.stages.registry import KINDS
 
 TEXTBOOK = "hybrid-pi and its relatives, solved for one stage (P. R. Gray, P. J. Hurst, S. H. Lewis and R. G. Meyer, " \
            "Analysis and Design of Analog Integrated Circuits, 5th ed., Wiley, ch. 3; from memory)"
-CLOSED = {
-    "inverting": Formula("lines.gain.inverting", "A = -m·R_L/(R_S + rpi + (1 + m)·R_E)", TEXTBOOK),
-    "inverting_fet": Formula("lines.gain.inverting", "A = -gm·R_L/(1 + gm·R_E + (R_L + R_E)/ro)", TEXTBOOK),
-    "follower": Formula("lines.gain.follower", "A = (1 + gm·rpi)·R_L/(R_S + rpi + (1 + gm·rpi)·R_L)", TEXTBOOK),
-    "follower_fet": Formula("lines.gain.follower", "A = gm·R_L/(1 + gm·R_L)", TEXTBOOK),
-    "common_control": Formula("lines.gain.common_control", "A = (gm·rpi/(rpi + R_S) + 1/ro)/(1/R_L + 1/ro)", TEXTBOOK),
-    "common_control_fet": Formula("lines.gain.common_control", "A = (gm + 1/ro)/(1/R_L + 1/ro)", TEXTBOOK),
-    "block": Formula("lines.gain.block", "A = G·R_L/(rout + R_L)", "voltage divider"),
-    "source": Formula("lines.gain.source", "A = R_in/(R_source + R_in)", "voltage divider"),
-}
+DIVIDER = "voltage divider"
 
 
-def closed_form(books: Books, sheet: Sheet, index: int, loaded: bool) -> Formula | None:
-    """Enters the steps of the closed form of line `index`, with or without what follows; None where it has none."""
+def closed_form(books: Books, sheet: Sheet, index: int, loaded: bool) -> str:
+    """Enters the steps of the closed form of line `index`, with or without what follows.
+
+    Returns where it is published, "" where the line has none.
+    """
     segment = books.layout.segments[index]
     if segment.name == "source":
-        return CLOSED["source"] if _source(books, sheet, loaded) else None
+        return DIVIDER if _source(books, sheet, loaded) else ""
     if segment.name == "load" or segment.after == segment.before:
-        return None
+        return ""
     topology = KINDS[segment.kind].topology
     if topology == "block":
-        return CLOSED["block"] if _block(books, sheet, index, loaded) else None
+        return DIVIDER if _block(books, sheet, index, loaded) else ""
     if topology not in ("inverting", "follower", "common_control"):
-        return None
-    device = _Device(books, sheet, index, loaded)
-    return CLOSED[topology if device.bipolar else f"{topology}_fet"] if device.write(topology) else None
+        return ""
+    return TEXTBOOK if _Device(books, sheet, index, loaded).write(topology) else ""
 
 
 def _source(books: Books, sheet: Sheet, loaded: bool) -> bool:

@@ -47,8 +47,8 @@ def _gain(books: Books, sheet: Sheet, index: int) -> Working:
     return sheet.stated(formula.text, _source(formula, closed_form(books, sheet, index, loaded=True)))
 
 
-def _source(formula: Formula, closed: Formula | None) -> str:
-    return f"{formula.source}; closed form: {closed.source}" if closed else formula.source
+def _source(formula: Formula, closed: str) -> str:
+    return f"{formula.source}; closed form: {closed}" if closed else formula.source
 
 
 def _one_node(books: Books, index: int) -> str:

@@ -20,6 +20,7 @@ from polebook.circuit.views import impedance
 from polebook.devices.registry import FAMILIES
 from polebook.formula import Formula, Number, Step, Working
 from polebook.quantity import DIMENSIONS
+from polebook.stages.ladder import ARM
 from polebook.stages.registry import KINDS
 from polebook.stages.stamper import GROUND
 
@@ -222,8 +223,6 @@ def _stage_key(books: Books, kind: str, device: str, rest: str, key: str) -> tup
     if rest.startswith(("poles.", "lower_poles.")):
         return "frequency", KINDS[kind].keys()[rest.partition(".")[0]].about
     if rest.startswith("arms."):
-        from polebook.stages.ladder import ARM
-
         return next((row.dimension, row.about) for row in ARM if row.key == key)
     row = KINDS[kind].keys(family)[key]
     return row.dimension, row.about

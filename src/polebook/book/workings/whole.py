@@ -15,7 +15,7 @@ from polebook.solve.edges import OUTWARD, first_seed
 from polebook.solve.fold import fold
 from polebook.solve.root import bracketed_maximum
 from polebook.solve.sweep import relative_at
-from polebook.solve.winding import _turns
+from polebook.solve.winding import turns_of
 
 BUMP = 0.5  # neper; what lies further below the top of a sweep can't rise to it between two of its points
 
@@ -48,7 +48,7 @@ def _gain_unit(books: Books) -> str:
 def _unstable(books: Books, sheet: Sheet) -> Working:
     solution = books.solution
     n = sheet.put("N", solution.winding.finite or 0, "", "finite poles that are not at 0", "growth of the determinant")
-    turned = float(_turns(solution.sweep).sum())
+    turned = float(turns_of(solution.sweep).sum())
     angle = sheet.put("turn", turned, "rad", "turn of arg det(G + j·2·pi·f·C) along the sweep",
                       f"full network, {_hz(solution.sweep.hz[0])} to {_hz(solution.sweep.hz[-1])}")
     sheet.step(f"n_R = ({n} - {angle}/(pi/2))/2", "", "poles with a positive real part, to the nearest whole number:")

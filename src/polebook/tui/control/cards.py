@@ -10,7 +10,7 @@ from polebook.session.state import take_card
 from polebook.text import files
 from polebook.tui.control import lists
 from polebook.tui.control.base import Done, at, attempt, done, reason
-from polebook.tui.control.typing import insert, typed
+from polebook.tui.control.typing import insert, one_line, typed
 from polebook.tui.view import Choice, Overlay, State
 
 
@@ -28,7 +28,7 @@ def press(state: State, overlay: Overlay, key: str, character: str | None) -> Do
 
 
 def paste(overlay: Overlay, text: str) -> Overlay:
-    return _with(overlay, *insert(overlay.typed, overlay.cursor, "".join(text.splitlines()[:1])))
+    return _with(overlay, *insert(overlay.typed, overlay.cursor, one_line(text)))
 
 
 def _with(overlay: Overlay, text: str, cursor: int) -> Overlay:

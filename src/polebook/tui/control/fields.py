@@ -9,7 +9,7 @@ from polebook.problem import ProblemsFound
 from polebook.session.state import KeyRow, keys_of, set_value, step
 from polebook.tui.control import lists, notes
 from polebook.tui.control.base import Done, at, changed, done, focused, reason, refuse, rows, say, sheet
-from polebook.tui.control.typing import insert, typed
+from polebook.tui.control.typing import insert, one_line, typed
 from polebook.tui.view import Field, State
 
 
@@ -52,8 +52,7 @@ def press(state: State, key: str, character: str | None, now: float) -> Done:
 
 def paste(state: State, field: Field, text: str) -> Done:
     """Pasted text in the open field."""
-    line = " ".join(text.split())
-    new, cursor = insert(field.typed, field.cursor, line)
+    new, cursor = insert(field.typed, field.cursor, one_line(text))
     return done(at(state, field=replace(field, typed=new, cursor=cursor, refusal="")))
 
 

@@ -9,7 +9,7 @@ from polebook.chain.kinds import listings
 from polebook.problem import printable
 from polebook.session.state import KeyRow, Session, keys_of, sheets_of
 from polebook.tui.control.base import Done, at, done
-from polebook.tui.control.typing import insert, typed
+from polebook.tui.control.typing import insert, one_line, typed
 from polebook.tui.view import Choice, Overlay, State
 
 Making = Callable[[], Session]
@@ -112,7 +112,7 @@ def typing(overlay: Overlay, full: Callable[[], Sequence[Choice]], key: str, cha
 
 
 def pasting(overlay: Overlay, full: Callable[[], Sequence[Choice]], text: str) -> Overlay:
-    return _narrow(overlay, full, *insert(overlay.typed, overlay.cursor, " ".join(text.split())))
+    return _narrow(overlay, full, *insert(overlay.typed, overlay.cursor, one_line(text)))
 
 
 def _narrow(overlay: Overlay, full: Callable[[], Sequence[Choice]], text: str, cursor: int) -> Overlay:

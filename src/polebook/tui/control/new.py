@@ -12,7 +12,7 @@ from polebook.session.state import new_session
 from polebook.tui import keys
 from polebook.tui.control import lists
 from polebook.tui.control.base import Done, Outcome, at, done, lines, reason, say, to_sheet
-from polebook.tui.control.typing import insert, typed
+from polebook.tui.control.typing import insert, one_line, typed
 from polebook.tui.view import Choice, Overlay, State
 
 _ROWS = (
@@ -82,7 +82,7 @@ def press(state: State, overlay: Overlay, key: str, character: str | None) -> Do
 def paste(overlay: Overlay, text: str) -> Overlay:
     if overlay.row == len(overlay.choices) - 1:
         return overlay
-    return _with(overlay, *insert(*_begun(overlay, True), " ".join(text.split())))
+    return _with(overlay, *insert(*_begun(overlay, True), one_line(text)))
 
 
 def _begun(overlay: Overlay, types: bool) -> tuple[str, int]:

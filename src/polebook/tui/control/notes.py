@@ -7,7 +7,7 @@ from dataclasses import replace
 from polebook.problem import ProblemsFound, printable
 from polebook.session.state import keys_of, set_note
 from polebook.tui.control.base import Done, at, changed, done, reason, sheet
-from polebook.tui.control.typing import insert, typed
+from polebook.tui.control.typing import insert, one_line, typed
 from polebook.tui.view import Overlay, State
 
 NEW_LINE = ("ctrl+j", "shift+enter", "alt+enter")
@@ -52,7 +52,7 @@ def press(state: State, overlay: Overlay, key: str, character: str | None, now: 
 
 def paste(overlay: Overlay, text: str) -> Overlay:
     """The note with pasted text put in, its line breaks kept."""
-    new, cursor = insert(overlay.typed, overlay.cursor, "\n".join(text.splitlines()))
+    new, cursor = insert(overlay.typed, overlay.cursor, "\n".join(map(one_line, text.splitlines())))
     return replace(overlay, typed=new, cursor=cursor, refusal="")
 
 

@@ -10,7 +10,7 @@ from polebook.session.state import add_stage, rename_stage, set_value
 from polebook.tui import keys
 from polebook.tui.control import cards, cautions, leaving, lists, new, notes, stages
 from polebook.tui.control.base import Done, at, attempt, done, reason, to_path
-from polebook.tui.control.typing import insert, typed
+from polebook.tui.control.typing import insert, one_line, typed
 from polebook.tui.view import Choice, Overlay, State
 
 READING = {"help": "?", "working": "="}  # texts, and the key that opened each closes it too
@@ -57,7 +57,7 @@ def paste(state: State, overlay: Overlay, text: str) -> Done:
     if purpose == "take":
         return done(at(state, overlay=cards.paste(overlay, text)))
     if purpose == "rename":
-        name, cursor = insert(overlay.typed, overlay.cursor, " ".join(text.split()))
+        name, cursor = insert(overlay.typed, overlay.cursor, one_line(text))
         return done(at(state, overlay=replace(overlay, typed=name, cursor=cursor, refusal="")))
     return done(at(state, overlay=lists.pasting(overlay, lambda: full(state, overlay), text)))
 

@@ -9,6 +9,7 @@ from polebook.session.state import pin, unpin
 from polebook.tui import keys
 from polebook.tui.control import cautions, fields, help, leaving, lists, moving, notes, overlays, stages, working
 from polebook.tui.control.base import Done, Outcome, Work, at, done, refuse, say
+from polebook.tui.control.typing import one_line
 from polebook.tui.view import Overlay, State
 
 VALUE_S = 1.0  # a letter this soon after a digit belongs to a value
@@ -46,7 +47,7 @@ def paste(state: State, text: str, now: float) -> Done:
         return overlays.paste(state, state.view.overlay, text)
     if state.view.field is not None:
         return fields.paste(state, state.view.field, text)
-    line = " ".join(text.split())
+    line = one_line(text)
     if state.view.focus == "sheet" and line and (fields.opens(state, line[0]) or line[0] in "+-"):
         return fields.start(state, line)
     return refuse(state, "there is no field to paste into", "Enter opens one")

@@ -28,6 +28,11 @@ def insert(text: str, cursor: int, added: str) -> tuple[str, int]:
     return text[:cursor] + added + text[cursor:], cursor + len(added)
 
 
+def one_line(text: str) -> str:
+    """Pasted text as a field can have it: one line, nothing that does not print."""
+    return "".join(char for char in " ".join(text.split()) if char.isprintable())
+
+
 def _word_before(text: str, cursor: int) -> int:
     return len(text[:cursor].rstrip().rpartition(" ")[0]) + 1 if " " in text[:cursor].rstrip() else 0
 

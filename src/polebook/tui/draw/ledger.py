@@ -1,4 +1,4 @@
-"""Page 1, the ledger: a line each for source, stages, load and the total; a bank of columns for each end of the band."""
+"""Page 1, the ledger: a line each for source, stages, load and total; a bank of columns for each end of the band."""
 
 from __future__ import annotations
 
@@ -58,8 +58,8 @@ def _columns(scene: Scene) -> list[Column]:
           if scene.view.upper else []),
         Column("node", 4, right=False, gap=2, drop=1),
         *([Column("pole", 6), *change] if scene.view.upper else low),
-        Column("lost", 6), *change,
-        Column(judged, max(len(judged), 5), right=False, drop=9, most=14),
+        Column("lost", 6),
+        Column(judged, max(len(judged), 5), right=False, drop=9, most=14), *change,
         Column("allot", 5, gap=tight, drop=8),
         Column("left", 6, drop=10 if pinned else 0),
         *([Column(least=moved.WIDTH, right=False, drop=10)] if pinned else []),
@@ -84,9 +84,9 @@ def _row(scene: Scene, at: int, most: float) -> Row:
         *(_figure(scene, _ratio(line.k), f"{line.name}.k", ("line", line.name, "k"), "") if scene.view.upper else ()),
         Cell(node, "dim"),
         *(_pole(scene, node, line.name) if scene.view.upper else _low_role(scene, at)),
-        *_figure(scene, _db(lost), f"{node}.lost_{end}_db", ("node", line.name, f"lost_{end}_db") if node else None,
-                 "dB", "bad" if scene.changes and lost is not None and lost > (allotted or 0.0) else ""),
-        NOTHING if lost is None or lost < LEAST_BAR_DB else Cell(bar=lost / most, style="bar"),
+        *_barred(_figure(scene, _db(lost), f"{node}.lost_{end}_db", ("node", line.name, f"lost_{end}_db") if node else
+                         None, "dB", "bad" if scene.changes and lost is not None and lost > (allotted or 0.0) else ""),
+                 NOTHING if lost is None or lost < LEAST_BAR_DB else Cell(bar=lost / most, style="bar")),
         Cell(_db(allotted), figure=f"{node}.allotted_{end}_db"),
         *_left(scene, lost, allotted, line.name if node else ""),
         *_figure(scene, "" if share is None else _whole(share), f"{line.name}.owns_{end}",
@@ -99,15 +99,15 @@ def _row(scene: Scene, at: int, most: float) -> Row:
 def _total(scene: Scene) -> Row:
     of, account, end = scene.figures, scene.account, scene.end
     shown = _db(decibels(of.solution.gain)) if scene.view.decibels else _plain_gain(scene, of.solution.gain, False)
-    gain = "gain_db"  # of the whole chain a change is told in dB alone
+    gain = ("overall", "", "gain_db") if scene.view.decibels else None  # a change of the whole is told in dB alone
     left = account.left_db
     edge = _figure(scene, _eng(scene.edge_hz), "", ("overall", "", f"{end}_edge_hz"), "Hz")
     return Row([
-        NOTHING, Cell("total"), *_figure(scene, shown, "", ("overall", "", gain) if scene.view.decibels else None, "dB"),
+        NOTHING, Cell("total"), *_figure(scene, shown, "", gain, "dB"),
         *([NOTHING] * len(_figure(scene, "", "", None, "")) if scene.view.upper else ()),
         NOTHING,
         *(edge if scene.view.upper else (Cell("edge", "dim"), edge[0])),
-        *_figure(scene, _db(account.total_db), "", ("overall", "", f"lost_{end}_db"), "dB"), NOTHING,
+        *_barred(_figure(scene, _db(account.total_db), "", ("overall", "", f"lost_{end}_db"), "dB"), NOTHING),
         Cell(_db(BUDGET_DB) if account.total_db is not None else ""),
         *_left(scene, account.total_db, None if left is None else BUDGET_DB, None),
         *_figure(scene, "100" if scene.owns_parts else "", "", None, "%"),
@@ -122,6 +122,11 @@ def _figure(scene: Scene, text: str, figure: str, change: tuple[str, str, str] |
     if scene.changes is None:
         return (cell,)
     return (cell, Cell(_change(scene, change, unit), "moved"))
+
+
+def _barred(figure: Sequence[Cell], bar: Cell) -> Sequence[Cell]:
+    """A figure, its bar, and its change."""
+    return (figure[0], bar, *figure[1:])
 
 
 def _change(scene: Scene, asked: tuple[str, str, str] | None, unit: str) -> str:

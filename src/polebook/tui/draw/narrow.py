@@ -51,7 +51,7 @@ class _Shares:
     def __init__(self, scene: Scene, columns: int, rows: int, told: int) -> None:
         want = len(scene.names) + ledger.FRAME_ROWS if scene.view.page == "ledger" else NODES_WANT
         self.page, self.sheet, self.verdict = LEAST_PAGE, 1, min(told, 1)
-        self.rule = self.blank = self.top = 0
+        self.rule = self.blank = self.top = 0  # a rule above the message; blanks above verdict and strip
         self.left = rows - LEAST_PAGE - self.sheet - self.verdict
         if scene.stale:
             self._to("verdict", min(told, 6))

@@ -50,6 +50,11 @@ def page(scene: Scene, room: int, rows: int, focus: str = "") -> list[Line]:
     return [*head, *between, *tables, *after, *foot]
 
 
+def rows_for_all(scene: Scene) -> int:
+    """Lines that the page takes with everything in sight."""
+    return 2 + 1 + 1 + max(len(ranked(scene)), len(_landed(scene))) + 1 + 1
+
+
 def node_lines(scene: Scene, room: int) -> list[Line]:
     """The selected line's node in two lines: its resistance, capacitance, pole and loss; what drives and loads it."""
     pen, name = scene.pen, scene.nodes[scene.at]
@@ -111,9 +116,9 @@ def _lands(scene: Scene, room: int, rows: int) -> list[Line]:
     body = []
     for one in shown:
         part = layout.parts[one.part]
-        unit_less = show.eng(net.values[one.part])
         body.append(Row([
-            NOTHING, Cell(pen.cut(pen.text(f"{part.stage}.{part.name}"), longest)), Cell(unit_less),
+            NOTHING, Cell(pen.cut(pen.text(f"{part.stage}.{part.name}"), longest)),
+            Cell(show.eng(net.values[one.part])),
             Cell("" if one.k is None else show.ratio(one.k)), Cell("" if one.farad is None else show.eng(one.farad)),
             Cell("" if one.ohm is None else show.eng(one.ohm)), Cell(f"{100 * one.tau / whole:.0f}" if whole else ""),
         ]))
@@ -154,8 +159,8 @@ def constants(scene: Scene, room: int, rows: int, focus: str) -> list[Line]:
         ], "select" if marked else ""))
     if not body:
         body = [Row([NOTHING, Cell("none", "dim"), *[NOTHING] * 5])]
-    columns = [Column(least=1, gap=0), Column("time constants", 14, right=False), Column("s", 5), Column("Hz", 5, drop=2),
-               Column("", 3, right=False, most=14), Column("%", 3, drop=3), Column("owns", 4)]
+    columns = [Column(least=1, gap=0), Column("time constants", 14, right=False), Column("s", 5),
+               Column("Hz", 5, drop=2), Column("", 3, right=False, most=14), Column("%", 3, drop=3), Column("owns", 4)]
     return grid(columns, body, room, pen, focus)
 
 

@@ -14,7 +14,7 @@ from polebook.tui.view import Overlay
 TYPED = frozenset(("find", "card", "cards", "rename", "take", "add", "kind", "choice", "sheets", "new"))
 """Purposes that have a line to type in beside their title."""
 MOST_LABEL = 34
-FORM_FIELD = 12
+LEAST_FIELD = 12
 _COLUMN = re.compile(r" *\S+(?: \S+)* {2,}(?=\S)")
 
 
@@ -45,7 +45,8 @@ def _title(pen: Pen, over: Overlay, room: int, place: str) -> Line:
     spans: list[Span] = [Span(f"{dash}{dash} ", "dim"), Span(title, "head"), Span(" ")]
     size = max(min(room - width(tuple(spans)) - 4, 50), 1)
     if over.purpose in TYPED:
-        spans += [*field_spans(pen, over.typed, over.cursor, min(max(cells(pen.text(over.typed)) + 1, 12), size)), Span(" ")]
+        wide = min(max(cells(pen.text(over.typed)) + 1, LEAST_FIELD), size)
+        spans += [*field_spans(pen, over.typed, over.cursor, wide), Span(" ")]
     tail = f" {place} {dash}{dash}" if place else ""
     spans.append(Span(dash * max(room - width(tuple(spans)) - len(tail), 0) + tail, "dim"))
     return tuple(spans)
@@ -110,9 +111,9 @@ def _form(pen: Pen, over: Overlay, room: int, rows: int) -> list[Line]:
             lines += [BLANK, (mark, Span(pen.text(choice.about), "focus" if chosen else "head"))]
             continue
         cursor = over.cursor if over.typed else len(choice.label)
-        text = pen.cut(pen.text(choice.label), FORM_FIELD)
-        shown = field_spans(pen, choice.label, cursor, FORM_FIELD) if chosen else [Span(left(text, FORM_FIELD), "field")]
-        about = pen.cut(pen.text(choice.about), max(room - names - FORM_FIELD - 8, 1))
+        shown = field_spans(pen, choice.label, cursor, LEAST_FIELD) if chosen else \
+            [Span(left(pen.cut(pen.text(choice.label), LEAST_FIELD), LEAST_FIELD), "field")]
+        about = pen.cut(pen.text(choice.about), max(room - names - LEAST_FIELD - 8, 1))
         lines.append((mark, Span(left(pen.text(choice.value), names)), Span("  "), *shown, Span(f"  {about}", "dim")))
     return lines[:rows]
 

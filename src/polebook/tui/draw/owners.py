@@ -12,6 +12,7 @@ from polebook.tui.draw.scene import Scene
 from polebook.tui.lines import Line, Span
 
 MOST_NAME = 18
+FAINT = 0.005  # a share that would be shown as 0
 
 
 def owners(scene: Scene, room: int, rows: int) -> list[Line]:
@@ -22,16 +23,19 @@ def owners(scene: Scene, room: int, rows: int) -> list[Line]:
         ("upper", of.upper_hz, of.owns_upper), ("lower", of.lower_hz, of.owns_lower))]
     tall = max(map(len, sides))
     left, right = ([*side, *[BLANK] * (tall - len(side))] for side in sides)
-    return [(Span(" "), *scene.pen.fitted(a, half), Span("  "), *scene.pen.fitted(b, half)) for a, b in zip(left, right, strict=True)]
+    fitted = scene.pen.fitted
+    return [(Span(" "), *fitted(a, half), Span("  "), *fitted(b, half)) for a, b in zip(left, right, strict=True)]
 
 
-def _ranking(scene: Scene, room: int, rows: int, name: str, hz: float | None, shares: Mapping[int, float]) -> list[Line]:
+def _ranking(scene: Scene, room: int, rows: int, name: str, hz: float | None,
+             shares: Mapping[int, float]) -> list[Line]:
     layout, net = scene.figures.solution.circuit.layout, scene.figures.solution.circuit.network
     if hz is None or not shares:
         return [(Span(f"the band has no {name} edge", "dim"),)]
     listed = sorted(shares.items(), key=lambda item: -item[1])
     size = max(rows - 2, 1)
-    shown = listed if len(listed) <= size else listed[:max(size - 1, 1)]
+    telling = sum(share >= FAINT for _, share in listed)
+    shown = listed if len(listed) <= min(size, telling) else listed[:max(min(size - 1, telling), 1)]
     most = listed[0][1]
     body = []
     for number, (k, share) in enumerate(shown):
@@ -48,5 +52,5 @@ def _ranking(scene: Scene, room: int, rows: int, name: str, hz: float | None, sh
                          Cell(show.about(rest).removesuffix(" %"))], "dim"))
     columns = [Column("part", 8, right=False, gap=0), Column("value", 7), Column("", 3, right=False, most=10),
                Column("%", 3)]
-    head: Line = (Span(f"{name} edge ", "dim"), Span(scene.pen.text(show.eng(hz, "Hz")), "head"), Span(" owned by", "dim"))
+    head: Line = (Span(f"{name} edge ", "dim"), Span(show.eng(hz, "Hz"), "head"), Span(" owned by", "dim"))
     return [head, *grid(columns, body, room, scene.pen)][:rows]

@@ -67,7 +67,7 @@ def _keys(scene: Scene, room: int, rows: int) -> list[Line]:
 
 
 def _foot(scene: Scene, room: int, rows: int) -> list[Line]:
-    """The focused key whole: what it does, its unit, what leans on it, what stands when it is absent, its next values."""
+    """The focused key whole: what it does, its unit, its default, whether figures lean on it, its next values."""
     if not scene.keys:
         return []
     row, pen = scene.keys[scene.key], scene.pen

@@ -10,8 +10,9 @@ from polebook.tui.lines import Line, Span, line, padded, width
 
 FILLS = "·○◔◑◕●"
 _ASCII_FILLS = ".:+xX#"
-_ASCII = {"▸": ">", "◂": "<", "─": "-", "│": "|", "┬": "-", "┴": "-", "├": "|", "┤": "|", "┼": "+", "▷": ">", "‹": "<", "›": ">", "▏": "|",
-          "←": "<-", "→": "->", "↑": "Up", "↓": "Down"} | dict(zip(FILLS, _ASCII_FILLS, strict=True))
+_ASCII = {"▸": ">", "◂": "<", "▷": ">", "‹": "<", "›": ">", "─": "-", "│": "|", "┬": "-", "┴": "-", "├": "|",
+          "┤": "|", "┼": "+", "←": "<-", "→": "->", "↑": "Up", "↓": "Down",
+          **dict(zip(FILLS, _ASCII_FILLS, strict=True))}
 _FULL = (1 / 8, 3 / 8, 5 / 8, 1.0)
 _CLAUSE = frozenset(",;:(")
 BLANK: Line = ()

@@ -1,4 +1,4 @@
-"""The sheet in a few lines: a head that tells where the line stands, and its keys in columns, the focused one marked."""
+"""The sheet in a few lines: a head that tells where the line stands, its keys in columns, the focused one marked."""
 
 from __future__ import annotations
 

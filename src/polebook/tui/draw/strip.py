@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import accumulate
 
 from polebook.quantity import letter
 from polebook.report.figures import about
@@ -14,6 +15,9 @@ from polebook.tui.lines import Line, Span
 HEIGHT = 3
 INDENT = 3
 LONGEST_NAME = 12
+UNKNOWN = "?"
+"""Mark of a node where nothing can be told of losses: the chain is unstable."""
+HIDDEN = 6  # cells for what tells how many lines are out of sight
 _SHORT = {
     "common-emitter": "CE", "common-base": "CB", "emitter-follower": "EF", "common-source": "CS", "common-gate": "CG",
     "source-follower": "SF", "common-cathode": "CC", "common-grid": "CG", "cathode-follower": "CF",
@@ -49,10 +53,19 @@ def strip(scene: Scene, room: int) -> list[Line]:
     least = [block.width(1, 1) for block in blocks]
     first, last = 0, len(blocks)
     if sum(least) + INDENT > room:
-        size = max((room - INDENT - 6) // max(least), 1)
+        size = _seen(least, room - INDENT - HIDDEN)
         first = window(len(blocks), size, scene.at)
         last = min(first + size, len(blocks))
     return _drawn(scene, blocks[first:last], (first, len(blocks) - last), room)
+
+
+def _seen(least: list[int], room: int) -> int:
+    """How many blocks in a row fit, wherever the row begins."""
+    sums = [0, *accumulate(least)]
+    for size in range(len(least), 1, -1):
+        if max(sums[first + size] - sums[first] for first in range(len(least) - size + 1)) <= room:
+            return size
+    return 1
 
 
 def _block(scene: Scene, at: int) -> _Block:
@@ -66,7 +79,8 @@ def _block(scene: Scene, at: int) -> _Block:
     if at == 0:
         shown = "EMF" if scene.chain.source_kind == "voltage" else "I"
     node = scene.own_node(at)
-    mark = pen.fill(scene.account.lost.get(node), scene.account.allotted.get(node)) if node else ""
+    mark = "" if not node else UNKNOWN if not scene.figures.judged else pen.fill(
+        scene.account.lost.get(node), scene.account.allotted.get(node))
     if not last:
         stage = scene.chain.stages[at - 1] if at else None
         if stage is not None and stage.left_out:
@@ -85,53 +99,52 @@ def _kind(scene: Scene, at: int) -> str:
     return " ".join(letter(value, key) for value, key in values if value)
 
 
+class _Rows:
+    """Three lines that grow to the right together."""
+
+    def __init__(self) -> None:
+        self.spans: tuple[list[Span], list[Span], list[Span]] = ([], [], [])
+        self.widths = [0, 0, 0]
+
+    def put(self, row: int, text: str, style: str = "", at: int = 0) -> None:
+        """Text on a row, after blanks up to column `at`."""
+        text = " " * max(at - self.widths[row], 0) + text
+        self.spans[row].append(Span(text, style))
+        self.widths[row] += cells(text)
+
+
 def _drawn(scene: Scene, blocks: list[_Block], hidden: tuple[int, int], room: int) -> list[Line]:
-    pen = scene.pen
-    lead = [f"{pen.sign('‹')}{hidden[0]} " if hidden[0] else "", f" {pen.sign('›')}{hidden[1]}" if hidden[1] else ""]
-    over = room - INDENT - sum(map(cells, lead)) - 1
-    before, after = _dashes(blocks, over)
-    rows: list[list[Span]] = [[], [], []]
-    widths = [0, 0, 0]
-
-    def put(row: int, text: str, style: str = "") -> None:
-        rows[row].append(Span(text, style))
-        widths[row] += cells(text)
-
-    def fill(row: int, to: int) -> None:
-        if to > widths[row]:
-            put(row, " " * (to - widths[row]))
-
-    dash = pen.sign("─")
-    start = max(INDENT, cells(lead[0]) + 1)
-    fill(0, start - cells(lead[0]))
-    put(0, lead[0], "dim")
-    for number, block in enumerate(blocks):
+    pen, rows = scene.pen, _Rows()
+    before, after = _dashes(blocks, room - INDENT - HIDDEN * any(hidden) - 1)
+    dash, full = pen.sign("─"), pen.sign("●")
+    if hidden[0]:
+        rows.put(0, f" {pen.sign('‹')}{hidden[0]}", "dim")
+    start = max(INDENT, rows.widths[0] + 1)
+    for block in blocks:
         last = block.at == len(scene.names) - 1
-        chosen = block.at == scene.at
+        mark_style = "bad" if block.mark == full else ""
         if last and block.mark:  # a load behind its own capacitor has a node of its own
-            put(0, f"{block.mark} ", "bad" if block.mark == pen.sign("●") else "")
-        base = widths[0]
-        style = "select" if chosen else "dim" if block.name.startswith("(") else "head"
-        put(0, block.name, style)
-        for row, text in ((1, block.kind), (2, block.share)):
-            fill(row, base)
-            put(row, text, "dim" if row == 1 else "head" if block.at == scene.greatest else "")
+            rows.put(0, block.mark, mark_style, start)
+            start += 2
+        style = "select" if block.at == scene.at else "dim" if block.name.startswith("(") else "head"
+        rows.put(0, " " * (start - rows.widths[0]))
+        rows.put(0, block.name, style)
+        rows.put(1, block.kind, "dim", start)
+        rows.put(2, block.share, "head" if block.at == scene.greatest else "", start)
         if last:
             break
-        head = base + block.head(before)
-        put(0, " " + dash * (head - widths[0] - 1), "dim")
+        mark = start + block.head(before)
+        rows.put(0, " " + dash * (mark - rows.widths[0] - 1), "dim")
         if block.mark:
-            put(0, block.mark, "bad" if block.mark == pen.sign("●") else "")
-            fill(1, head)
-            put(1, block.node, "dim")
-            put(0, dash * after, "dim")
-        following = scene.names[-1] if number + 1 == len(blocks) else blocks[number + 1].name
-        into_load = block.at == len(scene.names) - 2
-        if number + 1 < len(blocks):
-            put(0, f"{dash if into_load else pen.sign('▷')} ", "dim")
-        elif following:
-            put(0, lead[1], "dim")
-    return [tuple(row) for row in rows]
+            rows.put(0, block.mark, mark_style)
+            rows.put(0, dash * after, "dim")
+            rows.put(1, block.node, "dim", mark)
+        if block is not blocks[-1]:
+            rows.put(0, dash if block.at == len(scene.names) - 2 else pen.sign("▷"), "dim")
+        start = rows.widths[0] + 1
+    if hidden[1]:
+        rows.put(0, f" {pen.sign('›')}{hidden[1]}", "dim")
+    return [tuple(row) for row in rows.spans]
 
 
 def _dashes(blocks: list[_Block], room: int) -> tuple[int, int]:

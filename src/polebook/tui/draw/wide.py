@@ -16,6 +16,7 @@ from polebook.tui.draw.verdict import verdict
 from polebook.tui.lines import Line, Span
 
 LEAST_LEFT, MOST_LEFT, PANEL = 80, 100, 53
+LEAST_OWNERS = 9
 TEXTS = frozenset(("help", "working", "cautions"))
 """Purposes that are read at the left, in the width that they were written for."""
 
@@ -86,8 +87,7 @@ def _left(scene: Scene, room: int, rows: int) -> list[Line]:
         lines += ledger.page(scene, room, rest)
         rest = rows - len(lines) - 1
         return [*lines, BLANK, *owners(scene, room, rest)] if rest >= 5 else lines
-    taken = owners(scene, room, min(rest, max(rest - 8, 8)))
-    lines += taken
+    lines += owners(scene, room, min(rest, max(rest - nodes.rows_for_all(scene) - 1, LEAST_OWNERS)))
     rest = rows - len(lines) - 1
     if rest >= 5:
         lines += [BLANK, *nodes.page(scene, room, rest)]

@@ -1,0 +1,163 @@
+"""Whole screens as text, at 80 by 24 and at 140 by 45: what the goldens of `screens/` hold."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable, Iterator
+from dataclasses import replace
+from functools import cache
+from pathlib import Path
+
+from polebook.chain.kinds import listings
+from polebook.problem import Problem
+from polebook.session import state as sessions
+from polebook.session.state import Session
+from polebook.tui.draw.screen import screen
+from polebook.tui.lines import plain_text
+from polebook.tui.view import Choice, Field, Overlay, State, View
+from tests.book.verdict_cases import CASES as CHAINS
+from tests.helpers import DEMOS
+
+FOLDER = Path(__file__).parent / "screens"
+SIZES = ((80, 24), (140, 45))
+LISTENER, SIX, DIODE = "wire-break-listener", "six-stage", "photodiode-front"
+
+
+def texts() -> Iterator[tuple[str, str]]:
+    """File name -> text of every golden screen."""
+    for name, make in CASES.items():
+        for columns, rows in SIZES:
+            yield f"{name}.{columns}x{rows}.txt", plain_text(screen(make(), columns, rows))
+    for columns, rows in ((60, 16), (100, 30), (59, 16)):
+        state = CASES["ledger"]()
+        yield f"ledger.{columns}x{rows}.txt", plain_text(screen(state, columns, rows))
+
+
+def opened(name: str) -> Session:
+    """A demo chain, open; by its own name wherever the tests run."""
+    return replace(sessions.open_file(str(DEMOS / f"{name}.toml")), path=f"chains/{name}.toml")
+
+
+def key(session: Session, path: str, **view: object) -> View:
+    """A user at the key of that path."""
+    sheet, _, word = path.rpartition(".")
+    words = [row.key for row in sessions.keys_of(session, sheet)]
+    sheets = sessions.sheets_of(session)
+    line = sheets.index(sheet) if sheets.index(sheet) <= sheets.index("load") else 1
+    return View(line=line, sheet="" if line == sheets.index(sheet) else sheet, key=words.index(word), **view)
+
+
+def at(name: str, path: str, **view: object) -> State:
+    session = opened(name)
+    return State(session, key(session, path, **view))
+
+
+def pinned(name: str, path: str, typed: str, **view: object) -> State:
+    """A chain pinned, then changed in one key."""
+    session = sessions.set_value(sessions.pin(opened(name)), path, typed, 0.0)
+    return State(session, key(session, path, **view))
+
+
+def field(path: str, typed: str, refusal: str = "") -> State:
+    session = opened(LISTENER)
+    return State(session, key(session, path, field=Field(path, typed, len(typed), refusal)))
+
+
+def over(overlay: Overlay, name: str = LISTENER) -> State:
+    return at(name, "Q1.rc", overlay=overlay)
+
+
+def text(words: str, **view: object) -> State:
+    return State(sessions.new_session("chains/some.toml", words), View(**view))
+
+
+def spoilt() -> State:
+    """The listener with two faults typed into its text."""
+    session = opened(LISTENER)
+    wrong = re.sub(r"(?m)^couple( +)= \S+", r'couple\1= "4 kohm"', session.history.text, count=1)
+    wrong = wrong.replace("c_comp ", "ccomp ")
+    return State(sessions.set_text(session, wrong, 0.0), View(line=2))
+
+
+def read_only() -> State:
+    session = sessions.set_value(opened(LISTENER), "Q1.stray", "3p", 0.0)
+    session = replace(session, read_only="its permissions do not allow it to be written")
+    return State(session, View(line=1, message="read-only: its permissions do not allow it to be written", bad=True))
+
+
+@cache
+def many() -> State:
+    """The listener with forty stages in a row."""
+    session = opened(LISTENER)
+    for _ in range(37):
+        session = sessions.copy_stage(session, "Q1", 0.0)
+    return State(replace(session, path="chains/many.toml"), View(line=20))
+
+
+def plain() -> State:
+    return replace(pinned(SIX, "Q5.rc", "3k3"), plain=True)
+
+
+def left_out() -> State:
+    session = sessions.toggle_left_out(opened(SIX), "Q2", 0.0)
+    return State(session, key(session, "Q2.left_out"))
+
+
+def unlucky() -> State:
+    """A chain whose text is sound, and whose ledger can't be had."""
+    session = opened(LISTENER)
+    problem = Problem(None, "nothing holds node in of Q2 at midband", "no conductance leads from it to anywhere",
+                      "give it a resistor")
+    return State(replace(session, ledger=None, problems=(problem,)), View(line=2))
+
+
+KINDS = tuple(Choice(one.name, one.name, one.about) for one in listings() if one.group == "stage")
+FOUND = tuple(Choice(f"{name}.rb{k}", f"{name}.rb{k} = {value}", f"bias resistor {k}")
+              for name in ("Q1", "Q2") for k, value in ((1, "56k"), (2, "12k")))
+HELP = tuple(line for k in range(1, 12) for line in (
+    f"Words of part {k}", "  w          write the file; a symbolic link is followed, and the mode of the file kept as "
+    "it was", ""))
+REFUSED = ('"4 kohm" is not a capacitance: ce of stage Q2 is a capacitance, so its unit is the farad; write it in '
+           'farads: ce = "100u"')
+UNSAVED = (Choice("write", "write the file and leave"), Choice("lose", "leave without writing"), Choice("stay", "stay"))
+START = (Choice("rail", "12", "positive rail in V"), Choice("source", "600R", "resistance of the source"),
+         Choice("make", "", "make the chain"))
+
+CASES: dict[str, Callable[[], State]] = {
+    "ledger": lambda: at(LISTENER, "Q1.rc"),
+    "ledger-six": lambda: at(SIX, "Q5.re"),
+    "ledger-lower": lambda: at(SIX, "Q5.re", upper=False),
+    "ledger-ratios": lambda: at(DIODE, "U2.rf", decibels=False, focus="page", figure=1),
+    "ledger-pinned": lambda: pinned(SIX, "Q5.rc", "3k3"),
+    "ledger-pinned-lower": lambda: pinned(
+        LISTENER, "Q2.couple", "6n8", upper=False, message="couple of Q2: 3n3 to 6n8"),
+    "ledger-many": many,
+    "ledger-left-out": left_out,
+    "ledger-plain": plain,
+    "nodes": lambda: at(LISTENER, "Q1.rc", page="nodes"),
+    "nodes-row": lambda: at(SIX, "Q4.couple", page="nodes", focus="page", row=3),
+    "nodes-lower": lambda: at(LISTENER, "Q1.rc", page="nodes", upper=False),
+    "nodes-held": lambda: at(DIODE, "source.resistance", page="nodes"),
+    "field": lambda: field("Q2.ce", "4u7"),
+    "field-refused": lambda: field("Q2.ce", "4 kohm", REFUSED),
+    "sheet-target": lambda: at(LISTENER, "target.upper"),
+    "sheet-card": lambda: at(LISTENER, "device.VF.ft"),
+    "sheet-load": lambda: at(LISTENER, "load.capacitance"),
+    "read-only": read_only,
+    "stale": spoilt,
+    "no-ledger": unlucky,
+    "faults": lambda: text(spoilt().session.history.text, line=2),
+    "unstable": lambda: text(CHAINS["unstable, an op-amp that drives a capacitance"]),
+    "no-midband": lambda: text(CHAINS["no clean midband, the corners cross"]),
+    "no-targets": lambda: text(CHAINS["no targets, nothing limits the band"]),
+    "list": lambda: over(Overlay("add", "add a stage after Q1", KINDS, row=4)),
+    "find": lambda: over(Overlay("find", "find a key", FOUND, typed="rb", cursor=2, row=1)),
+    "help": lambda: over(Overlay("help", "keys and words", text=HELP, row=5)),
+    "leave": lambda: over(Overlay("leave", "2 edits not written yet", UNSAVED)),
+    "note": lambda: over(Overlay("note", "note of Q1", typed="The first step.\n" + "Against rumble " * 9, cursor=20)),
+    "cautions": lambda: over(Overlay("cautions", "2 cautions", (
+        Choice("", "the sum of time constants comes to 1.5 times the exact lower edge", "go by the exact figure"),
+        Choice("Q1", "no d.c. path to the base of Q1", "line 17: it hangs on capacitors alone; give rb1 and rb2")))),
+    "new": lambda: text("", overlay=Overlay("start", "new chain: source > common-emitter > load", START, typed="68",
+                                            cursor=2, row=1)),
+}
