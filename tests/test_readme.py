@@ -2,6 +2,8 @@
 
 import re
 import shutil
+import subprocess
+import sys
 
 import pytest
 
@@ -14,8 +16,25 @@ DEVELOPERS = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
 TYPED = [re.split(r" {2,}", line.strip())[0] for line in README.splitlines() if re.match(r" {4}\S", line)]
 
 
+def _fenced(language):
+    return [text for kind, text in re.findall(r"^```(\w*)\n(.*?)^```$", README, re.DOTALL | re.MULTILINE)
+            if kind == language]
+
+
+def test_the_screen_is_what_the_app_draws():
+    (screen,) = _fenced("text")
+    assert screen == (ROOT / "tests" / "golden" / "screens" / "ledger.80x24.txt").read_text(encoding="utf-8")
+
+
+def test_the_python_example_runs():
+    (example,) = _fenced("python")
+    done = subprocess.run([sys.executable, "-c", example], cwd=ROOT, capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stderr
+    assert "Q2.c_comp owns 71 %" in done.stdout and "Q1" in done.stdout
+
+
 def test_the_excerpt_is_what_the_first_command_prints(capsys):
-    (excerpt,) = re.findall(r"```\n(.*?)```", README, re.DOTALL)
+    (excerpt,) = _fenced("")
     assert "bash .ci/polebook show chains/wire-break-listener.toml" in TYPED
     assert main(["show", str(LISTENER)]) == 0
     printed = capsys.readouterr().out

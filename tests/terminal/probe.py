@@ -31,7 +31,7 @@ BYTES = {
 _ANSWERS = ((b"\x1b[?2026$p", b"\x1b[?2026;2$y"), (b"\x1b[?2048$p", b"\x1b[?2048;0$y"))
 _FROM_OUTSIDE = ("COLORTERM", "NO_COLOR", "FORCE_COLOR", "TERM_PROGRAM", "TMUX", "LC_ALL", "LC_CTYPE", "COLUMNS",
                  "LINES", "PYTHONIOENCODING", "PYTHONUTF8")
-_KITTY = re.compile(rb"\x1b\[[<>][0-9]*u")  # the emulator would print a part of it
+_KEYBOARD = re.compile(rb"\x1b\[[<>][0-9]*u")  # the emulator would print a part of it
 # takes the pseudo-terminal for its own before the program begins, so that it is hung up with it
 _START = "import fcntl, os, sys, termios; fcntl.ioctl(1, termios.TIOCSCTTY, 0); os.execvp(sys.argv[1], sys.argv[1:])"
 
@@ -109,7 +109,7 @@ class Terminal:
                 raise
             return b""
         self.log += data
-        self._stream.feed(_KITTY.sub(b"", data))
+        self._stream.feed(_KEYBOARD.sub(b"", data))
         for asked, answer in _ANSWERS:
             for _ in range(data.count(asked)):
                 os.write(self.fd, answer)

@@ -34,7 +34,7 @@ def test_keys_of_the_sheet_from_the_first_to_the_last(desk):
     seen = [desk.key] + [desk.press("down").key for _ in range(60)]
     assert seen[-1] == seen[-2]
     assert {"Q1.rc", "Q1.tolerance.rc"} & set(seen)
-    assert desk.press(*["up"] * 80).key == "Q1.name"
+    assert desk.press(*["up"] * 80).key == "Q1.couple"
 
 
 def test_pages_by_digit_only_with_the_page_focused(desk):

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import gc
 import os
 import sys
 from collections.abc import Mapping
@@ -41,6 +42,7 @@ def _run(args: argparse.Namespace, out: Out) -> int:
         show = load("show")
         look = replace(out.look, encoding="ascii") if args.plain else out.look
         return show.run(show.parser("show").parse_args(["--", args.file]), replace(out, look=look))
+    gc.disable()  # starting makes many objects and no garbage: a tenth sooner on the screen; `run` collects again
     from polebook.tui import terminal  # deferred: a command that prints needs nothing of the app
     from polebook.tui.control import opening
 

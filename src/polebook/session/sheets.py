@@ -123,7 +123,7 @@ def _stage(data: Mapping[str, Any], name: str) -> _Asked:
     stage = stages(data)[at]
     kind = KINDS.get(stage["kind"]) if isinstance(stage.get("kind"), str) else None
     family = family_of(stage, data)
-    params = kind.keys(family).values() if kind else COMMON
+    params = sorted(kind.keys(family).values() if kind else COMMON, key=_rank)
     own = {param.key for param in params}
     for param in params:
         if param.key == "arms":
@@ -138,6 +138,19 @@ def _stage(data: Mapping[str, Any], name: str) -> _Asked:
             if key in stage or key.startswith("arms."):
                 share = Param(f"tolerance.{key}", "share", f"tolerance of {key}", sign="nonnegative")
                 yield f"{name}.tolerance.{key}", share, ()
+
+
+def _rank(param: Param) -> int:
+    """Order of a stage's sheet: what is soldered comes first, then the rest of its numbers, words last."""
+    if param.key == "couple":
+        return 0
+    if param.key in ("stray", "c_load", "allot"):
+        return 3
+    if param.dimension in ("resistance", "capacitance", "inductance", "arms"):
+        return 1
+    if param.dimension in ("text", "choice", "flag", "keys", "table"):
+        return 4 + (param.key in {common.key for common in COMMON})
+    return 2
 
 
 def choices_at(data: Mapping[str, Any], path: str) -> tuple[str, ...]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+import gc
 import time
 from collections.abc import Callable
 
@@ -80,6 +81,12 @@ class PolebookApp(App[int], inherit_bindings=False):
         self.face = Face(lambda: self.state)
         self._painting: asyncio.TimerHandle | None = None
         self._late = False  # the screen is behind the state, and earlier output is still unsent
+
+    def on_ready(self) -> None:
+        """The first paint is done: what was made for it stays, and garbage is collected from here on."""
+        if not gc.isenabled():
+            gc.freeze()
+            gc.enable()
 
     def get_default_screen(self) -> Sight:
         return Sight(self.face)

@@ -162,7 +162,8 @@ def moved_words(before: Session, after: Session) -> str:
         if change is not None and change.moved and change.before is not None and change.after is not None:
             text = signed(change.after - change.before, unit)
             if text:
-                words.append(f"{name} {text} {unit}" if unit == "dB" else f"{name} {text}{unit}")
+                prefix = text[-1] if text[-1].isalpha() else ""
+                words.append(f"{name} {text.removesuffix(prefix)} {prefix}{unit}")
     return ", ".join(words)
 
 

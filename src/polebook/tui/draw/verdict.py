@@ -14,7 +14,7 @@ from polebook.tui.lines import Line, Span
 _REASON = re.compile(r" {4}(?:why|fix) {2}")
 _EXCERPT = re.compile(r" *\d* \| ")
 _SENTENCE = re.compile(r"(?<=\.) (?=[A-Zn])")
-_UNIT = re.compile(r"(?<=\d) (?=(?:[fpnumkMGT]?(?:Hz|F|H|Ω|V|A|s|S|W)|dBΩ?)\b|%)")
+_UNIT = re.compile(r"(?<=\(K) (?=-?\d)|(?<=\d) (?=(?:[fpnumkMGT]?(?:Hz|F|H|Ω|V|A|s|S|W)|dBΩ?)\b|%)")
 
 
 def verdict(scene: Scene, room: int, rows: int = 99) -> list[Line]:
