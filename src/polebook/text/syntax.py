@@ -14,7 +14,7 @@ _KEY = r"""[A-Za-z0-9_-]+|"[^"\n]*"|'[^'\n]*'"""
 _LINE = re.compile(rf"\s*((?:{_KEY})(?:\s*\.\s*(?:{_KEY}))*)\s*=\s*(.*)")
 _WORDS = re.compile(r"\s*(\S+(?:[ \t]+[^\s=]+)+)\s*=")
 _DATE = re.compile(r"\d{4}-\d\d?-\d\d?")
-_DIGITS = re.compile(r"[0-9_]++")
+_DIGITS = re.compile(r"[0-9_]+")
 _REAL_DATE = "a date is year-month-day of a day that exists"
 _QUOTED = "a text, and a number with a prefix or a unit, stands in quotes"
 
