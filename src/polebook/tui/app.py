@@ -143,4 +143,5 @@ def run(state: State) -> int:
     """Runs the app on the terminal until its user leaves. Returns the exit code."""
     app = PolebookApp(state)
     app.run(mouse=False)
+    terminal.let_go()
     return app.return_code or 0

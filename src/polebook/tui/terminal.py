@@ -69,6 +69,20 @@ def when_sent(driver: object, told: Callable[[], None]) -> None:
         driver.__dict__["told"] = told
 
 
+def let_go() -> None:
+    """Ends the output to a terminal that has gone, so that leaving does not stumble over what it can't flush."""
+    out = sys.__stdout__
+    if out is None:
+        return
+    try:
+        out.flush()
+    except OSError:
+        with suppress(OSError, ValueError):
+            nowhere = os.open(os.devnull, os.O_WRONLY)
+            os.dup2(nowhere, out.fileno())
+            os.close(nowhere)
+
+
 class Writer(threading.Thread):
     """Writes in the background, never holds up who writes, and knows whether all of it has gone out."""
 
@@ -111,6 +125,8 @@ class Writer(threading.Thread):
                 self._open -= 1
             if not self._open:
                 self._told()
+        with suppress(OSError, ValueError):  # the last text may have gone in with the end already behind it
+            self._file.flush()
 
     def stop(self) -> None:
         self._queue.put(None)
