@@ -5,12 +5,11 @@ from __future__ import annotations
 from dataclasses import dataclass
 from math import pi, sqrt
 
+from polebook.book.lumped import Lumped
 from polebook.book.solution import Solution
 from polebook.circuit.layout import Layout
-from polebook.circuit.views import impedance
 from polebook.formula import Formula
 from polebook.solve.root import bracketed_root
-from polebook.stages.stamper import GROUND
 
 SHRINKAGE = "product of buffered one-pole stages (P. R. Gray, P. J. Hurst, S. H. Lewis and R. G. Meyer, Analysis and " \
             "Design of Analog Integrated Circuits, 5th ed., Wiley, eq. 7.128 for two; from memory)"
@@ -24,7 +23,6 @@ FORMULAS = (
     Formula("overall.shrinkage", "exact upper edge/lowest site pole", "definition"),
 )
 IDEAL_OHM = 1e-9
-FAINT = 1e-12
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,8 +75,8 @@ def sites(of: Solution) -> list[Site]:
     layout = of.circuit.layout
     names, between = site_names(layout), interstage_names(layout)
     owner = {between[node]: layout.segments[index].name for index, node in reversed(list(enumerate(layout.after)))}
-    lumped = _Lumped(of, names)
-    taus, left_out = lumped.taus()
+    lumped = Lumped(of, names)
+    taus, left_out = _taus(lumped)
     result = [Site(name, owner[name], True, lumped.ohm(node), taus.get(name, 0.0), tuple(left_out.get(name, ())))
               for node, name in between.items()]
     storages = {storage.node for segment in layout.segments for storage in segment.storages}
@@ -92,82 +90,23 @@ def sites(of: Solution) -> list[Site]:
     return result
 
 
-class _Lumped:
-    """The nodes of the midband network: those that a short makes one are one."""
-
-    def __init__(self, of: Solution, names: dict[int, str]) -> None:
-        self.of, self.names = of, names
-        layout = of.circuit.layout
-        self.root = _merge(of)
-        self.first: dict[int, int] = {}  # root -> a node of it that belongs to a site
-        for node in names:
-            self.first.setdefault(self.root[node], node)
-        self.stiff = {self.root[GROUND]} | {self.root[k] for k, driven in enumerate(layout.driven) if driven}
-
-    def ohm(self, node: int) -> float:
-        """Driving-point resistance, 0 where something drives the node."""
-        return 0.0 if self.root[node] in self.stiff else float(self.of.inverse.point(node))
-
-    def taus(self) -> tuple[dict[str, float], dict[str, list[str]]]:
-        """tau by site, and the nodes that were left out of it."""
-        layout, net = self.of.circuit.layout, self.of.circuit.network
-        volts = [*self.of.volts[:len(layout.names)], 0.0]  # the last is ground, number -1
-        loudest: dict[str, float] = {}
-        for node, name in self.names.items():
-            loudest[name] = max(loudest.get(name, 0.0), abs(volts[node]))
-        taus: dict[str, float] = {}
-        left_out: dict[str, list[str]] = {}
-        for group, farad in self._farads(volts).items():
-            node = self.first.get(group, GROUND)
-            if node == GROUND or group == self.root[GROUND]:
-                continue
-            name = self.names[node]
-            if abs(volts[node]) < FAINT * loudest[name]:
-                left_out.setdefault(name, []).append(layout.names[node])
-            else:
-                taus[name] = taus.get(name, 0.0) + self.ohm(node) * farad
-        for segment in layout.segments:
-            for storage in segment.storages:
-                if layout.parts[storage.part].role == "high" and storage.node in self.names:
-                    own = self.of.inverse.own(storage.node)
-                    taus[self.names[storage.node]] = float(net.values[storage.part] * own)
-        return taus, left_out
-
-    def _farads(self, volts: list[float]) -> dict[int, float]:
-        """Capacitance of each midband node to ground, with the Miller halves of what floats; 0 where it hears nothing.
-
-        A half below zero (the output half of a follower's bridge) is of no use for an estimate and is left away, save
-        the input half of a bridge: so a resistor of a microhm between two nodes of a site moves nothing.
-        """
-        layout, net, root = self.of.circuit.layout, self.of.circuit.network, self.root
-        farads: dict[int, float] = {}
-        for branch in layout.branches:
-            index = branch.groups[0][0]
-            if not branch.single or branch.series or layout.parts[index].type != "C":
-                continue
-            for own, other in ((branch.i, branch.j), (branch.j, branch.i)):
-                if root[own] != root[other] and own != GROUND:
-                    share = 1.0 - volts[other] / volts[own] if volts[own] else 0.0
-                    if share < 0.0 and not (branch.bridge and own == branch.i):
-                        share = 0.0
-                    farads[root[own]] = farads.get(root[own], 0.0) + net.values[index] * share
-        return farads
-
-
-def _merge(of: Solution) -> dict[int, int]:
-    """Node -> a node that stands for all those that are one with it at midband."""
-    layout = of.circuit.layout
-    root = {k: k for k in range(GROUND, len(layout.names))}
-
-    def find(k: int) -> int:
-        while root[k] != k:
-            k = root[k]
-        return k
-
-    for branch in layout.branches:
-        if branch.series and impedance(of.circuit.network, branch, 0.0, "midband") == 0.0:
-            root[find(branch.j)] = find(branch.i)
-    return {k: find(k) for k in root}
+def _taus(lumped: Lumped) -> tuple[dict[str, float], dict[str, list[str]]]:
+    """tau by site, and the nodes that were left out of it."""
+    layout, values = lumped.of.circuit.layout, lumped.of.circuit.network.values
+    farads: dict[int, float] = {}
+    for node, half in lumped.landings():
+        landed = values[half.part] * half.share if half is not None and half.of_use else 0.0
+        farads[node] = farads.get(node, 0.0) + landed
+    taus: dict[str, float] = {}
+    left_out: dict[str, list[str]] = {}
+    for node, farad in farads.items():
+        name = lumped.names[node]
+        if lumped.hears(node):
+            taus[name] = taus.get(name, 0.0) + lumped.ohm(node) * farad
+        else:
+            left_out.setdefault(name, []).append(layout.names[node])
+    taus |= {lumped.names[node]: tau for node, _, tau in lumped.storages()}
+    return taus, left_out
 
 
 def node_estimate(poles_hz: list[float]) -> float | None:

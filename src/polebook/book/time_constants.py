@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from math import inf, isfinite, pi
 
 from polebook.circuit.elements import Branch
-from polebook.circuit.views import Network, admittances, impedance
+from polebook.circuit.views import Network, admittance, impedance
 from polebook.formula import Formula
 from polebook.solve.fold import Folded
 from polebook.solve.inverse import Inverse
@@ -95,13 +95,12 @@ def seen(net: Network, z: Inverse, number: int, branch: Branch, group: tuple[int
     if branch.single and not branch.series and part.type == "C":
         return float(z.at(branch.i, branch.j))
     around = z.loops.get(number) if branch.series else _loop(net, z, branch, index)
-    others = admittances(net, branch, tuple(k for k in group if k != index), 0.0, "midband")
+    others = admittance(net, tuple(k for k in group if k != index), 0.0, "midband")
     if others is None:
         return None  # another part of the group is a short
     if around is None:
         return 1.0 / others if others else None  # only its neighbours in the group close a path
-    shorted = (part.type == "C") == (part.role == "low")
-    rest = around if shorted or not others else around - 1.0 / others
+    rest = around if part.short or not others else around - 1.0 / others
     total = others + (1.0 / rest if rest else inf)
     return 1.0 / total if total and isfinite(total) else None
 

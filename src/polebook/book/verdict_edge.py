@@ -14,7 +14,6 @@ if TYPE_CHECKING:
     from polebook.book.sites import Site
 
 BESIDE = 0.6  # share of the greatest owner's from which another one is named with it
-ADDED = 0.1  # share from which a part counts among those that add up
 OVER = 1.2  # share from which a part is told with the one that holds against it
 ALONE = 0.45  # share from which one part is to blame, not the sum
 NEAR = 2.5  # poles within this many times the lowest one add up

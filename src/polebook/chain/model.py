@@ -4,11 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
-from types import MappingProxyType
 
 from polebook.problem import Place
-
-EMPTY: Mapping[str, float] = MappingProxyType({})
 
 
 @dataclass(frozen=True, slots=True)

@@ -15,6 +15,11 @@ class Part:
     role: str  # "high", "low", "" for what stores nothing
     segment: int
 
+    @property
+    def short(self) -> bool:
+        """Whether the midband state of a C or L is a short; the others are open there."""
+        return (self.type, self.role) in (("C", "low"), ("L", "high"))
+
 
 @dataclass(frozen=True, slots=True)
 class Branch:

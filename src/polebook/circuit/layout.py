@@ -153,7 +153,7 @@ def _plan_segment(layout: Layout, graph: Graph, segment: Segment,
 def _shorted(layout: Layout, branch: int) -> bool:
     """Whether a series branch is a short at midband."""
     parts = [layout.parts[index] for index in layout.branches[branch].groups[0]]
-    return any((part.type, part.role) in (("C", "low"), ("L", "high")) for part in parts)
+    return any(part.short for part in parts)
 
 
 def _storing(segment: Segment) -> frozenset[int]:

@@ -11,7 +11,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
-from polebook.circuit.elements import Branch
+from polebook.circuit.elements import Branch, Part
 from polebook.circuit.layout import Layout
 from polebook.circuit.placing import Placed
 from polebook.stages.stamper import Value
@@ -49,26 +49,39 @@ def _add(into: list[Value], placed: Placed, values: list[Value]) -> None:
             into[entry] = into[entry] + sign * value
 
 
-def admittances(net: Network, branch: Branch, group: tuple[int, ...], s: Value, view: View) -> Value | None:
-    """Admittance of parts in parallel: None for a short, 0.0 for an open."""
-    total: Value = 0.0
+LIVE_IN = {"high": "upper", "low": "lower"}
+
+
+def live(part: Part, view: View) -> bool:
+    """Whether a part that stores acts in a view; else it stands at its midband state."""
+    return view == "full" or view == LIVE_IN[part.role]
+
+
+def each_admittance(net: Network, group: tuple[int, ...], s: Value, view: View) -> list[tuple[int, Value]] | None:
+    """(part, admittance) of parts in parallel, opens left away; None where one of them is a short."""
+    result: list[tuple[int, Value]] = []
     for index in group:
-        part = net.layout.parts[index]
-        value = net.values[index]
+        part, value = net.layout.parts[index], net.values[index]
         if part.type == "R":
-            total = total + 1.0 / value
-        elif view == "full" or view == {"high": "upper", "low": "lower"}[part.role]:
-            total = total + (s * value if part.type == "C" else 1.0 / (s * value))
-        elif (part.type == "C") == (part.role == "low"):
+            result.append((index, 1.0 / value))
+        elif live(part, view):
+            result.append((index, s * value if part.type == "C" else 1.0 / (s * value)))
+        elif part.short:
             return None
-    return total
+    return result
+
+
+def admittance(net: Network, group: tuple[int, ...], s: Value, view: View) -> Value | None:
+    """Admittance of parts in parallel: None for a short, 0.0 for an open."""
+    each = each_admittance(net, group, s, view)
+    return None if each is None else sum((y for _, y in each), 0.0)
 
 
 def impedance(net: Network, branch: Branch, s: Value, view: View) -> Value | None:
     """Impedance of a branch, its groups in series: None for an open."""
     total: Value = 0.0
     for group in branch.groups:
-        y = admittances(net, branch, group, s, view)
+        y = admittance(net, group, s, view)
         if y is None:
             continue
         if isinstance(y, float) and y == 0.0:

@@ -10,7 +10,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 
 from polebook.circuit.elements import Branch
-from polebook.circuit.views import Network, View
+from polebook.circuit.views import Network, View, each_admittance, live
 from polebook.stages.stamper import GROUND, Value
 
 
@@ -58,9 +58,10 @@ def _storage_changes(net: Network, s: Value, view: View) -> list[tuple[int, int,
     for segment in net.layout.segments:
         for storage in segment.storages:
             tau = net.values[storage.part]
-            role = net.layout.parts[storage.part].role
-            if view == "full" or view == {"high": "upper", "low": "lower"}[role]:
-                result.append((storage.part, storage.node, s * tau if role == "high" else -1.0 / (s * tau)))
+            part = net.layout.parts[storage.part]
+            if live(part, view):
+                change = s * tau if part.role == "high" else -1.0 / (s * tau)
+                result.append((storage.part, storage.node, change))
     return result
 
 
@@ -74,7 +75,7 @@ def branch_changes(net: Network, branch: Branch, s: Value, view: View, resistive
     if not wanted:
         return []
     sizes: list[Value] = []
-    parallel = [_admittances(net, group, s, view) for group in branch.groups]
+    parallel = [each_admittance(net, group, s, view) for group in branch.groups]
     for group in parallel:
         total: Value = None if group is None else sum((y for _, y in group), 0.0)
         if total is not None and isinstance(total, float) and total == 0.0:
@@ -89,16 +90,3 @@ def branch_changes(net: Network, branch: Branch, s: Value, view: View, resistive
                 result.append((index, change if branch.series else -change / (whole * whole)))
     return result
 
-
-def _admittances(net: Network, group: tuple[int, ...], s: Value, view: View) -> list[tuple[int, Value]] | None:
-    """Live parts of a group with their admittances; None where one of them is a short."""
-    result: list[tuple[int, Value]] = []
-    for index in group:
-        part, value = net.layout.parts[index], net.values[index]
-        if part.type == "R":
-            result.append((index, 1.0 / value))
-        elif view == "full" or view == {"high": "upper", "low": "lower"}[part.role]:
-            result.append((index, s * value if part.type == "C" else 1.0 / (s * value)))
-        elif (part.type == "C") == (part.role == "low"):
-            return None
-    return result

@@ -16,7 +16,7 @@ from polebook.solve.contributions import contributions
 from polebook.solve.determinant import compounds
 from polebook.solve.fold import Folded, fold
 from polebook.solve.poles import Poles, split
-from polebook.stages.stamper import GROUND
+from polebook.solve.transfer import Adjoint, branch_currents
 
 if TYPE_CHECKING:
     from polebook.solve.aberth import Complex
@@ -99,23 +99,15 @@ def _patterns(folded: Folded, p: Complex, root: Any, place: list[int]) -> tuple[
 
 def _currents(folded: Folded, p: Complex, v: Voltages, u: Voltages, root: Any) -> dict[int, tuple[Any, Any]]:
     """Currents of the series branches in both patterns."""
-    count = len(u) - 1
-    result = {}
+    result = branch_currents(folded, v, Adjoint(u, [np.zeros(p.shape)] * len(u)))
     for taken in folded.taken:
         for step in taken:
             at = step.step
-            if at.branch < 0:
-                continue
-            q = step.a_kk * v[at.parent] if at.parent != GROUND else 0.0
-            r = step.a_kk * u[at.parent] if at.takes else 0.0
-            for j, x in zip(at.cols, step.a_kj, strict=True):
-                q = q + x * v[j]
-            for i, x in zip(at.rows, step.a_ik, strict=True):
-                if i < count:
-                    r = r + x * u[i]
-            own = step.share / step.own  # 1/z, where the branch's own node carries the pattern
-            result[at.branch] = (np.where(root == at.node, own * v[at.node], -step.share * q),
-                                 np.where(root == at.node, own * u[at.node], -step.share * r))
+            if at.branch >= 0:
+                q, r = result[at.branch]
+                own = step.share / step.own  # 1/z, where the branch's own node carries the pattern
+                result[at.branch] = (np.where(root == at.node, own * v[at.node], q),
+                                     np.where(root == at.node, own * u[at.node], r))
     return result
 
 

@@ -8,7 +8,7 @@ from polebook.book.time_constants import seen
 from polebook.book.workings.formulas import FORMULA
 from polebook.book.workings.sheet import Books, Sheet, plus
 from polebook.circuit.elements import Branch
-from polebook.circuit.views import admittances
+from polebook.circuit.views import admittance
 from polebook.formula import Working
 from polebook.stages.stamper import GROUND
 
@@ -55,7 +55,7 @@ def _resistance(books: Books, sheet: Sheet, number: int, branch: Branch, group: 
         return ""
     if branch.single and not branch.series and part.type == "C":
         return _between(books, sheet, branch)
-    others = admittances(books.net, branch, tuple(k for k in group if k != index), 0.0, "midband")
+    others = admittance(books.net, tuple(k for k in group if k != index), 0.0, "midband")
     if not others:
         return sheet.put("R", ohm, "Ω", "seen at its terminals: the rest of the loop that it stands in", NETWORK)
     neighbours = [f"1/{_value(books, sheet, k)}" for k in group if k != index and books.layout.parts[k].type == "R"]

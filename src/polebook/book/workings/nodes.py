@@ -2,30 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import dataclass
-
 from polebook.book.account import Account, line_losses
-from polebook.book.sites import FAINT
+from polebook.book.lumped import Half, Lumped
 from polebook.book.workings.currents import for_one_ampere, out_of
 from polebook.book.workings.formulas import FORMULA
 from polebook.book.workings.sheet import Books, Sheet, plus
 from polebook.chain.suggest import listed
 from polebook.formula import Working
-from polebook.stages.stamper import GROUND
-
-
-@dataclass(frozen=True, slots=True)
-class Half:
-    """What one capacitor puts on a node: its part, K to its other end, None where that is ground or the rail.
-
-    of_use is False for a negative half that is no input half of a bridge: it is left out of the node's pole.
-    """
-
-    part: int
-    other: int
-    k: float | None
-    of_use: bool = True
 
 
 def node(books: Books, sheet: Sheet) -> Working:
@@ -77,22 +60,6 @@ def _inner_ohm(books: Books, sheet: Sheet, number: int) -> Working:
     return sheet.done(FORMULA["nodes.ohm"])
 
 
-def halves(books: Books, volts: list[float], root: dict[int, int]) -> Iterator[tuple[int, Half]]:
-    """(node that stands for those one with it, what a capacitor puts on it), of every capacitor and end."""
-    for branch in books.layout.branches:
-        index = branch.groups[0][0]
-        if not branch.single or branch.series or books.layout.parts[index].type != "C":
-            continue
-        for own, other in ((branch.i, branch.j), (branch.j, branch.i)):
-            if root[own] == root[other] or own == GROUND or not volts[own]:
-                continue
-            if other == GROUND:
-                yield root[own], Half(index, other, None)
-            else:
-                k = volts[other] / volts[own]
-                yield root[own], Half(index, other, k, k <= 1.0 or (branch.bridge and own == branch.i))
-
-
 def _pole(books: Books, sheet: Sheet) -> Working:
     name = sheet.entry.name.rpartition(".")[0]
     parts_out: list[str] = []
@@ -117,24 +84,19 @@ def _pole(books: Books, sheet: Sheet) -> Working:
 
 def _terms(books: Books, sheet: Sheet, name: str, left_out: list[str]) -> list[str]:
     """R·C of every node of a site, each capacitance with its Miller half; parts of no use go to `left_out`."""
-    volts, root = [*books.solution.volts[:len(books.layout.names)], 0.0], books.root
-    first: dict[int, int] = {}
-    for number in books.site_of:
-        first.setdefault(root[number], number)
-    own = {top: number for top, number in first.items() if books.site_of[number] == name and top != root[GROUND]}
-    loudest = max((abs(volts[n]) for n, site in books.site_of.items() if site == name), default=0.0)
+    lumped = Lumped(books.solution, books.site_of)
     landed: dict[int, list[Half]] = {}
-    for top, half in halves(books, volts, root):
-        if top not in own or abs(volts[own[top]]) < FAINT * loudest:
+    for number, half in lumped.landings():
+        if half is None or lumped.names[number] != name or not lumped.hears(number):
             continue
         if half.of_use:
-            landed.setdefault(top, []).append(half)
+            landed.setdefault(number, []).append(half)
         else:
             left_out.append(books.full_name(books.layout.parts[half.part]))
     terms = []
-    for top, found in landed.items():
-        ohm = _resistance(books, sheet, own[top])
-        label = books.node_label(own[top])
+    for number, found in landed.items():
+        ohm = _resistance(books, sheet, number)
+        label = books.node_label(number)
         farads = [_landed(books, sheet, half, label) for half in found]
         terms.append(f"{ohm}·{sheet.step(f'C_{label} = {plus(farads)}', 'F', f'capacitance at {label}:')}")
     return terms

@@ -10,19 +10,18 @@ from typing import Any
 from polebook.book.build import SECTIONS as SECTIONS_OF_DOCUMENT
 from polebook.book.build import document
 from polebook.book.ledger import Ledger
+from polebook.book.lumped import merged
 from polebook.book.sites import interstage_names, site_names
 from polebook.book.workings.expression import evaluate
 from polebook.book.workings.index import Entry, entries
 from polebook.book.workings.units import about, device_figure, unit
 from polebook.chain.tables import SECTIONS
 from polebook.circuit.elements import Part
-from polebook.circuit.views import impedance
 from polebook.devices.registry import FAMILIES
 from polebook.formula import Formula, Number, Step, Working
 from polebook.quantity import DIMENSIONS
 from polebook.stages.ladder import ARM
 from polebook.stages.registry import KINDS
-from polebook.stages.stamper import GROUND
 
 _SECTIONS = frozenset(SECTIONS_OF_DOCUMENT) - {"verdict", "cautions"}
 _UNFIT = re.compile(r"[^\w.]")
@@ -88,18 +87,8 @@ class Books:
 
     @cached_property
     def root(self) -> dict[int, int]:
-        """Node -> a node that stands for all those that a short makes one with it at midband."""
-        root = {node: node for node in range(GROUND, len(self.layout.names))}
-
-        def find(node: int) -> int:
-            while root[node] != node:
-                node = root[node]
-            return node
-
-        for branch in self.layout.branches:
-            if branch.series and impedance(self.net, branch, 0.0, "midband") == 0.0:
-                root[find(branch.j)] = find(branch.i)
-        return {node: find(node) for node in root}
+        """Node -> a node that stands for all those that are one with it at midband."""
+        return merged(self.solution)
 
     def node_label(self, node: int) -> str:
         """A node as a reader knows it: n1, also behind what is a short at midband; else Q1.inner."""
