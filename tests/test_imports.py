@@ -53,6 +53,12 @@ def test_a_ledger_needs_numpy_alone(command):
     assert not names & {"textual", "rich", "scipy"}
 
 
+def test_an_audit_needs_no_poles_and_no_leverage():
+    names, code = modules_after(f"from polebook.cli.main import main; result = main(['audit', {SIX!r}])")
+    assert code == 0 and "polebook.book.ledger" in names
+    assert not names & {"polebook.book.leverage", "polebook.book.poles", "polebook.solve.poles", "polebook.solve.modes"}
+
+
 def test_kinds_needs_no_numbers():
     names, code = modules_after("from polebook.cli.main import main; result = main(['kinds'])")
     assert code == 0

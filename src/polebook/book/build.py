@@ -4,16 +4,18 @@ from __future__ import annotations
 
 from collections.abc import Callable, Collection, Mapping
 from math import atan2, degrees, isfinite, log10, pi
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from polebook import __version__
 from polebook.book.account import line_losses
 from polebook.book.ledger import Ledger, ledger
 from polebook.book.lines import Line
-from polebook.book.poles import Root
 from polebook.book.reach import within_reach
 from polebook.book.verdict import cause
 from polebook.solve.fold import fold
+
+if TYPE_CHECKING:
+    from polebook.book.poles import Root
 
 LATER = ("rise_time_s", "overshoot_percent", "settling_1_s", "settling_01_s", "sag_percent", "group_delay_s",
          "group_delay_spread_s", "noise_density", "noise_total_output", "noise_total_input", "noise_from_hz",

@@ -8,9 +8,6 @@ from typing import TYPE_CHECKING
 
 from polebook.book.solution import Solution
 from polebook.formula import Formula
-from polebook.solve.modes import modes
-from polebook.solve.poles import Poles
-from polebook.solve.poles import poles as all_poles
 from polebook.solve.zeros import zeros as all_zeros
 
 if TYPE_CHECKING:
@@ -61,18 +58,17 @@ class Resolved:
 
 def poles(of: Solution) -> Resolved:
     """All finite poles, those at 0 first; None unless count, trace and winding agree."""
-    net = of.circuit.network
-    found = all_poles(net, float(of.sweep.hz[0]), float(of.sweep.hz[-1]), of.winding.right)
+    found = of.poles
     if not found.trusted or of.winding.finite != found.roots.size:
         return Resolved(None, found.why or "their number is not that of the winding")
     roots = [Root(0j, None)] * found.at_zero
-    return Resolved((*roots, *_named(of, found)), "")
+    return Resolved((*roots, *_named(of)), "")
 
 
-def _named(of: Solution, found: Poles) -> list[Root]:
-    layout = of.circuit.layout
+def _named(of: Solution) -> list[Root]:
+    layout, found = of.circuit.layout, of.poles
     by_stage: Mapping[str, list[float]] = {segment.name: [0.0] * found.roots.size for segment in layout.segments}
-    for index, weights in modes(of.circuit.network, found).by_part.items():
+    for index, weights in of.modes.by_part.items():
         own = by_stage[layout.parts[index].stage]
         for k, weight in enumerate(weights.tolist()):
             own[k] += weight

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from functools import cached_property
 from math import isfinite, log
+from typing import TYPE_CHECKING
 
 from polebook.book.reach import within_reach
 from polebook.book.time_constants import TimeConstants, time_constants
@@ -19,6 +20,10 @@ from polebook.solve.sweep import Sweep, sweep
 from polebook.solve.transfer import voltages
 from polebook.solve.winding import Winding, winding
 
+if TYPE_CHECKING:
+    from polebook.solve.modes import Modes
+    from polebook.solve.poles import Poles
+
 MOST_NEPER = 690.0  # a product of gains beyond e^690 has no double
 
 
@@ -30,11 +35,6 @@ class Solution:
         with within_reach(chain):
             self.circuit: Circuit = circuit(chain)
             self.midband: Folded = self._fold_midband()
-
-    @property
-    def stable(self) -> bool:
-        """False where a pole has a positive real part; a count that came to nothing is told apart by `winding`."""
-        return not self.winding.right
 
     @cached_property
     def gains(self) -> list[float]:
@@ -80,6 +80,21 @@ class Solution:
         start = first_seed(self.constants.lower_hz, self.constants.upper_hz)
         hz, clean = seed(self.circuit.network, self.gains, start, self.constants.taus)
         return band(self.circuit.network, self.gains, self.sweep, hz, clean)
+
+    @cached_property
+    def poles(self) -> Poles:
+        """Every finite pole of the full network; see whether they are to be trusted."""
+        from polebook.solve.poles import poles  # deferred: an audit asks for none, and starts 2 ms sooner
+
+        hz = self.sweep.hz
+        return poles(self.circuit.network, float(hz[0]), float(hz[-1]), self.winding.right)
+
+    @cached_property
+    def modes(self) -> Modes:
+        """Which parts make each of the poles."""
+        from polebook.solve.modes import modes  # deferred with the poles
+
+        return modes(self.circuit.network, self.poles)
 
     def _fold_midband(self) -> Folded:
         try:

@@ -9,8 +9,6 @@ from polebook.book.verdict_edge import BESIDE, name_of
 from polebook.book.verdict_how import loop_of
 from polebook.book.verdict_peak import cause
 from polebook.book.verdict_words import figure, fits, listed, number, per_cent
-from polebook.solve.modes import modes
-from polebook.solve.poles import poles
 
 if TYPE_CHECKING:
     from polebook.book.ledger import Ledger
@@ -19,14 +17,13 @@ if TYPE_CHECKING:
 def unstable(of: Ledger) -> str:
     """The sentences on an unstable chain."""
     solution = of.solution
-    net, right = solution.circuit.network, solution.winding.right or 0
-    found = poles(net, float(solution.sweep.hz[0]), float(solution.sweep.hz[-1]), right)
+    right, found = solution.winding.right or 0, solution.poles
     if not found.trusted:
         grow = "one pole grows" if right == 1 else f"{number(right)} poles grow"
         return f"Unstable: {grow}, so the chain oscillates and has no edges."
     at = max(range(found.roots.size), key=lambda k: float(found.roots[k].real))
     root = complex(found.roots[at])
-    weights = {k: float(each[at]) for k, each in modes(net, found).by_part.items()}
+    weights = {k: float(each[at]) for k, each in solution.modes.by_part.items()}
     hz = figure(abs(root) / (2 * pi), "Hz")
     grows = "a pair of poles" if root.imag else "a pole"
     grows += f" at {hz} grows, so the chain {'oscillates' if root.imag else 'latches'}"
