@@ -11,6 +11,7 @@ from polebook.book.reach import within_reach
 from polebook.chain.model import Chain
 from polebook.chain.read import known_reading
 from polebook.problem import Place, Problem, ProblemsFound
+from polebook.session.watch import Look
 from polebook.text import files
 from polebook.text.edit import Edit, Splice
 from polebook.text.files import Identity
@@ -38,6 +39,8 @@ class Session:
     baseline   the pinned ledger
     exists     the file is on the disk
     identity   what tells whether it is still the one that was read
+    held       which other polebook has the file, "" for none: while one has, nothing is written
+    gone       the file went from the disk, or can't be read any more, since it was read
     """
 
     path: str
@@ -51,6 +54,13 @@ class Session:
     baseline: Ledger | None
     exists: bool
     identity: Identity | None = None
+    held: str = ""
+    gone: bool = False
+
+    @property
+    def saved(self) -> bool:
+        """Whether the file holds the text as it is."""
+        return self.history.saved and not self.gone
 
 
 def open_file(path: str) -> Session:
@@ -152,6 +162,10 @@ def save(session: Session, over: bool = False) -> Session:
 
     Raises ChangedOnDisk where the file is not as it was read, unless `over` says to save over it.
     """
+    if session.held:
+        raise ProblemsFound([Problem(
+            Place(session.path), "it can't be written here", session.held, "it can be once that one has left",
+        )])
     if not over and changed_on_disk(session):
         raise ChangedOnDisk([Problem(
             Place(session.path), "the file has changed on the disk since it was read",
@@ -159,7 +173,7 @@ def save(session: Session, over: bool = False) -> Session:
         )])
     files.save(session.path, session.history.text)
     return replace(session, history=session.history.marked(session.history.text), read_only="", exists=True,
-                   identity=files.identity(session.path))
+                   identity=files.identity(session.path), gone=False)
 
 
 def changed_on_disk(session: Session) -> bool:
@@ -170,9 +184,28 @@ def changed_on_disk(session: Session) -> bool:
 def reload(session: Session, now: float) -> Session:
     """The session with the text that is on the disk now, as one edit. Raises ProblemsFound where it can't be read."""
     found = files.read(session.path)
-    edit = whole(session.history.text, found.text, "read again from the disk")
-    after = apply(session, edit, now)
-    return replace(after, history=after.history.marked(found.text), exists=True, identity=found.identity)
+    return reread(session, Look(session.identity, found.identity, found.text), now)
+
+
+def reread(session: Session, look: Look, now: float) -> Session:
+    """The session with the text that was seen on the disk, as one edit."""
+    text = session.history.text if look.text is None else look.text
+    edit = whole(session.history.text, text, "read again from the disk")
+    return replace(agreed(apply(session, edit, now), look), newline=files.newline(text))
+
+
+def agreed(session: Session, look: Look) -> Session:
+    """The session with what was seen on the disk as what its file holds; its own text stays."""
+    return replace(session, history=session.history.marked(look.text), exists=look.identity is not None,
+                   identity=look.identity, gone=False)
+
+
+def as_on_disk(session: Session, like: Session) -> Session:
+    """The session with what `like`, a session of the same file, knows of the disk."""
+    disk = like.history.disk
+    history = session.history if session.history.disk == disk else session.history.marked(disk)
+    return replace(session, history=history, read_only=like.read_only, exists=like.exists, identity=like.identity,
+                   held=like.held, gone=like.gone)
 
 
 def whole(before: str, after: str, label: str) -> Edit:

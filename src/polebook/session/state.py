@@ -5,6 +5,7 @@ from __future__ import annotations
 from polebook.session.opened import (
     ChangedOnDisk,
     Session,
+    agreed,
     apply,
     changed_on_disk,
     moved,
@@ -13,10 +14,12 @@ from polebook.session.opened import (
     pin,
     redo,
     reload,
+    reread,
     save,
     set_text,
     undo,
     unpin,
+    whole,
 )
 from polebook.session.sheets import KeyRow, keys_of, sheets_of
 from polebook.session.stages import (
@@ -33,8 +36,8 @@ from polebook.session.stages import (
 from polebook.session.values import set_value, step
 
 __all__ = [
-    "ChangedOnDisk", "KeyRow", "Session", "add_stage", "apply", "change_kind", "changed_on_disk", "copy_stage",
-    "keys_of", "move_stage", "moved", "new_session", "open_file", "pin", "redo", "reload", "remove_stage",
-    "rename_stage", "save", "set_note", "set_text", "set_value", "sheets_of", "step", "take_card", "toggle_left_out",
-    "undo", "unpin",
+    "ChangedOnDisk", "KeyRow", "Session", "add_stage", "agreed", "apply", "change_kind", "changed_on_disk",
+    "copy_stage", "keys_of", "move_stage", "moved", "new_session", "open_file", "pin", "redo", "reload", "remove_stage",
+    "rename_stage", "reread", "save", "set_note", "set_text", "set_value", "sheets_of", "step", "take_card",
+    "toggle_left_out", "undo", "unpin", "whole",
 ]

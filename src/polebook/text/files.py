@@ -68,10 +68,14 @@ def read(path: str | os.PathLike[str]) -> FileText:
     if len(data) > LARGEST:
         raise ProblemsFound([too_large(name, max(status.st_size, len(data)))])
     text = _decoded(name, data)
-    feed = text.find("\n")
-    newline = "\r\n" if feed > 0 and text[feed - 1] == "\r" else "\n"
     mode = stat.S_IMODE(status.st_mode)
-    return FileText(name, text, mode, _identity(status), newline, not os.access(name, os.W_OK))
+    return FileText(name, text, mode, _identity(status), newline(text), not os.access(name, os.W_OK))
+
+
+def newline(text: str) -> str:
+    """The end of a text's first line, "\\n" for a text of one line."""
+    feed = text.find("\n")
+    return "\r\n" if feed > 0 and text[feed - 1] == "\r" else "\n"
 
 
 def identity(path: str | os.PathLike[str]) -> Identity | None:
