@@ -77,9 +77,35 @@ class _Builder:
 def pencil(net: Network) -> Pencil:
     """The full network as a dense pencil."""
     build, layout = _Builder(net), net.layout
-    for branch in layout.branches:
-        build.branch(branch)
-    for segment in layout.segments:
+    _stamped(build, range(len(layout.segments)))
+    if layout.emf >= 0:
+        build.add(build.g, layout.emf, layout.emf, 1.0)
+    rhs = np.zeros(build.count)
+    rhs[layout.emf if layout.emf >= 0 else layout.after[0]] = 1.0
+    return Pencil(*_matrices(build), rhs, layout.after[-1])
+
+
+def impedance(net: Network, lines: range, node: int, hz: float) -> complex:
+    """Ohms at a node of the network of some lines alone, in a row; a line of the source has no EMF."""
+    build, layout = _Builder(net), net.layout
+    _stamped(build, lines)
+    if layout.emf >= 0 and 0 in lines:
+        build.add(build.g, layout.emf, layout.emf, 1.0)
+    rhs = np.zeros(build.count)
+    rhs[node] = 1.0
+    g, c = _matrices(build)
+    for k in np.nonzero(~(g.any(axis=1) | c.any(axis=1)))[0]:
+        g[k, k] = 1.0  # a node of a line that is not there
+    return Pencil(g, c, rhs, node).transfer(hz)
+
+
+def _stamped(build: _Builder, lines: range) -> None:
+    """Every element of those lines."""
+    net, layout = build.net, build.layout
+    for index in lines:
+        segment = layout.segments[index]
+        for branch in segment.branches:
+            build.branch(branch)
         for t in segment.transfers:
             for row, sign in ((t.output, 1.0), (t.lower, -1.0)):
                 build.balance(build.g, row, t.plus, sign * net.values[t.part])
@@ -97,12 +123,11 @@ def pencil(net: Network) -> Pencil:
                 build.add(build.g, storage.node, w, 1.0)
                 build.add(build.g, w, storage.node, -1.0)
                 build.add(build.c, w, w, tau)
-    if layout.emf >= 0:
-        build.add(build.g, layout.emf, layout.emf, 1.0)
-    rhs = np.zeros(build.count)
-    rhs[layout.emf if layout.emf >= 0 else layout.after[0]] = 1.0
+
+
+def _matrices(build: _Builder) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     g, c = np.zeros((build.count, build.count)), np.zeros((build.count, build.count))
     for into, entries in ((g, build.g), (c, build.c)):
         for (i, j), value in entries.items():
             into[i, j] += value
-    return Pencil(g, c, rhs, layout.after[-1])
+    return g, c

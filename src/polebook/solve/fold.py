@@ -45,7 +45,7 @@ class Folded:
     """The network folded into its source.
 
     taken      by segment, in the order of elimination
-    gains      V(after)/V(before) by segment; for the source V(n0) per volt of EMF or ampere
+    gains      V(after)/V(before) by segment, of those that were folded; for the source V(n0) per volt of EMF or ampere
     inputs     admittance into the segment at its input with what follows attached; None for the source
     """
 
@@ -55,16 +55,20 @@ class Folded:
     inputs: list[Value | None]
 
 
-def fold(net: Network, s: Value, view: View) -> Folded:
-    """Eliminates from load to source at s (rad/s, scalar or array). Raises NotHeld for a floating node."""
+def fold(net: Network, s: Value, view: View, lines: int | None = None) -> Folded:
+    """Eliminates from load to source at s (rad/s, scalar or array). Raises NotHeld for a floating node.
+
+    lines  of so many, source first; all that follows them is taken away. None: of the whole chain
+    """
     layout = net.layout
+    count = len(layout.segments) if lines is None else lines
     a: list[Value] = [0.0] * layout.slots
     entries = entry_values(net, s, view)
     series = series_values(net, s, view)
     slot_of, ranges = layout.stamps.slot_of, layout.stamps.ranges
     taken: list[list[Taken]] = [[] for _ in layout.segments]
     inputs: list[Value | None] = [None] * len(layout.segments)
-    for index in range(len(layout.segments) - 1, -1, -1):
+    for index in range(count - 1, -1, -1):
         start, end = ranges[index]
         for entry in range(start, end):
             slot = slot_of[entry]
@@ -72,7 +76,7 @@ def fold(net: Network, s: Value, view: View) -> Folded:
         taken[index] = [eliminate(a, step, series) for step in layout.steps[index]]
         if index:
             inputs[index] = a[layout.diagonal[index - 1]]
-    gains = [segment_gain(layout, index, taken[index]) for index in range(len(layout.segments))]
+    gains = [segment_gain(layout, index, taken[index]) for index in range(count)]
     return Folded(net, taken, gains, inputs)
 
 
