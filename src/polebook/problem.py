@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import unicodedata
 from collections.abc import Iterable
 from dataclasses import dataclass
@@ -10,8 +11,12 @@ from functools import lru_cache
 EXCERPT_CELLS = 72  # of a source line, so that excerpt and line number fit 80 columns
 TAB_CELLS = 4
 _NAMED = {"\n": "\\n", "\r": "\\r", "\t": "\\t"}
-# Cc control, Cf format (bidi, zero width), Cs lone surrogates, Zl and Zp line and paragraph separators
-_HIDDEN = frozenset(("Cc", "Cf", "Cs", "Zl", "Zp"))
+# Cc control, Cf format (bidi, zero width), Cn unassigned, Cs lone surrogates, Zl and Zp line and paragraph separators
+_HIDDEN = frozenset(("Cc", "Cf", "Cn", "Cs", "Zl", "Zp"))
+# what shows nothing by itself, or changes how wide its neighbour is on some terminals and not on others: joiners,
+# fillers and vowels of Hangul, selectors of a variant, halves of flags, tones of skin
+_UNSURE = re.compile("[\u034f\u115f-\u11ff\u17b4\u17b5\u180b-\u180f\u3164\ud7b0-\ud7ff\ufe00-\ufe0f\uffa0"
+                     "\U0001f1e6-\U0001f1ff\U0001f3fb-\U0001f3ff\U000e0100-\U000e01ef]")
 
 
 @dataclass(frozen=True, slots=True)
@@ -83,7 +88,7 @@ def render(problem: Problem, text: str = "") -> str:
 
 
 def _visible(char: str) -> str:
-    if unicodedata.category(char) not in _HIDDEN:
+    if unicodedata.category(char) not in _HIDDEN and not _UNSURE.match(char):
         return char
     if char in _NAMED:
         return _NAMED[char]

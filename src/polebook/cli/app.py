@@ -8,9 +8,16 @@ import os
 import sys
 from collections.abc import Mapping
 from dataclasses import replace
+from typing import TYPE_CHECKING
 
 from polebook.cli.command import Command
 from polebook.cli.out import Out
+from polebook.problem import ProblemsFound
+
+if TYPE_CHECKING:
+    from polebook.tui.guardian import Guardian
+    from polebook.tui.view import State
+from polebook.tui import setting
 
 PLAIN = "--plain"
 _ABOUT = """Open a chain file in the terminal app; where the output is no terminal, or TERM is dumb, print its ledger.
@@ -40,17 +47,47 @@ def _run(args: argparse.Namespace, out: Out) -> int:
         from polebook.cli.main import load
 
         show = load("show")
-        look = replace(out.look, encoding="ascii") if args.plain else out.look
+        plain = args.plain or (out.out.isatty() and setting.ascii_only())
+        look = replace(out.look, encoding="ascii") if plain else out.look
         return show.run(show.parser("show").parse_args(["--", args.file]), replace(out, look=look))
     gc.disable()  # starting makes many objects and no garbage: a tenth sooner on the screen; `run` collects again
-    from polebook.tui import terminal  # deferred: a command that prints needs nothing of the app
-    from polebook.tui.control import opening
-
-    colour = not os.environ.get("NO_COLOR")
-    state = opening(args.file, args.plain or terminal.ascii_only(), colour)
+    setting.settle()
+    guardian = _locked(args.file)
+    try:
+        state = _opened(guardian, args.file, args.plain or setting.ascii_only(), setting.colours())
+    except ProblemsFound:
+        raise
+    except Exception as error:
+        return _failed(guardian, args.file, error)
     from polebook.tui.app import run  # deferred: a file that can't be read is told without Textual, 200 ms sooner
 
-    return run(state)
+    return run(state, guardian)
+
+
+def _locked(path: str) -> Guardian:
+    from polebook.tui.guardian import Guardian  # deferred: where it prints, none of it is needed
+
+    return Guardian(path)
+
+
+def _opened(guardian: Guardian, path: str, plain: bool, colour: bool) -> State:
+    """The file open, and what is kept of its unsaved work offered. Raises ProblemsFound, that told with them."""
+    from polebook.tui.control import opening  # deferred: where it prints, none of it is needed
+
+    try:
+        return guardian.opened(opening(path, plain, colour))
+    except ProblemsFound as found:
+        guardian.close()
+        raise ProblemsFound((*found.problems, *guardian.left()), found.text) from None
+
+
+def _failed(guardian: Guardian, path: str, error: Exception) -> int:
+    """A fault of ours before anything was shown."""
+    from polebook.tui import ending  # deferred: it is hardly ever needed
+
+    guardian.close()
+    ending.tell(path, guardian, ending.FAULT, guardian.report(ending.report(error)))
+    return ending.FAULT
 
 
 COMMAND = Command(_ABOUT, _arguments, _run)

@@ -1,4 +1,4 @@
-"""The terminal below Textual: what it can show, keys cut apart, output counted, signals that leave it as it was.
+"""The terminal below Textual: keys cut apart, output counted, signals that leave it as it was.
 
 The one file that uses names which Textual keeps to itself (8.2): its driver for POSIX, parser and writer thread.
 """
@@ -12,35 +12,33 @@ import os
 import select
 import signal
 import sys
-import threading
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from contextlib import suppress
-from queue import SimpleQueue
-from typing import IO, TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any
 
+from polebook.tui.setting import console
 from polebook.tui.typeahead import ESC, TypeAhead
+from polebook.tui.writer import Writer, let_go, unsent, when_sent
 
 if TYPE_CHECKING:
     from textual.driver import Driver
     from textual.message import Message
 
+__all__ = ["driver_class", "fail", "let_go", "on_ending", "on_fault", "stayed", "unsent", "when_sent", "without_extras"]
+
 _REST_S = 0.03  # within which the rest of a function key's sequence follows its Esc
-_LOOK_S = 0.1  # between looks whether to end
-_DRAIN_S = 2.0  # how long leaving waits for a terminal that takes no output
-_GLYPHS = "─●◂█▏Ωµ–…"
-ENDING = {name: getattr(signal, name) for name in ("SIGTERM", "SIGHUP", "SIGQUIT") if hasattr(signal, name)}
+_LOOK_S = 0.1  # between looks whether to end, or whether the shell has given the terminal back
+ENDING = {name: getattr(signal, name) for name in ("SIGTERM", "SIGHUP", "SIGQUIT", "SIGINT") if hasattr(signal, name)}
 
-
-def ascii_only(environ: Mapping[str, str] = os.environ) -> bool:
-    """Whether the terminal has no glyphs but those of ASCII: a console, a locale that says so, another encoding."""
-    if environ.get("TERM") == "linux" or environ.get("LC_ALL") in ("C", "POSIX"):
-        return True
-    encoding = getattr(sys.__stdout__, "encoding", None) or "ascii"
-    try:
-        _GLYPHS.encode(encoding)
-    except UnicodeEncodeError:
-        return True
-    return False
+# What Textual writes -> what goes out in its place: no reports of the mouse, the focus or the size are asked for, and
+# of the newer keyboard protocol only that Esc is told from the beginning of a sequence.
+_ANYWHERE = {"\x1b[?1004h": "", "\x1b[?1004l": "", "\x1b[?2048$p": "", "\x1b[>25u": "\x1b[>1u"}
+_ON_A_CONSOLE = _ANYWHERE | {
+    "\x1b[>25u": "", "\x1b[<u": "", "\x1b[?2026$p": "", "\x1b[?2004h": "", "\x1b[?2004l": "",
+    "\x1b[?1049h": "\x1b[H\x1b[2J", "\x1b[?1049l": "\x1b[H\x1b[2J",  # no second screen: it is left clear
+}
+_POINTER = "\x1b]22;"  # the shape of the mouse's pointer
+_AGAIN = ("\x1b[?25l", "\x1b[?7l", "\x1b[?2004h")  # what a shell may have set otherwise while the app was stopped
 
 
 def on_ending(loop: asyncio.AbstractEventLoop, leave: Callable[[int], None]) -> None:
@@ -57,80 +55,31 @@ def driver_class() -> type[Driver] | None:
     return _driver_class()
 
 
-def unsent(driver: object) -> bool:
-    """Whether output still waits to be taken by the terminal."""
-    writer = getattr(driver, "_writer_thread", None)
-    return isinstance(writer, Writer) and writer.waiting
+def without_extras(app: object) -> None:
+    """Without the widgets for notices and hints that Textual lays over a screen: they have it painted twice more."""
+    app.__dict__.update(_disable_tooltips=True, _disable_notifications=True)
 
 
-def when_sent(driver: object, told: Callable[[], None]) -> None:
-    """Has `told` called, in the writer's thread, whenever all output has been taken."""
-    if driver is not None:
-        driver.__dict__["told"] = told
+def stayed(driver: object) -> bool:
+    """Whether the last ctrl+z had no shell to go back to."""
+    return bool(getattr(driver, "stayed", False))
 
 
-def let_go() -> None:
-    """Ends the output to a terminal that has gone, so that leaving does not stumble over what it can't flush."""
-    out = sys.__stdout__
-    if out is None:
-        return
-    try:
-        out.flush()
-    except OSError:
-        with suppress(OSError, ValueError):
-            nowhere = os.open(os.devnull, os.O_WRONLY)
-            os.dup2(nowhere, out.fileno())
-            os.close(nowhere)
+def on_fault(app: Any, told: Callable[[Exception], None]) -> None:
+    """Has an exception out of the app told, and the app end, in place of a traceback on the screen."""
+    def handle(error: Exception) -> None:
+        told(error)
+        if app._exception is None:  # a test's pilot raises it again
+            app._exception = error
+            app._exception_event.set()
+        app._close_messages_no_wait()
+
+    app.__dict__["_handle_exception"] = handle
 
 
-class Writer(threading.Thread):
-    """Writes in the background, never holds up who writes, and knows whether all of it has gone out."""
-
-    def __init__(self, file: IO[str], told: Callable[[], None]) -> None:
-        super().__init__(daemon=True, name="polebook-output")
-        self._file, self._told = file, told
-        self._queue: SimpleQueue[str | None] = SimpleQueue()
-        self._lock = threading.Lock()
-        self._open = 0
-
-    @property
-    def waiting(self) -> bool:
-        return self._open > 0
-
-    def write(self, text: str) -> None:
-        with self._lock:
-            self._open += 1
-        self._queue.put(text)
-
-    def flush(self) -> None:
-        """Nothing to do: the thread flushes whenever it has written."""
-
-    def isatty(self) -> bool:
-        return True
-
-    def fileno(self) -> int:
-        return self._file.fileno()
-
-    def run(self) -> None:
-        lost = False  # the terminal has gone: what is left is taken and dropped, and the reader tells of the end
-        while (text := self._queue.get()) is not None:
-            if not lost:
-                try:
-                    self._file.write(text)
-                    if self._queue.empty():
-                        self._file.flush()
-                except (OSError, ValueError):
-                    lost = True
-            with self._lock:
-                self._open -= 1
-            if not self._open:
-                self._told()
-        with suppress(OSError, ValueError):  # the last text may have gone in with the end already behind it
-            self._file.flush()
-
-    def stop(self) -> None:
-        self._queue.put(None)
-        self.join(_DRAIN_S)
+def fail(app: Any, error: Exception) -> None:
+    """Ends the app for an exception that came up outside its messages."""
+    app._handle_exception(error)
 
 
 def _nothing() -> None:
@@ -138,15 +87,25 @@ def _nothing() -> None:
 
 
 def _driver_class() -> type[Driver]:
+    import termios  # deferred: POSIX has it
+
     from textual._xterm_parser import XTermParser
     from textual.drivers.linux_driver import LinuxDriver
-    from textual.events import Key
+    from textual.events import Key, Paste
+    from textual.messages import TerminalSupportsSynchronizedOutput
+
+    wanted = (Key, Paste, TerminalSupportsSynchronizedOutput)
 
     def messages(piece: str) -> list[Message]:
-        """What a piece says. A sequence that nobody knows says nothing: its letters would be taken for commands."""
+        """What a piece says. A sequence that nobody knows says nothing: its letters would be taken for commands.
+        Neither does the mouse, nor a report that nobody asked for."""
         if piece == ESC:
             return [Key("escape", ESC)]
-        return list(XTermParser().feed(piece))
+        try:
+            found = list(XTermParser().feed(piece))
+        except (ValueError, OverflowError):  # a key by the number of a character that there is not
+            return []
+        return [message for message in found if isinstance(message, wanted)]
 
     class TerminalDriver(LinuxDriver):
         """Textual's driver with the standard output in place of the standard error."""
@@ -154,27 +113,104 @@ def _driver_class() -> type[Driver]:
         def __init__(self, app: Any, **options: Any) -> None:
             super().__init__(app, **options)
             self.told: Callable[[], None] = _nothing
+            self.stayed = False
+            self._away = True  # the terminal is the shell's
+            self._woken = False
+            self._words = _ON_A_CONSOLE if console() else _ANYWHERE
             out = sys.__stdout__
             if isinstance(out, io.TextIOWrapper):
                 out.reconfigure(errors="replace")  # a glyph that the encoding lacks keeps its one cell
                 self._file = out
 
+        def write(self, data: str) -> None:
+            data = self._words.get(data, data)
+            if data and not data.startswith(_POINTER):
+                super().write(data)
+
         def start_application_mode(self) -> None:
+            with suppress(OSError):
+                os.set_blocking(self.fileno, True)  # as another program may not have left it: writing would fail
+            before = self._writer_thread
             start: Callable[[], None] = super().start_application_mode
             start()
             first, file = self._writer_thread, self._file
-            if first is not None and file is not None:
+            if first is not before and first is not None and file is not None:  # else the shell has the terminal
+                self._away = False
                 first.stop()
                 writer: Any = Writer(file, self._all_sent)
                 writer.start()
                 self._writer_thread = writer
 
+        def stop_application_mode(self) -> None:
+            if not self._away:  # else all of it has been done, and the shell has the terminal
+                super().stop_application_mode()
+                self._away = True
+
+        def disable_input(self) -> None:
+            if not self._away:  # else to flush the input would have the kernel stop the app for good
+                super().disable_input()
+
         def _all_sent(self) -> None:
             self.told()  # whoever listens now
 
+        def _sigtstp_application(self, *_: object) -> None:
+            """Ctrl+Z: to sleep as a program does that knows nothing of it, so that the kernel lets it go on where
+            nobody could wake it."""
+            self._woken = False
+            if not self._away:
+                self.suspend_application_mode()
+            signal.signal(signal.SIGTSTP, signal.SIG_DFL)
+            os.kill(os.getpid(), signal.SIGTSTP)  # returns once it goes on
+            signal.signal(signal.SIGTSTP, self._sigtstp_application)
+            self.stayed = not self._woken
+            if self.stayed:
+                self._back()
+
+        def _sigcont_application(self, *_: object) -> None:
+            self._woken = True
+            if self._mine():
+                self._back()
+            else:  # `bg`, or the shell ends its job: on to sleep, unless it is to end
+                self._loop.call_soon_threadsafe(self._loop.call_later, _LOOK_S, self._sleep)
+
+        def _back(self) -> None:
+            """The terminal is the app's again: as the app needs it, and painted."""
+            if self._away:
+                self._must_signal_resume = True
+                self.resume_application_mode()
+                return
+            with suppress(termios.error):  # stopped and woken by others: Textual would begin to read the keys twice
+                self._raw()
+            for mode in _AGAIN:
+                self.write(mode)
+            self.send_message(self.SignalResume())
+
+        def _sleep(self) -> None:
+            if getattr(self._app, "_exit", False):
+                return
+            if self._mine():
+                self._back()
+            else:
+                os.kill(os.getpid(), signal.SIGSTOP)
+
+        def _mine(self) -> bool:
+            """Whether the terminal takes output and orders from the app, not from the shell that it came from."""
+            try:
+                return os.tcgetpgrp(self.fileno) == os.getpgrp()
+            except OSError:
+                return os.isatty(self.fileno)  # a terminal without jobs; or it has gone, and the app with it
+
+        def _raw(self) -> None:
+            """Keys one by one, as Textual sets it at the start."""
+            now = termios.tcgetattr(self.fileno)
+            now[0], now[3] = self._patch_iflag(now[0]), self._patch_lflag(now[3])
+            now[6][termios.VMIN] = 1
+            termios.tcsetattr(self.fileno, termios.TCSANOW, now)
+
         def run_input_thread(self) -> None:
             """Reads until the app ends, or the terminal does."""
-            decode = codecs.getincrementaldecoder("utf-8")("replace").decode
+            encoding = getattr(sys.__stdin__, "encoding", None) or "utf-8"
+            decode = codecs.getincrementaldecoder(encoding)("replace").decode
             cut = TypeAhead()
             while not self.exit_event.is_set():
                 ready, _, _ = select.select([self.fileno], [], [], _REST_S if cut.waits else _LOOK_S)

@@ -12,7 +12,10 @@ ESC = "\x1b"
 _PASTE, _PASTED, _INTERRUPT = "\x1b[200~", "\x1b[201~", "\x03"
 _KEY = re.compile(r"\x1b(?:\[\[[A-E]|\[[0-?]*[ -/]*[@-~]|O[A-DFHP-S])")  # function keys, and answers of the terminal
 _BEGUN = re.compile(r"\x1b(?:\[\[?|\[[0-?]*[ -/]*|O)?\Z")  # what may still become one of them
+_CLICK = re.compile(r"\x1b\[M[^\x00-\x1f]{3}")  # the mouse, as old terminals tell of it: three characters of any kind
 _ANSWER = re.compile(r"\x1b[\]P_^X][^\x07\x1b]*(?:\x07|\x1b\\)")  # an answer to what another program asked
+_UNASKED = re.compile(f"{_CLICK.pattern}|{_ANSWER.pattern}")
+_COMING = re.compile(r"\x1b(?:\[M[^\x00-\x1f]{0,2}|(?:\]\d+;|P[\d$>+!]|_G)[^\x07\x1b]*\x1b?)\Z")  # one's first part
 
 
 class TypeAhead:
@@ -36,13 +39,15 @@ class TypeAhead:
                 self.rest = text
                 break
             pieces.append(piece)
-        return [piece for piece in pieces if not _ANSWER.fullmatch(piece)]
+        return [piece for piece in pieces if not _UNASKED.fullmatch(piece)]
 
     def timeout(self) -> list[str]:
         """The pieces of what has stood long enough: nothing followed, so it was typed. A paste is waited for."""
         if self.rest.startswith(_PASTE):
             return []
         text, self.rest = self.rest, ""
+        if _COMING.fullmatch(text):  # no keys: what it begins with would be taken for commands
+            return []
         return [ESC, *([text[1:]] if text[1:] else [])] if text else []
 
     @staticmethod
@@ -53,10 +58,10 @@ class TypeAhead:
             return (text, "") if end < 0 else (text[:end], text[end:])
         if text.startswith(_PASTE):
             return _paste(text)
-        if match := _KEY.match(text) or _ANSWER.match(text):
-            return match[0], text[match.end() :]
-        if _BEGUN.fullmatch(text):
+        if _BEGUN.fullmatch(text) or _COMING.fullmatch(text):
             return "", text
+        if match := _CLICK.match(text) or _KEY.match(text) or _ANSWER.match(text):
+            return match[0], text[match.end() :]
         return ESC, text[1:]
 
 
