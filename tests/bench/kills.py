@@ -1,11 +1,17 @@
 """kill -9 while the app edits and saves: `python -m tests.bench.kills [RUNS]` (200).
 
-Each run opens a chain in a pseudo-terminal, sends series steps, each followed by the key that writes the file, and
-kills the process at a random moment. The file must then hold, whole, one of the texts that it held or was given.
+While it saves: each run opens a chain in a pseudo-terminal, sends series steps, each followed by the key that writes
+the file, and kills the process at a random moment. The file must then hold, whole, one of the texts that it held or
+was given.
+
+With work unsaved: each run sends steps of a value, or letters on the text page, at random intervals, notes when, and
+kills the process at a random moment. The file must be as it was, and the recovery file must have every edit that was
+made `MOST_S` or more before the kill.
 """
 
 from __future__ import annotations
 
+import os
 import random
 import shutil
 import signal
@@ -13,13 +19,20 @@ import sys
 import tempfile
 import time
 from collections import Counter
+from contextlib import contextmanager
+from itertools import pairwise
 from pathlib import Path
 
+from polebook.session import recovery
 from tests.terminal.probe import Terminal, app
 from tests.tui.desk import SIX, Desk
 
 SAVES = 12
 KEY = "Q3.rc"
+MOST_S = 2.0
+EDITS = 40
+RUN_S = (0.0, 5.0)  # from a run's first edit to the kill
+PAGES = {"steps": (("f", *KEY, "enter"), "+"), "text page": (("e", "end"), "x")}
 
 
 def texts(path: Path) -> list[str]:
@@ -35,11 +48,8 @@ def killed(path: Path, wait_s: float) -> str:
         terminal.until("? help")
         terminal.press("f", *KEY, "enter", quiet=0.05)
         terminal.write(b"+w" * SAVES)
-        end = time.perf_counter() + wait_s
-        while (left := end - time.perf_counter()) > 0:
-            terminal.read(left)
-        terminal.signal(signal.SIGKILL)
-        terminal.process.wait(10)
+        _read_for(terminal, wait_s)
+        _kill(terminal)
     return path.read_bytes().decode("utf-8")
 
 
@@ -77,10 +87,101 @@ def runs(count: int, seed: int) -> Counter[int]:
     return held
 
 
+def unsaved(path: Path, page: str, source: random.Random, run_s: tuple[float, float]) -> tuple[int, int, float]:
+    """A run killed with work unsaved: edits made, edits kept, seconds from the first that was not kept to the kill.
+
+    Raises AssertionError where the file is not as it was, the work kept is none of the texts, or an edit of more than
+    `MOST_S` before the kill is not in it.
+    """
+    before = path.read_bytes()
+    place, key = PAGES[page]
+    desk = Desk(path, seconds=0.01).press(*place)
+    known = [desk.state.text] + [desk.press(key).state.text for _ in range(EDITS)]
+    made: list[float] = []
+    with Terminal(app(path), XDG_STATE_HOME=os.environ["XDG_STATE_HOME"]) as terminal:
+        terminal.until("? help")
+        terminal.press(*place, quiet=0.1)
+        pace = source.choice((0.1, 0.3, 1.2))  # s between edits, on the average
+        end = time.monotonic() + source.uniform(*run_s)
+        while (left := end - time.monotonic()) > 0:
+            if len(made) < EDITS:
+                made.append(time.monotonic())
+                terminal.write(key.encode())
+            _read_for(terminal, min(source.expovariate(1.0 / pace), left))
+        _kill(terminal)
+        end = time.monotonic()
+    assert path.read_bytes() == before
+    kept, told = recovery.found(str(path), before.decode("utf-8"))
+    assert len(kept) <= 1 and not told, (kept, told)
+    text = kept[0].text if kept else known[0]
+    assert text in known, f"no text that there was:\n{text}"
+    count = known.index(text)
+    old = sum(at <= end - MOST_S for at in made)
+    assert count >= old, f"{count} of {len(made)} edits kept, {old} of them were made {MOST_S} s before the kill"
+    for one in kept:
+        recovery.drop(one)
+    return len(made), count, end - made[count] if count < len(made) else 0.0
+
+
+def unsaved_runs(count: int, seed: int, run_s: tuple[float, float] = RUN_S) -> list[tuple[str, int, int, float]]:
+    """Of each run the page, edits made and kept, and the age of the oldest that was lost (s)."""
+    source = random.Random(seed)
+    found = []
+    with tempfile.TemporaryDirectory() as folder, _state(folder):
+        path = Path(folder) / "chain.toml"
+        for number in range(count):
+            shutil.copy(SIX, path)
+            page = list(PAGES)[number % len(PAGES)]
+            found.append((page, *unsaved(path, page, source, run_s)))
+    return found
+
+
+@contextmanager
+def _state(folder: str):
+    """A state folder of its own, for the app and for looking what it has kept."""
+    before = os.environ.get("XDG_STATE_HOME")
+    os.environ["XDG_STATE_HOME"] = str(Path(folder) / "state")
+    try:
+        yield
+    finally:
+        if before is None:
+            del os.environ["XDG_STATE_HOME"]
+        else:
+            os.environ["XDG_STATE_HOME"] = before
+
+
+def _read_for(terminal: Terminal, seconds: float) -> None:
+    end = time.perf_counter() + seconds
+    while (left := end - time.perf_counter()) > 0:
+        terminal.read(left)
+
+
+def _kill(terminal: Terminal) -> None:
+    terminal.signal(signal.SIGKILL)
+    terminal.process.wait(10)
+
+
+def table(found: list[tuple[str, int, int, float]]) -> list[str]:
+    """Runs by page, and by the age of the oldest edit that a kill took with it."""
+    limits = (0.0, 0.25, 0.5, 0.75, 1.0, 1.25, 1.5, MOST_S)
+    lines = [f"{'page':10} {'runs':>5} {'edits':>6} {'kept':>6} {'none lost':>10} "
+             + " ".join(f"{f'<{high:g} s':>7}" for high in limits[1:]) + f" {'oldest lost':>12}"]
+    for page in PAGES:
+        rows = [row for row in found if row[0] == page]
+        ages = [age for *_, age in rows]
+        counts = [sum(low < age <= high for age in ages) for low, high in pairwise(limits)]
+        lines.append(f"{page:10} {len(rows):5} {sum(row[1] for row in rows):6} {sum(row[2] for row in rows):6} "
+                     f"{sum(age == 0.0 for age in ages):10} " + " ".join(f"{count:7}" for count in counts)
+                     + f" {max(ages, default=0.0):10.2f} s")
+    return lines
+
+
 def main() -> None:
     count = int(sys.argv[1]) if len(sys.argv) > 1 else 200
+    print("\n".join(table(unsaved_runs(count, 2))))
+    print(f"{count} runs killed with work unsaved: every edit of {MOST_S:g} s before the kill is in the recovery file")
     held = runs(count, 1)
-    print(f"{count} runs killed, every file whole; saves done before the kill: "
+    print(f"{count} runs killed while saving, every file whole; saves done before the kill: "
           + ", ".join(f"{saves}: {held[saves]}" for saves in sorted(held)))
 
 

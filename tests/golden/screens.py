@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+import time
 from collections.abc import Callable, Iterator
 from dataclasses import replace
 from functools import cache
@@ -11,10 +12,16 @@ from pathlib import Path
 from polebook.chain.kinds import listings
 from polebook.problem import Problem
 from polebook.session import state as sessions
+from polebook.session.instance import Instance
+from polebook.session.lock import Holder
+from polebook.session.recovery import Kept
 from polebook.session.state import Session
+from polebook.session.watch import Look
+from polebook.text.files import Identity
+from polebook.tui.control import asked, jobs, press, recovered, watching
 from polebook.tui.draw.screen import screen
 from polebook.tui.lines import plain_text
-from polebook.tui.view import Choice, Field, Overlay, State, View
+from polebook.tui.view import Care, Choice, Field, Lever, Overlay, Plot, State, View
 from tests.book.verdict_cases import CASES as CHAINS
 from tests.helpers import DEMOS
 
@@ -111,6 +118,45 @@ def unlucky() -> State:
     return State(replace(session, ledger=None, problems=(problem,)), View(line=2))
 
 
+def written(start: State, *names: str) -> State:
+    """The text page after keys, a second between them."""
+    state, _ = press(start, "e", "e", 0.0)
+    for at, name in enumerate(names, start=1):
+        state, _ = press(state, name, name if len(name) == 1 else None, float(2 * at))
+    return state
+
+
+def swept(name: str, path: str, *keys: str) -> State:
+    """The finished sweep of a key, and keys pressed on it."""
+    state = at(name, path, page="leverage", focus="page", lever=Lever(row=path))
+    state = jobs.advance(press(state, "enter", None, 0.0)[0], lambda: False)
+    for key in keys:
+        state = press(state, key, key, 0.0)[0]
+    return state
+
+
+def beside() -> State:
+    """The listener, edited, while another hand has put another text in its place."""
+    state = pinned(LISTENER, "Q1.rc", "2k4")
+    session = state.session
+    theirs = session.history.disk.replace('"1M"', '"3M"') if session.history.disk is not None else ""
+    return replace(state, care=Care(theirs=Look(session.identity, Identity(0, 0, 0, 0), theirs), asked=True))
+
+
+def held() -> State:
+    """The listener while another polebook has it."""
+    since = time.mktime((2026, 5, 4, 12, 1, 0, 0, 0, -1))  # reads the same in every time zone
+    who = Instance(4711, "bench-2", since)
+    return watching.held(at(LISTENER, "Q1.rc"), Holder("chains/.wire-break-listener.toml.polebook", who), (), 0.0)
+
+
+def left_behind() -> State:
+    """The listener with work of an earlier run that was not written."""
+    when = time.mktime((2026, 5, 4, 12, 1, 0, 0, 0, -1))
+    kept = Kept("", (0, 0, 0), "", when, "", Instance(4711, "bench-2", when))
+    return recovered.ask(recovered.found(at(LISTENER, "Q1.rc"), (kept, kept)))
+
+
 KINDS = tuple(Choice(one.name, one.name, one.about) for one in listings() if one.group == "stage")
 FOUND = tuple(Choice(f"{name}.rb{k}", f"{name}.rb{k} = {value}", f"bias resistor {k}")
               for name in ("Q1", "Q2") for k, value in ((1, "56k"), (2, "12k")))
@@ -138,6 +184,21 @@ CASES: dict[str, Callable[[], State]] = {
     "nodes-row": lambda: at(SIX, "Q4.couple", page="nodes", focus="page", row=3),
     "nodes-lower": lambda: at(LISTENER, "Q1.rc", page="nodes", upper=False),
     "nodes-held": lambda: at(DIODE, "source.resistance", page="nodes"),
+    "response": lambda: at(LISTENER, "Q2.rc", page="response", focus="page"),
+    "response-pinned": lambda: pinned(LISTENER, "Q2.rc", "1k5", page="response"),
+    "response-line": lambda: at(SIX, "Q5.rc", page="response", focus="page", plot=Plot(cursor_hz=2e6, single=True)),
+    "response-zoomed": lambda: at(SIX, "Q5.rc", page="response", focus="page", decibels=False,
+                                  plot=Plot(1e6, 1e7, 2.51e6)),
+    "response-delay": lambda: at(SIX, "Q5.rc", page="response", plot=Plot(what="delay")),
+    "response-input": lambda: at(DIODE, "U1.rf", page="response", plot=Plot(what="input")),
+    "response-plain": lambda: replace(at(SIX, "Q3.rc", page="response", focus="page"), plain=True),
+    "response-unstable": lambda: text(CHAINS["unstable, an op-amp that drives a capacitance"], page="response"),
+    "leverage": lambda: at(SIX, "Q5.rc", page="leverage", focus="page", lever=Lever(row="Q5.rc")),
+    "leverage-lower": lambda: at(LISTENER, "Q2.couple", page="leverage", lever=Lever("lower_edge", "Q2.couple")),
+    "leverage-plain": lambda: replace(at(DIODE, "U1.rf", page="leverage", focus="page"), plain=True),
+    "sweep": lambda: swept(SIX, "Q5.rc", ".", "."),
+    "sweep-short": lambda: swept(LISTENER, "Q2.couple", ",", ",", "v"),
+    "sweep-plain": lambda: replace(swept(DIODE, "U1.rf"), plain=True),
     "field": lambda: field("Q2.ce", "4u7"),
     "field-refused": lambda: field("Q2.ce", "4 kohm", REFUSED),
     "sheet-target": lambda: at(LISTENER, "target.upper"),
@@ -158,6 +219,15 @@ CASES: dict[str, Callable[[], State]] = {
     "cautions": lambda: over(Overlay("cautions", "2 cautions", (
         Choice("", "the sum of time constants comes to 1.5 times the exact lower edge", "go by the exact figure"),
         Choice("Q1", "no d.c. path to the base of Q1", "line 17: it hangs on capacitors alone; give rb1 and rb2")))),
+    "text": lambda: written(at(LISTENER, "Q2.rc"), "down", "end"),
+    "text-moved": lambda: written(at(SIX, "Q5.rc"), "delete", "3"),
+    "text-faults": lambda: written(at(LISTENER, "Q2.rc"), "x", "down", "home", "delete"),
+    "text-never-good": lambda: written(text(spoilt().session.history.text, line=2)),
+    "text-find": lambda: written(at(LISTENER, "Q1.rc"), "ctrl+f", *"couple", "enter"),
+    "changed": lambda: asked.question(beside()),
+    "difference": lambda: asked.both(beside(), Overlay("changed", "")),
+    "recovered": left_behind,
+    "held": held,
     "new": lambda: text("", overlay=Overlay("start", "new chain: source > common-emitter > load", START, typed="68",
                                             cursor=2, row=1)),
 }

@@ -12,6 +12,7 @@ import signal
 import struct
 import subprocess
 import sys
+import tempfile
 import termios
 import time
 from contextlib import suppress
@@ -26,14 +27,19 @@ BYTES = {
     "escape": "\x1b", "backspace": "\x7f", "delete": "\x1b[3~", "home": "\x1b[H", "end": "\x1b[F",
     "pageup": "\x1b[5~", "pagedown": "\x1b[6~", "shift+tab": "\x1b[Z", "space": " ", "ctrl+c": "\x03",
     "ctrl+q": "\x11", "ctrl+z": "\x1a", "ctrl+l": "\x0c", "ctrl+u": "\x15", "ctrl+j": "\n",
+    "ctrl+f": "\x06", "ctrl+g": "\x07", "ctrl+n": "\x0e", "ctrl+p": "\x10", "ctrl+s": "\x13", "ctrl+x": "\x18",
+    "ctrl+y": "\x19", "ctrl+home": "\x1b[1;5H", "ctrl+end": "\x1b[1;5F", "ctrl+left": "\x1b[1;5D",
 }
 """Name of a key -> what a terminal sends for it."""
 _ANSWERS = ((b"\x1b[?2026$p", b"\x1b[?2026;2$y"), (b"\x1b[?2048$p", b"\x1b[?2048;0$y"))
 _FROM_OUTSIDE = ("COLORTERM", "NO_COLOR", "FORCE_COLOR", "TERM_PROGRAM", "TMUX", "LC_ALL", "LC_CTYPE", "COLUMNS",
                  "LINES", "PYTHONIOENCODING", "PYTHONUTF8")
+_AT_THE_END = {"7": "h", "25": "h", "1049": "l", "2004": "l", "2026": "l"}
+"""Every mode that is ever set, and what it must be then: line wrap, cursor, second screen, paste, a frame at once."""
 _KEYBOARD = re.compile(rb"\x1b\[[<>][0-9]*u")  # the emulator would print a part of it
 # takes the pseudo-terminal for its own before the program begins, so that it is hung up with it
-_START = "import fcntl, os, sys, termios; fcntl.ioctl(1, termios.TIOCSCTTY, 0); os.execvp(sys.argv[1], sys.argv[1:])"
+_START = "import fcntl, os, sys, termios; fcntl.ioctl(1, termios.TIOCSCTTY, 0); {}os.execvp(sys.argv[1], sys.argv[1:])"
+_UNCOERCED = 'os.environ.pop("LC_CTYPE", None); '  # this Python has set it where the locale is C
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,22 +59,47 @@ def app(*words: object) -> list[str]:
     return [sys.executable, "-m", "polebook", *map(str, words)]
 
 
+class _Screen(pyte.Screen):
+    """The emulator's screen with a second one, as terminals have it for whole programs."""
+
+    _SECOND = 1049
+    _kept = None
+
+    def set_mode(self, *modes, **private):
+        super().set_mode(*modes, **private)
+        if self._SECOND in modes and self._kept is None:
+            self._kept = [self.buffer[row].copy() for row in range(self.lines)], self.cursor.y, self.cursor.x
+            self.erase_in_display(2)
+
+    def reset_mode(self, *modes, **private):
+        super().reset_mode(*modes, **private)
+        if self._SECOND in modes and self._kept is not None:
+            rows, y, x = self._kept
+            self._kept = None
+            self.erase_in_display(2)
+            for number, row in enumerate(rows[:self.lines]):
+                self.buffer[number].update(row)
+            self.cursor.y, self.cursor.x = min(y, self.lines - 1), min(x, self.columns - 1)
+
+
 class Terminal:
     """A program in a pseudo-terminal of `columns` by `rows`. Use it in a `with` block: it ends the program."""
 
     def __init__(self, words: list[str], columns: int = 80, rows: int = 24, stdin: int | None = None,
                  **env: str) -> None:
         self.log = bytearray()
-        self._screen = pyte.Screen(columns, rows)
+        self._screen = _Screen(columns, rows)
         self._stream = pyte.ByteStream(self._screen)
         self.fd, end = pty.openpty()
         self._size(end, columns, rows)
         outside = {key: value for key, value in os.environ.items() if key not in _FROM_OUTSIDE}
-        outside |= {"TERM": "xterm-256color", "LANG": "C.UTF-8", "PYTHONPATH": str(ROOT / "src")} | env
+        self._state = tempfile.TemporaryDirectory()  # where unsaved work is kept, unless the test has a place for it
+        outside |= {"TERM": "xterm-256color", "LANG": "C.UTF-8", "PYTHONPATH": str(ROOT / "src"),
+                    "XDG_STATE_HOME": self._state.name} | env
         self.begun = time.perf_counter()
         self.process = subprocess.Popen(
-            [sys.executable, "-S", "-c", _START, *words], stdin=end if stdin is None else stdin, stdout=end, stderr=end,
-            env=outside, start_new_session=True)
+            [sys.executable, "-S", "-c", _START.format("" if "LC_CTYPE" in env else _UNCOERCED), *words],
+            stdin=end if stdin is None else stdin, stdout=end, stderr=end, env=outside, start_new_session=True)
         os.close(end)
 
     def __enter__(self) -> Terminal:
@@ -79,6 +110,7 @@ class Terminal:
             self.process.kill()
         self.process.wait(10)
         self.hang_up()
+        self._state.cleanup()
 
     @staticmethod
     def _size(fd: int, columns: int, rows: int) -> None:
@@ -98,12 +130,12 @@ class Terminal:
             os.close(self.fd)
             self.fd = -1
 
-    def read(self, wait: float) -> bytes:
-        """What comes within `wait` seconds; b"" for nothing, or at the end."""
+    def read(self, wait: float, most: int = 65536) -> bytes:
+        """What comes within `wait` seconds, at most so many bytes; b"" for nothing, or at the end."""
         if self.fd < 0 or not select.select([self.fd], [], [], wait)[0]:
             return b""
         try:
-            data = os.read(self.fd, 65536)
+            data = os.read(self.fd, most)
         except OSError as error:
             if error.errno != errno.EIO:
                 raise
@@ -177,6 +209,16 @@ class Terminal:
     def raw(self) -> bool:
         """Whether keys reach the program one by one."""
         return not termios.tcgetattr(self.fd)[3] & termios.ICANON
+
+    @property
+    def left(self) -> str:
+        """What is not as it was, of all that the app sets: "" after an end as it must be."""
+        log = bytes(self.log)
+        modes = {mode.decode(): to.decode() for mode, to in re.findall(rb"\x1b\[\?(\d+)([hl])", log)}
+        wrong = [f"mode {mode} is {to}" for mode, to in modes.items() if _AT_THE_END.get(mode) != to]
+        if log.count(b"\x1b[>1u") > log.count(b"\x1b[<u") or log.count(b"\x1b[>") > log.count(b"\x1b[>1u"):
+            wrong.append("the keyboard")
+        return ", ".join([*wrong, *(["keys one by one"] if self.raw else [])])
 
     @property
     def stopped(self) -> bool:

@@ -16,14 +16,15 @@ LEAVES = {"leave", "suspend", "write"}
 class Pair:
     """The program in its terminal and the same user without one, who press the same keys and must see the same."""
 
-    def __init__(self, terminal, path):
-        self.terminal, self.desk = terminal, Desk(path, seconds=0.01)
-        terminal.shows(self.desk.screen())
+    def __init__(self, terminal, desk, screen=None):
+        self.terminal, self.desk = terminal, desk if isinstance(desk, Desk) else Desk(desk, seconds=0.01)
+        self.screen = screen or self.desk.screen
+        terminal.shows(self.screen())
 
     def press(self, *names):
         self.terminal.write("".join(BYTES.get(name, name) for name in names).encode())
         self.desk.press(*names)
-        self.terminal.shows(self.desk.screen())
+        self.terminal.shows(self.screen())
         return self
 
 
@@ -99,6 +100,7 @@ def test_ctrl_c_leaves_a_field_then_the_app(pair):
     assert pair.terminal.process.poll() is None
     pair.terminal.press("ctrl+c")
     assert pair.terminal.ends() == 0
+    assert pair.terminal.left == ""
 
 
 def test_unsaved_work_is_asked_for(pair, path):
@@ -109,20 +111,12 @@ def test_unsaved_work_is_asked_for(pair, path):
     assert path.read_text(encoding="utf-8") == before
 
 
-def test_ctrl_z_gives_the_shell_its_terminal_and_comes_back(pair):
+def test_ctrl_z_without_a_shell_to_go_back_to(pair):
+    """As over `ssh -t host polebook FILE`: nobody could wake it. With a shell: tests.terminal.test_jobs."""
     pair.press("right")
     pair.terminal.press("ctrl+z")
-    for _ in range(100):
-        if pair.terminal.stopped:
-            break
-        time.sleep(0.05)
-    assert pair.terminal.stopped
-    assert not pair.terminal.raw
-    assert b"\x1b[?1049l" in pair.terminal.log and b"\x1b[?25h" in pair.terminal.log
-    pair.terminal.forget()
-    pair.terminal.signal(signal.SIGCONT)
-    pair.terminal.shows(pair.desk.screen())
-    assert pair.terminal.raw
+    pair.terminal.until("there is no shell to go back to: q leaves")
+    assert pair.terminal.raw and not pair.terminal.stopped
     pair.press("right").press("+")
 
 
@@ -149,13 +143,13 @@ def test_unknown_sequences_do_nothing(pair):
     assert pair.desk.text == before
 
 
-@pytest.mark.parametrize(("number", "code"), [(signal.SIGTERM, 143), (signal.SIGHUP, 129), (signal.SIGQUIT, 131)])
+@pytest.mark.parametrize(("number", "code"), [
+    (signal.SIGTERM, 143), (signal.SIGHUP, 129), (signal.SIGQUIT, 131), (signal.SIGINT, 130)])
 def test_a_signal_leaves_the_terminal_as_it_was(pair, number, code):
     pair.press("right")
     pair.terminal.signal(number)
     assert pair.terminal.ends() == code
-    assert not pair.terminal.raw
-    assert b"\x1b[?1049l" in pair.terminal.log and b"\x1b[?25h" in pair.terminal.log
+    assert pair.terminal.left == ""
 
 
 def test_a_line_that_drops_ends_it(pair):

@@ -7,6 +7,7 @@ from copy import copy
 from pathlib import Path
 
 from polebook.tui.control import Outcome, opening, paste, press
+from polebook.tui.control.jobs import advance
 from polebook.tui.draw.screen import screen
 from polebook.tui.lines import plain_text
 
@@ -37,6 +38,14 @@ class Desk:
     def type(self, text):
         """A text, key by key."""
         return self.press(*text)
+
+    def work(self, pieces=10**6):
+        """Pieces of the job that runs, as the shell gives it time between keys."""
+        for _ in range(pieces):
+            if self.state.job is None:
+                break
+            self.state = advance(self.state, lambda: True)
+        return self
 
     def paste(self, text):
         self.now += self.seconds

@@ -5,11 +5,13 @@ from __future__ import annotations
 import random
 from dataclasses import replace
 
+from polebook.plan.sweep import Point
 from polebook.problem import ProblemsFound
 from polebook.session import state as sessions
 from polebook.session.state import Session
+from polebook.text.history import History
 from polebook.tui.lines import STYLES, Line, width
-from polebook.tui.view import Choice, Field, Overlay, State, View
+from polebook.tui.view import Choice, Field, Lever, Overlay, State, Sweep, View, Writing
 from tests.book.verdict_cases import CASES
 from tests.fuzz_files import spoilt
 from tests.helpers import DEMOS
@@ -17,7 +19,7 @@ from tests.session.random_edits import attempt, random_edit
 
 WORDS = ("", "Q1", "4k7", "a b c", "üΩ漢字 wide", "\x1b[31mred", "x" * 200, "two\nlines\n\n", "\u202eback", "e\u0301")
 PURPOSES = ("help", "working", "cautions", "find", "add", "kind", "card", "cards", "sheets", "leave", "new", "changed",
-            "note", "rename", "take", "start", "choice")
+            "recovered", "difference", "note", "rename", "take", "start", "choice")
 FRIENDLY = sorted(path.read_text(encoding="utf-8") for path in DEMOS.glob("*.toml")) + sorted(CASES.values())
 
 
@@ -38,10 +40,15 @@ def random_view(rng: random.Random, session: Session) -> View:
     sheets = sessions.sheets_of(session)
     sheet = rng.choice(("", "", *sheets, "nothing of the kind"))
     view = View(
-        page=rng.choice(("ledger", "nodes")), line=rng.randrange(-1, 12), focus=rng.choice(("sheet", "page")),
+        page=rng.choice(("ledger", "nodes", "response", "leverage")), line=rng.randrange(-1, 12),
+        focus=rng.choice(("sheet", "page")),
         sheet=sheet, key=rng.randrange(-1, 60), figure=rng.randrange(-1, 9), row=rng.randrange(-1, 40),
         upper=rng.random() < 0.6, decibels=rng.random() < 0.6, message=rng.choice(WORDS), bad=rng.random() < 0.3,
     )
+    if view.page == "leverage":
+        view = replace(view, lever=random_lever(rng, session))
+    if rng.random() < 0.25:
+        return replace(view, writing=random_writing(rng, session))
     if rng.random() < 0.3:
         keys = sessions.keys_of(session, rng.choice(sheets))
         path = rng.choice(keys).path if keys else "Q1.rc"
@@ -54,6 +61,41 @@ def random_view(rng: random.Random, session: Session) -> View:
             rng.choice(PURPOSES), rng.choice(WORDS), choices, text, rng.choice(WORDS), rng.randrange(-1, 9),
             rng.randrange(-1, 70), rng.choice(WORDS), rng.choice(WORDS)))
     return view
+
+
+def random_lever(rng: random.Random, session: Session) -> Lever:
+    """The leverage page with or without a sweep: of the chain or of another, of any values, some of them computed."""
+    figure, row = rng.choice(("gain", "upper_edge", "lower_edge", "none")), rng.choice(("", "Q1.rc", "device.N.beta"))
+    chain = session.good.chain if session.good is not None and rng.random() < 0.7 else \
+        sessions.new_session("x.toml", rng.choice(FRIENDLY)).chain
+    if chain is None or not chain.numbers or rng.random() < 0.3:
+        return Lever(figure, row, open=rng.random() < 0.5)
+    path = rng.choice(sorted(chain.numbers))
+    value = (chain.numbers[path] or 1.0) * 10 ** rng.uniform(-6, 6)
+    span, count = 1 + 10 ** rng.uniform(-2, 6), rng.choice((1, 2, 41))
+    values = tuple(value * span ** (at / 40) for at in range(count))
+    points = tuple(random_point(rng, one) for one in values)
+    sweep = Sweep(rng.choice((path, "Q1.gm")), path, chain, random_point(rng, value), values,
+                  points[:rng.randrange(count + 1)], rng.randrange(-1, 50))
+    return Lever(figure, row, sweep, rng.random() < 0.7)
+
+
+def random_point(rng: random.Random, value: float) -> Point:
+    """A point of a sweep, some of its figures missing, some beyond all bounds."""
+    gain, lower, upper = (rng.choice((None, 0.0, 1e-300, 1e300, 10 ** rng.uniform(-3, 9))) for _ in range(3))
+    return Point(value, gain if gain is None or rng.random() < 0.7 else -gain, lower, upper, why=rng.choice(WORDS))
+
+
+def random_writing(rng: random.Random, session: Session) -> Writing:
+    """The text page in the midst of it: judged or not, faults of another text too, a cursor anywhere."""
+    text = session.history.text
+    for _ in range(rng.choice((0, 1, 5))):
+        at = rng.randrange(len(text) + 1)
+        piece = rng.choice((*WORDS, "\n", "\r\n", "\t", "[[", '"'))
+        text = text[:at] + piece + text[at + rng.choice((0, 0, 1, 40)):]
+    after = sessions.set_text(session, text, 0.0) if rng.random() < 0.7 else session
+    return Writing(History(text, rng.choice((None, text))), after, rng.choice((None, session.good)),
+                   rng.randrange(-1, len(text) + 9), find=rng.choice((None, None, *WORDS)))
 
 
 def random_state(rng: random.Random, number: int) -> State:

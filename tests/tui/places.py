@@ -16,6 +16,10 @@ PLACES = {
     "nodes, sheet": ("pagedown",),
     "nodes, a row": ("tab", "2", "down", "down"),
     "nodes of the load": ("end", "tab", "2"),
+    "leverage": ("tab", "7"),
+    "leverage, a row": ("tab", "7", "down", "down"),
+    "leverage, sheet": ("tab", "7", "tab"),
+    "sweep": ("tab", "7", "enter", ".", "."),
     "targets": ("t", "enter"),
     "supply": ("t", "down", "enter"),
     "preferred": ("t", "down", "down", "down", "enter"),
@@ -36,10 +40,12 @@ PLACES = {
     "take": ("t", "end", "enter"),
     "note": ("n",),
     "rename": ("r",),
+    "text": ("e",),
+    "text, looked through": ("e", "ctrl+f", "r"),
     "leave": ("+", "q"),
 }
 OVER_TEXT = frozenset({"field", "field refused", "find", "add", "kind", "card list", "flag list", "sheets", "take",
-                       "note", "rename"})
+                       "note", "rename", "text", "text, looked through"})
 """Places where every character is text."""
 
 

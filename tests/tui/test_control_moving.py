@@ -42,14 +42,17 @@ def test_pages_by_digit_only_with_the_page_focused(desk):
     assert (desk.view.page, desk.view.focus) == ("nodes", "page")
     desk.press("1")
     assert desk.view.page == "ledger"
-    assert "there is no page 7" in desk.press("7").view.message
-    assert desk.view.bad
+    for digit, name in (("3", "response"), ("7", "leverage"), ("2", "nodes")):
+        assert desk.press(digit).view.page == name
+    assert "there is no page 9: the pages are 1 ledger, 2 nodes, 3 response" in desk.press("9").view.message
+    assert (desk.view.bad, desk.view.page) == (True, "nodes")
 
 
 def test_pages_by_page_keys_from_either_focus(desk):
-    assert desk.press("pagedown").view.page == "nodes"
-    assert desk.press("pagedown").view.page == "nodes"
-    assert desk.press("tab", "pageup").view.page == "ledger"
+    seen = [desk.press("pagedown").view.page for _ in range(4)]
+    assert seen == ["nodes", "response", "leverage", "leverage"]
+    seen = [desk.press("tab", "pageup").view.page for _ in range(4)]
+    assert seen == ["response", "nodes", "ledger", "ledger"]
 
 
 def test_rows_of_the_ledger_are_its_lines(desk):

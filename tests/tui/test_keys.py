@@ -3,7 +3,7 @@
 import pytest
 
 from polebook.tui import keys
-from polebook.tui.control import pressing
+from polebook.tui.control import pages, pressing
 from polebook.tui.draw.overlay import overlay
 from tests.cli.helpers import ROOT
 
@@ -17,13 +17,15 @@ def test_every_key_of_the_design_does_what_it_says():
         "k": "kind", "o": "leave out", "n": "note", "g": "decibels", "b": "band", "!": "cautions", "enter": "act",
         "escape": "back", "+": "step up", "-": "step down", "*": "decade up", "/": "decade down", "u": "undo",
         "U": "redo", "w": "write", "p": "pin", "=": "working", "f": "find", "t": "sheets", "?": "help", "q": "leave",
-        "ctrl+q": "leave", "ctrl+c": "leave", "ctrl+z": "suspend", "1": "page", "2": "page",
+        "ctrl+q": "leave", "ctrl+c": "leave", "ctrl+z": "suspend", "1": "page", "2": "page", "3": "page", "7": "page",
+        "e": "text", "z": "zoom in", "Z": "zoom out", "[": "pan left", "]": "pan right",
     }
     assert {key: keys.ACTIONS[key] for key in fixed} == fixed
 
 
 def test_no_key_of_a_page_that_is_not_there():
-    assert not {"3", "0", "e", "z", "Z", "[", "]"} & set(keys.ACTIONS)
+    assert not {"4", "5", "6", "8", "9", "0"} & set(keys.ACTIONS)
+    assert set(keys.PAGES.values()) == set(pages.PAGES)
 
 
 def test_every_action_is_work():
@@ -50,13 +52,13 @@ def test_alt_and_a_character_are_esc_and_that_character(pressed, are):
 
 def test_hints_fit_in_80_columns_and_name_real_keys():
     for purpose in ("", "help", "find", "note", "leave", "start", "new", "cautions", "rename"):
-        for focus in ("sheet", "page"):
-            line = "   ".join(" ".join(hint) for hint in keys.hints(focus, purpose))
-            assert len(line) <= 78, line
-    known = " ".join(" ".join(key.shown) for key in keys.KEYS)
-    for focus in ("sheet", "page"):
-        for names, _ in keys.hints(focus):
-            assert all(name in known for name in names.split())
+        line = "   ".join(" ".join(hint) for hint in keys.hints("sheet", purpose))
+        assert len(line) <= 78, line
+    known = {name for key in keys.KEYS for name in key.shown}
+    for focus, page in [("sheet", "ledger"), *(("page", name) for name in keys.PAGES.values())]:
+        told = keys.hints(focus, page=page)
+        assert all(name in known for names, _ in told for name in names.split())
+        assert ("?", "help") in told
     assert keys.hints("sheet", field=True)[0] == ("Enter", "accept")
 
 

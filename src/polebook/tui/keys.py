@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from textwrap import wrap
 from types import MappingProxyType
 
-PAGES = {"1": "ledger", "2": "nodes"}
+PAGES = {"1": "ledger", "2": "nodes", "3": "response", "7": "leverage"}
 """Digit -> page, of the pages that there are."""
 
 
@@ -42,7 +42,13 @@ KEYS: tuple[Key, ...] = (
     Key(("home", "end"), ("first line", "last line"), ("Home", "End"), "ends", "to the source, to the load", MOVING),
     Key(("up", "down"), ("row before", "row after"), ("↑", "↓"), "row", "key on the sheet, row on a page", MOVING),
     Key((",", "."), ("figure before", "figure after"), (",", "."), "figure",
-        "with the page focused: figure before, after in the row", MOVING),
+        "with the page focused: figure before, after in the row; cursor of a plot", MOVING),
+    Key(("z", "Z"), ("zoom in", "zoom out"), ("z", "Z"), "zoom", "zoom a plot in, out", MOVING),
+    Key(("[", "]"), ("pan left", "pan right"), ("[", "]"), "pan", "pan a plot left, right", MOVING),
+    Key(("v", "V"), ("next curve", "curve before"), ("v", "V"), "curves",
+        "what the page shows: next, before (response: gain, delay, impedances; leverage: the figure that ranks)",
+        MOVING),
+    Key(("s",), ("single lines",), ("s",), "single lines", "the curve of the selected line, on and off", MOVING),
     Key(("tab", "shift+tab"), ("focus",), ("Tab",), "sheet, page", "sheet, page; in a field: accept and next key",
         MOVING),
     Key(("escape",), ("back",), ("Esc",), "back", "leave the field, close, back to the ledger", MOVING),
@@ -63,6 +69,7 @@ KEYS: tuple[Key, ...] = (
     Key(("k",), ("kind",), ("k",), "kind", "change the stage's kind, keeping what fits", STAGES),
     Key(("o",), ("leave out",), ("o",), "leave out", "leave it out (kept in the file); again: take it in", STAGES),
     Key(("n",), ("note",), ("n",), "note", "note of the line", STAGES),
+    Key(("e",), ("text",), ("e",), "text", "the file as text", FILE),
     Key(("u", "U"), ("undo", "redo"), ("u", "U"), "undo", "undo, redo", FILE),
     Key(("w",), ("write",), ("w",), "write", "write the file", FILE),
     Key(("q", "ctrl+q", "ctrl+c"), ("leave",), ("q",), "leave", "leave; asks only where work is unsaved", FILE),
@@ -150,29 +157,51 @@ _IN_NEW: tuple[Hint, ...] = (("type", "to narrow"), ("↑ ↓", "choose"), ("Ent
                              ("Esc", "take the last back, leave"))
 _IN_NOTE: tuple[Hint, ...] = (("Enter", "accept"), ("ctrl+j", "new line"), ("Esc", "leave it as it was"))
 _IN_NAME: tuple[Hint, ...] = (("Enter", "accept"), ("Esc", "leave it as it was"))
+_IN_CHANGED: tuple[Hint, ...] = (("↑ ↓", "choose"), ("Enter", "do it"), ("Esc", "decide later"))
+_IN_DIFFERENCE: tuple[Hint, ...] = (("↑ ↓ PgUp PgDn", "scroll"), ("Esc", "back to the choice"))
 _IN_LEAVE: tuple[Hint, ...] = (("↑ ↓", "choose"), ("Enter", "do it"), ("Esc", "stay"))
+_IN_WRITING: tuple[Hint, ...] = (
+    ("Esc", "take it in"), ("ctrl+u", "undo"), ("ctrl+y", "redo"), ("Tab", "next value"), ("ctrl+s", "write"),
+    ("ctrl+f", "find"), ("ctrl+x", "line out"), ("ctrl+g", "as it was"), ("ctrl+q", "leave"))
+_IN_FAULTS: tuple[Hint, ...] = (("ctrl+n", "next fault"), *_IN_WRITING[:3], *_IN_WRITING[4:6], *_IN_WRITING[6:])
+_IN_SEARCH: tuple[Hint, ...] = (("type", "to find"), ("Enter", "next"), ("↑", "before"), ("Esc", "stay there"))
 _OVERLAYS = {"help": _IN_TEXT, "working": _IN_TEXT, "cautions": _IN_ROWS, "leave": _IN_LEAVE, "note": _IN_NOTE,
-             "rename": _IN_NAME, "take": _IN_NAME, "start": _IN_FORM, "new": _IN_NEW}
+             "rename": _IN_NAME, "take": _IN_NAME, "start": _IN_FORM, "new": _IN_NEW,
+             "changed": _IN_CHANGED, "recovered": _IN_CHANGED, "difference": _IN_DIFFERENCE}
 _SHEET = ("Enter", "+ -", "Tab", "=", "u U", "w", "?")
-_PAGE = ("1 2", "Enter", ", .", "Tab", "=", "?")
+_ON_PAGE = {
+    "ledger": ("1 2 3 7", "Enter", ", .", "Tab", "=", "?"),
+    "nodes": ("1 2 3 7", "Enter", ", .", "Tab", "=", "?"),
+    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", "1 2 3 7", "Tab", "?"),
+    "leverage": ("Enter", "v V", "b", "=", "1 2 3 7", "Tab", "?"),
+}
 
 
-def hints(focus: str, overlay: str = "", field: bool = False) -> tuple[Hint, ...]:
+def hints(focus: str, overlay: str = "", field: bool = False, page: str = "ledger") -> tuple[Hint, ...]:
     """What can be pressed now, the most useful first; the drawing takes as many as fit.
 
     focus    "sheet" or "page";  overlay  purpose of what lies over the page, "" for nothing;  field  one is open
+    page     the one in sight
     """
     if field:
         return _IN_FIELD
     if overlay:
         return _OVERLAYS.get(overlay, _IN_LIST)
     rows = {" ".join(key.shown): key for key in KEYS}
-    best = _SHEET if focus == "sheet" else _PAGE
-    first = [(shown(rows[name]), _WORDS.get((focus, name), rows[name].word)) for name in best]
-    return tuple(first)
+    best = _SHEET if focus == "sheet" else _ON_PAGE[page]
+    here = [focus] if focus == "sheet" else [page, focus]
+    return tuple((shown(rows[name]), next((_WORDS[at, name] for at in here if (at, name) in _WORDS), rows[name].word))
+                 for name in best)
 
 
-_WORDS = {("sheet", "Tab"): "page", ("page", "Tab"): "sheet", ("page", "Enter"): "to its key"}
+def writing_hints(faults: bool, finding: bool) -> tuple[Hint, ...]:
+    """What can be pressed on the text page, where every character is text."""
+    return _IN_SEARCH if finding else _IN_FAULTS if faults else _IN_WRITING
+
+
+_WORDS = {("sheet", "Tab"): "page", ("page", "Tab"): "sheet", ("page", "Enter"): "to its key",
+          ("response", ", ."): "cursor", ("response", "Enter"): "next corner", ("response", "s"): "own curve",
+          ("leverage", "Enter"): "sweep it", ("leverage", "v V"): "rank by"}
 
 
 def table() -> list[str]:

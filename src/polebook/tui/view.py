@@ -3,12 +3,21 @@
 from __future__ import annotations
 
 import dataclasses
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
-from typing import Literal
+from typing import TYPE_CHECKING, Any, Literal
 
 from polebook.session.state import Session
+from polebook.text.history import History
 
-Page = Literal["ledger", "nodes"]
+if TYPE_CHECKING:
+    from polebook.book.ledger import Ledger
+    from polebook.chain.model import Chain
+    from polebook.plan.sweep import Point
+    from polebook.session.recovery import Kept
+    from polebook.session.watch import Look
+
+Page = Literal["ledger", "nodes", "response", "leverage"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -34,7 +43,8 @@ class Choice:
 class Overlay:
     """What lies over the page: a list to choose from, or text to read.
 
-    purpose  "help", "working", "cautions", "find", "add", "kind", "card", "sheets", "leave", "new", "changed"
+    purpose  "help", "working", "cautions", "find", "add", "kind", "card", "sheets", "leave", "new", "changed",
+             "recovered", "difference"
     typed    text that narrows a list (find, cards), or that is being edited (note, rename)
     row      chosen row of a list, or first line shown of a text
     """
@@ -48,6 +58,107 @@ class Overlay:
     row: int = 0
     refusal: str = ""
     about: str = ""  # the path or stage that it acts on
+
+
+@dataclass(frozen=True, slots=True)
+class Plot:
+    """Where the user is on a plot over frequency (Hz). None: as much as the chain asks, the cursor at its reference.
+
+    what    curves that are drawn
+    single  the curves of single lines too
+    """
+
+    low_hz: float | None = None
+    high_hz: float | None = None
+    cursor_hz: float | None = None
+    what: str = "gain"
+    single: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Sweep:
+    """One value of the chain over a range, as far as it has been computed.
+
+    row     of the ranking that it is of, "Q5.rc";  path  among the chain's numbers: of a device's own part its card's
+    chain   that it was computed with;  today  its figures as they were then
+    values  SI units, of one sign, the nearest to 0 first;  points  those that are done
+    cursor  number of a value
+    """
+
+    row: str
+    path: str
+    chain: Chain
+    today: Point
+    values: tuple[float, ...]
+    points: tuple[Point, ...] = ()
+    cursor: int = 0
+
+
+@dataclass(frozen=True, slots=True)
+class Lever:
+    """Where the user is on the leverage page.
+
+    figure  by which it ranks;  row  name of the chosen row, "" for the first
+    sweep   the last one;  open  the keys are those of its plot
+    """
+
+    figure: str = "upper_edge"
+    row: str = ""
+    sweep: Sweep | None = None
+    open: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Writing:
+    """The file as text while it is being edited: its own undo, the cursor in it, and what it comes to.
+
+    after   the session as leaving the page would make it; that of an earlier text while this one is yet to be judged
+    begun   the figures that there were when the page was opened
+    cursor  character of the text
+    column  character of the line that up and down keep to; None: the cursor's own
+    run     number of the run of typing, which a move of the cursor ends
+    find    text that is looked for, None while nothing is
+    """
+
+    history: History
+    after: Session
+    begun: Ledger | None = None
+    cursor: int = 0
+    column: int | None = None
+    run: int = 0
+    find: str | None = None
+
+    @property
+    def judged(self) -> bool:
+        """Whether `after` is that of the text as it is."""
+        return self.after.history.text == self.history.text
+
+
+@dataclass(frozen=True, slots=True)
+class Takes:
+    """What becomes of a job's pieces: each put into the state; the end told: True where all were done."""
+
+    piece: Callable[[State, Any], State]
+    ended: Callable[[State, bool], State]
+
+
+@dataclass(frozen=True, slots=True)
+class Job:
+    """Work in the background, a piece at a time between the keys. It goes on whatever page is in sight.
+
+    name   what it does, for its user: "sweep of Q5.rc"
+    page   where it is watched; Esc stops it there
+    work   yields (done, total, piece), one piece in some milliseconds; what has faults raises ProblemsFound
+    rest   seconds that it waits before it begins
+    """
+
+    name: str
+    page: Page
+    work: Iterator[tuple[int, int, Any]]
+    takes: Takes
+    done: int = 0
+    total: int = 0
+    rest: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -79,6 +190,28 @@ class View:
     bad: bool = False  # the message tells of something refused
     top: dict[str, int] = dataclasses.field(default_factory=dict)
     digit_at: float = float("-inf")
+    plot: Plot = Plot()
+    lever: Lever = Lever()
+    writing: Writing | None = None  # the text page is open
+
+
+@dataclass(frozen=True, slots=True)
+class Care:
+    """What is done so that nothing is lost.
+
+    theirs  what another hand has put in the file's place and nobody has decided on yet;  asked  it was offered
+    kept    work of earlier runs that was not written, still to be decided on
+    taken   such work that is in the session now
+    unkept  why unsaved work can't be kept, "" where it can
+    keep    leaving keeps what is unsaved for the next opening
+    """
+
+    theirs: Look | None = None
+    asked: bool = False
+    kept: tuple[Kept, ...] = ()
+    taken: tuple[Kept, ...] = ()
+    unkept: str = ""
+    keep: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -89,3 +222,18 @@ class State:
     view: View
     plain: bool = False  # ASCII only
     colour: bool = True
+    job: Job | None = None
+    care: Care = Care()
+
+    @property
+    def text(self) -> str:
+        """The file's text with what is being written on the text page."""
+        return self.session.history.text if self.view.writing is None else self.view.writing.history.text
+
+    @property
+    def unsaved(self) -> bool:
+        """Whether something stands here that the file does not hold."""
+        session = self.session
+        if not session.exists and not self.text:
+            return False
+        return session.gone or self.text != session.history.disk

@@ -126,6 +126,8 @@ def changed(state: State, session: Session, said: str = "", go: str = "") -> Sta
     if session is state.session:
         return state
     before, name, key = state.session, line(state), focused(state)
+    if state.view.line >= len(lines(before)):  # a text that is no TOML hides its stages: the number is what is known
+        name, key = "", None
     after = replace(state, session=session)
     names = lines(session)
     place = names.index(name) if name in names else min(state.view.line, len(names) - 1)

@@ -35,7 +35,7 @@ def go(state: State, path: str) -> Done:
     """To the key or sheet that a row is about."""
     state = at(state, overlay=None)
     if not path:
-        return say(state, "this one is about no single key")
+        return say(state, "this one is about no single key; e opens the file as text")
     return say(to_path(state, path), "")
 
 

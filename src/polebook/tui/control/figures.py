@@ -6,7 +6,8 @@ from polebook.book.reach import within_reach
 from polebook.problem import ProblemsFound
 from polebook.session.state import keys_of
 from polebook.stages.ladder import arm_part
-from polebook.tui.draw import ledger, nodes
+from polebook.tui.draw import nodes
+from polebook.tui.draw.pages import drawn
 from polebook.tui.draw.scene import Scene
 from polebook.tui.view import State
 
@@ -18,7 +19,7 @@ def names_of(state: State) -> tuple[str, ...]:
         return ()
     try:
         with within_reach(scene.chain):
-            return ledger.figures(scene) if state.view.page == "ledger" else nodes.figures(scene)
+            return drawn(scene).figures(scene)
     except ProblemsFound:  # figures beyond what can be computed: none can be focused
         return ()
 

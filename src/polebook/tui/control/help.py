@@ -13,6 +13,8 @@ _FRAME = (
     ("the sheet", "every key of the selected line. Type a value as on paper: 4k7, 100n, 1.5M. A bad one stays open, "
      "with the reason."),
     ("the verdict", "what limits the chain now, and by which mechanism."),
+    ("unsaved work", "is kept outside the file within two seconds of an edit, and offered when the file is opened "
+     "again after anything but leaving by choice. What another program does to the file is noticed and asked about."),
     ("the baseline", "p pins today's figures; from then on every figure that moved shows by how much."),
 )
 _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
@@ -34,7 +36,49 @@ _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
         ("estimates", "from the sum of time constants and from the node poles, beside the exact edge: what the short "
          "cuts cost"),
     ),
+    "response": (
+        ("g, p, d, Z", "at the end of a curve: gain, phase (in dots, on the right axis), delay, size of an impedance"),
+        ("b", "the pinned baseline, in dashes"),
+        ("own curve", "s: that of the selected line beside the chain's; of impedances the line's in place of the "
+         "chain's"),
+        ("limits", "the upright lines are the targets' edges; between them the response must stay above -3 dB, "
+         "the dotted level"),
+        ("\u25cf", "today's edges, on that level"),
+        ("\u00d7", "poles, on the axis; those of the selected line stand out. Complex pairs stand at their |p|/(2 pi)"),
+        ("cursor", "moves on round frequencies, about a column a step; closer steps where the plot is zoomed. Enter "
+         "takes it to the next edge or target"),
+        ("window", "z Z closer, further about the cursor; [ ] sideways, Home End to the ends; Esc the whole band"),
+        ("lost", "dB below the midband gain, of the chain and of each line; negative where it rises above"),
+        ("delay", "group delay. Where it spans too much for a plain axis, equal ratios; negative parts then in dots"),
+        ("Z in, Z out", "into n0 with the source's impedance away; at the last node with the load away. As: the "
+         "resistance and capacitance (or coil) in parallel that it looks like there"),
+    ),
+    "leverage": (
+        ("1 % more of", "parts, figures of cards and stated currents, that first which moves the ranking figure most"),
+        ("gain, lower, upper", "per cent that each moves by; where a part sets the bias, what that does is in it"),
+        ("role", "the end of the band at which the part acts; card: it moves every stage that uses the card"),
+        ("a sweep", "Enter puts the part through a decade either way: gain and edges over today's, which the dot "
+         "marks; the slope there is the leverage"),
+        ("its limits", "≥ ≤ at the left: target of the figure that ranks; = on the axis: gain and edges are as wanted"),
+        ("its cursor", ", . move it; Enter sets the part to the value there, the nearest of its preferred series; "
+         "z Z [ ] sweep another range"),
+    ),
 }
+
+
+_WRITING = (
+    ("e", "opens the file as text, at its first fault, else at the focused key; every character is text there"),
+    ("Esc", "leaves it and takes the text in as one edit, faults and all; u takes it back, e mends it"),
+    ("! before a line", "a fault stands on it; below, the fault of the cursor's line or the next one"),
+    ("ctrl+n ctrl+p", "to the fault after, before"),
+    ("ctrl+u ctrl+y", "undo, redo what was written; ctrl+g goes back to what the page was opened with"),
+    ("ctrl+f", "find a text; Enter the next, Up the one before"),
+    ("Tab", "to the next value; shift+Tab to the one before"),
+    ("ctrl+x ctrl+k", "take out the line, the rest of the line; ctrl+w the word before"),
+    ("ctrl+s", "write the file and stay; ctrl+q takes the text in and leaves"),
+    ("the figures", "are of the text as it stands, beside what has moved since the page was opened; with faults those "
+     "of before"),
+)
 
 
 def overlay(state: State) -> Overlay:
@@ -43,6 +87,7 @@ def overlay(state: State) -> Overlay:
     pages: list[Page] = [state.view.page, *(name for name in _WORDS if name != state.view.page)]
     for name in pages:
         lines += ["", f"Words of the {name} page", *_told(_WORDS[name])]
+    lines += ["", "The text page", *_told(_WRITING)]
     lines += ["", "Around the page", *_told(_FRAME)]
     return Overlay("help", "keys and words", text=tuple(lines))
 

@@ -5,38 +5,39 @@ from __future__ import annotations
 from dataclasses import replace
 
 from polebook.problem import ProblemsFound, printable
-from polebook.session.state import ChangedOnDisk, Session, reload, save
-from polebook.tui.control.base import Done, Outcome, at, changed, done, reason, refuse, say
-from polebook.tui.view import Choice, Overlay, State
+from polebook.session import places, watch
+from polebook.session.state import ChangedOnDisk, Session, agreed, changed_on_disk, reload, save
+from polebook.text.history import History
+from polebook.tui.control import fields, notes, writing_judged
+from polebook.tui.control.asked import both, care, question
+from polebook.tui.control.base import Done, Outcome, at, changed, done, focused, reason, refuse, say
+from polebook.tui.view import Care, Choice, Overlay, State
 
-_LEAVE = (
-    Choice("write", "write the file and leave"),
-    Choice("lose", "leave without writing: what was edited is lost"),
-    Choice("stay", "stay"),
-)
-_CHANGED = (
-    Choice("read", "read it again", "what is here becomes one edit back: u brings it back"),
-    Choice("over", "write over it", "what was written there meanwhile is lost"),
-    Choice("stay", "do nothing now"),
-)
+_WRITE = Choice("write", "write the file and leave")
+_LOSE = Choice("lose", "leave without writing: what was edited is lost")
+_KEEP = Choice("keep", "leave; opening the file again offers what was edited")
+_STAY = Choice("stay", "stay")
 
 
 def write(state: State, over: bool = False) -> Done:
     """The file written, or the reason why not."""
     session = state.session
-    if session.history.saved and not over:
+    if session.saved and not over and not changed_on_disk(session):
         return say(state, "nothing to write: the file is as it stands here")
     try:
         saved = save(session, over)
-    except ChangedOnDisk as found:
-        return done(at(state, overlay=Overlay("changed", told(found), _CHANGED), field=None))
+    except ChangedOnDisk:
+        try:
+            look = watch.at_once(session.path, session.identity)
+        except OSError as error:
+            return refuse(state, f"the file can't be looked at ({places.words(error)})", "w tries again")
+        if look is None:  # it is as it was after all
+            return write(state, over=True)
+        return done(question(care(state, look, asked=True), writes=True))
     except ProblemsFound as found:
         return say(state, reason(found), bad=True)
-    return say(replace(state, session=saved), f"written: {printable(session.path)}{_faults(saved)}")
-
-
-def told(found: ProblemsFound) -> str:
-    return found.problems[0].what
+    after = replace(state, session=saved, care=Care(kept=state.care.kept, unkept=state.care.unkept))
+    return say(after, f"written: {printable(session.path)}{_faults(saved)}")
 
 
 def _faults(session: Session) -> str:
@@ -46,34 +47,63 @@ def _faults(session: Session) -> str:
 
 def leave(state: State) -> Done:
     """Out, or the question what becomes of the work."""
-    if state.session.history.saved or not (state.session.exists or state.session.history.text):
+    if not state.unsaved:
         return state, Outcome.QUIT
-    count = len(state.session.history.past)
-    edits = f"{count} edit{'s' if count != 1 else ''}" if count else "a new chain"
-    overlay = Overlay("leave", f"{edits} not written yet", _LEAVE)
-    return done(at(state, overlay=overlay, field=None))
+    session = state.session
+    count = _unwritten(session.history) + (state.text != session.history.text)
+    edits = f"{count} edit{'s' if count != 1 else ''}" if session.exists and count else \
+        "what stands here is" if session.exists else "a new chain"
+    shut = bool(session.held or session.read_only)
+    choices = (_KEEP, _LOSE, _STAY) if shut else (_WRITE, _LOSE, _STAY)
+    return done(at(state, overlay=Overlay("leave", f"{edits} not written yet", choices), field=None))
+
+
+def _unwritten(history: History) -> int:
+    """Steps since the file held the text; 0 where that was not before them."""
+    count = 0
+    while history.past and not history.saved:
+        history, count = history.undo(), count + 1
+    return count if history.saved else 0
 
 
 def leaving(state: State, value: str) -> Done:
     """What was chosen on leaving."""
     state = at(state, overlay=None)
-    if value == "lose":
-        return state, Outcome.QUIT
+    if value in ("lose", "keep"):
+        return replace(state, care=replace(state.care, keep=value == "keep")), Outcome.QUIT
     if value == "write":
-        after, outcome = write(state)
-        return (after, Outcome.QUIT) if after.session.history.saved else (after, outcome)
+        after, outcome = write(writing_judged.taken_in(state))
+        return (after, Outcome.QUIT) if after.session.saved else (after, outcome)
     return done(state)
 
 
-def settle(state: State, value: str, now: float) -> Done:
-    """What was chosen for a file that another hand has changed."""
-    state = at(state, overlay=None)
-    if value == "over":
-        return write(state, over=True)
+def settle(state: State, overlay: Overlay, value: str, now: float) -> Done:
+    """What was chosen for a file that another hand has changed; `state` has nothing over the page."""
+    look = state.care.theirs
+    if value == "both":
+        return done(both(state, overlay))
     if value == "read":
         try:
             session = reload(state.session, now)
         except ProblemsFound as found:
             return refuse(state, reason(found))
-        return done(changed(state, session))
-    return done(state)
+        return done(changed(care(state, None), session))
+    if value != "mine" or look is None:
+        return done(state)
+    state = care(replace(state, session=agreed(state.session, look)), None)
+    if overlay.about == "write" or look.identity is None:
+        return write(state)
+    return say(state, "kept: w writes what stands here over what is on the disk")
+
+
+def half_typed(state: State, now: float) -> State:
+    """The state with an open note or line of words accepted, as far as it can be: the program is ending.
+
+    A quantity is not: half of one is another one.
+    """
+    view, row = state.view, focused(state)
+    if view.overlay is not None and view.overlay.purpose == "note":
+        return notes.press(state, view.overlay, "enter", None, now)[0]
+    if view.field is not None and row is not None and row.path == view.field.path and row.key in ("title", "note"):
+        return fields.accept(state, view.field, 0, now)[0]
+    return state

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from polebook.tui.control.base import Done, at, done, line, lines, refuse, rows, to_path, to_sheet
-from polebook.tui.control.figures import names_of, parts_of
+from polebook.tui.control import jobs, pages
+from polebook.tui.control.base import Done, at, done, line, lines, refuse, rows, to_sheet
+from polebook.tui.control.figures import names_of
 from polebook.tui.keys import PAGES
 from polebook.tui.view import Page, State
 
-_ORDER: tuple[Page, ...] = ("ledger", "nodes")
+_ORDER: tuple[Page, ...] = tuple(pages.PAGES)
 
 
 def page(state: State, digit: str, now: float) -> Done:
@@ -49,9 +50,10 @@ def step_row(state: State, by: int) -> Done:
     if view.focus == "sheet":
         count = len(rows(state))
         return done(at(state, key=min(max(min(view.key, count - 1) + by, 0), max(count - 1, 0))))
-    if view.page == "ledger":
+    number = pages.ways(state).rows
+    if number is None:
         return step_line(state, by)
-    count = len(parts_of(state))
+    count = number(state)
     return done(at(state, row=min(max(min(view.row, count - 1) + by, 0), max(count - 1, 0))))
 
 
@@ -69,8 +71,10 @@ def focus(state: State) -> Done:
 
 
 def back(state: State) -> Done:
-    """One step back: to the line's own sheet, to the ledger, to the sheet."""
+    """One step back: what runs stopped; to the line's own sheet, to the ledger, to the sheet."""
     view = state.view
+    if jobs.watched(state) is not None:
+        return done(jobs.stopped(state))
     if view.sheet:
         return done(to_sheet(state, line(state)))
     if view.page != "ledger":
@@ -80,9 +84,10 @@ def back(state: State) -> Done:
 
 def act_on_page(state: State) -> Done:
     """Enter on a row of the page: the key that makes it, else the line's sheet."""
-    if state.view.page == "nodes":
-        found = parts_of(state)
-        if found:
-            return done(to_path(state, found[min(state.view.row, len(found) - 1)]))
-    return done(at(state, focus="sheet"))
+    return pages.ways(state).act(state)
+
+
+def no_plot(state: State) -> Done:
+    """A key of a plot on a page that has none."""
+    return refuse(state, f"the {state.view.page} page has no plot", "3 is the response")
 

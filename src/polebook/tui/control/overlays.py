@@ -8,13 +8,13 @@ from dataclasses import replace
 from polebook.problem import ProblemsFound
 from polebook.session.state import add_stage, rename_stage, set_value
 from polebook.tui import keys
-from polebook.tui.control import cards, cautions, leaving, lists, new, notes, stages
+from polebook.tui.control import cards, cautions, leaving, lists, new, notes, recovered, stages, watching
 from polebook.tui.control.base import Done, at, attempt, done, reason, to_path
 from polebook.tui.control.typing import insert, one_line, typed
 from polebook.tui.view import Choice, Overlay, State
 
-READING = {"help": "?", "working": "="}  # texts, and the key that opened each closes it too
-ASKING = frozenset({"leave", "changed", "cautions"})  # rows that no typing narrows
+READING = {"help": "?", "working": "=", "difference": "q"}  # texts, and the key that opened each closes it too
+ASKING = frozenset({"leave", "changed", "cautions", "recovered"})  # rows that no typing narrows
 _SCROLL = {"up": -1, "down": 1, "pageup": -10, "pagedown": 10, "space": 10}
 _LEFT = 8  # lines of a text that stay in sight at its end
 
@@ -25,9 +25,9 @@ def press(state: State, overlay: Overlay, key: str, character: str | None, now: 
     if purpose == "start":
         return new.press(state, overlay, key, character)
     if key in ("escape", "ctrl+c"):
-        return new.given_up(state) if purpose == "new" and not new.picked(overlay) else _closed(state, overlay)
+        return new.given_up(state) if purpose == "new" and not new.picked(overlay) else _closed(state, overlay, now)
     if purpose in READING:
-        return _read(state, overlay, key, character)
+        return _read(state, overlay, key, character, now)
     if purpose == "note":
         return notes.press(state, overlay, key, character, now)
     if purpose == "take":
@@ -41,7 +41,7 @@ def press(state: State, overlay: Overlay, key: str, character: str | None, now: 
         return _take(state, overlay, now)
     if purpose in ASKING:
         closes = purpose == "cautions" and keys.printing(key, character) in ("!", "q")
-        return _closed(state, overlay) if closes else done(state)
+        return _closed(state, overlay, now) if closes else done(state)
     return done(at(state, overlay=lists.typing(overlay, lambda: full(state, overlay), key, character)))
 
 
@@ -81,16 +81,19 @@ def full(state: State, overlay: Overlay) -> Sequence[Choice]:
     return lists.words(row) if row is not None else overlay.choices
 
 
-def _closed(state: State, overlay: Overlay) -> Done:
+def _closed(state: State, overlay: Overlay, now: float) -> Done:
     if overlay.purpose == "new":
         return done(new.kinds(state, new.picked(overlay)[:-1]))
-    return done(at(state, overlay=None))
+    if overlay.purpose == "difference":
+        return done(watching.back(state, overlay))
+    state = at(state, overlay=None)
+    return recovered.chosen(state, "later", now) if overlay.purpose == "recovered" else done(state)
 
 
-def _read(state: State, overlay: Overlay, key: str, character: str | None) -> Done:
+def _read(state: State, overlay: Overlay, key: str, character: str | None, now: float) -> Done:
     """A text: scrolled, or closed."""
     if keys.printing(key, character) in ("q", READING[overlay.purpose]) or key in ("enter", "tab"):
-        return _closed(state, overlay)
+        return _closed(state, overlay, now)
     last = max(len(overlay.text) - _LEFT, 0)
     rows = {"home": 0, "end": last}
     row = rows.get(key, overlay.row + _SCROLL.get(key, 0))
@@ -142,5 +145,6 @@ _TAKEN: Mapping[str, Callable[[State, Overlay, str, float], Done]] = {
     "new": lambda state, overlay, value, now: new.chosen(state, overlay, value),
     "cautions": lambda state, overlay, value, now: cautions.go(state, value),
     "leave": lambda state, overlay, value, now: leaving.leaving(state, value),
-    "changed": lambda state, overlay, value, now: leaving.settle(state, value, now),
+    "changed": leaving.settle,
+    "recovered": lambda state, overlay, value, now: recovered.chosen(state, value, now),
 }

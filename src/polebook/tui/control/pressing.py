@@ -7,13 +7,26 @@ from dataclasses import replace
 
 from polebook.session.state import pin, unpin
 from polebook.tui import keys
-from polebook.tui.control import cautions, fields, help, leaving, lists, moving, notes, overlays, stages, working
+from polebook.tui.control import (
+    cautions,
+    fields,
+    help,
+    leaving,
+    lists,
+    moving,
+    notes,
+    overlays,
+    pages,
+    stages,
+    working,
+    writing,
+)
 from polebook.tui.control.base import Done, Outcome, Work, at, done, refuse, say
 from polebook.tui.control.typing import one_line
 from polebook.tui.view import Overlay, State
 
 VALUE_S = 1.0  # a letter this soon after a digit belongs to a value
-_IN_VALUES = frozenset("fpnuµmkKMGTRF.")
+_IN_VALUES = frozenset("fpnuµmkKMGTRF")  # a point moves a figure or a cursor at most
 
 
 def press(state: State, key: str, character: str | None, now: float) -> Done:
@@ -31,13 +44,15 @@ def press(state: State, key: str, character: str | None, now: float) -> Done:
         return overlays.press(state, state.view.overlay, key, character, now)
     if state.view.field is not None:
         return fields.press(state, key, character, now)
+    if state.view.writing is not None:
+        return writing.press(state, state.view.writing, key, character, now)
     text = keys.printing(key, character)
     if text and (begun := _begins(state, text, now)) is not None:
         return begun
     action = keys.ACTIONS.get(keys.name_of(key, character))
     if action is None:
         return refuse(state, f"no key does that: {text}", "? shows every key") if text else done(state)
-    return _WORK[action](state, now)
+    return (pages.own(state, action) or _WORK[action])(at(state, digit_at=float("-inf")), now)
 
 
 def paste(state: State, text: str, now: float) -> Done:
@@ -47,6 +62,8 @@ def paste(state: State, text: str, now: float) -> Done:
         return overlays.paste(state, state.view.overlay, text)
     if state.view.field is not None:
         return fields.paste(state, state.view.field, text)
+    if state.view.writing is not None:
+        return writing.paste(state, state.view.writing, text, now)
     line = one_line(text)
     if state.view.focus == "sheet" and line and (fields.opens(state, line[0]) or line[0] in "+-"):
         return fields.start(state, line)
@@ -143,6 +160,8 @@ _WORK: Mapping[str, Work] = {
     "kind": _still(stages.kind),
     "leave out": stages.leave_out,
     "note": _still(notes.edit),
+    "text": _still(writing.edit),
+    **dict.fromkeys(sorted(pages.PLOT), _still(moving.no_plot)),
     "undo": stages.back,
     "redo": stages.forth,
     "write": _still(leaving.write),

@@ -68,8 +68,9 @@ def _figure(scene: Scene, room: int) -> Line:
     name = focused(scene)
     if not name:
         return ()
-    owner, _, key = name.rpartition(".")
-    section = "parts" if "." in owner else "nodes" if owner in scene.sites else "lines"
+    owner, lever, key = name.partition(".leverage.")
+    owner, key = (owner, f"leverage.{key}") if lever else (name.rpartition(".")[0], name.rpartition(".")[2])
+    section = "parts" if "." in owner else "nodes" if owner in scene.sites else owner if owner == "overall" else "lines"
     told = scene.pen.text(f"{name}: {about(section, key)}")
     return (Span(f" {told if cells(told) <= room - 2 else scene.pen.cut(scene.pen.text(name), room - 2)}", "dim"),)
 
@@ -113,15 +114,15 @@ def _moved(changes: Changes, figure: str, name: str, unit: str) -> str:
 
 
 def keys(pen: Pen, hints: tuple[Hint, ...], room: int) -> Line:
-    """As many hints as fit, the most useful first."""
+    """As many hints as fit, the most useful first; the help keeps its place at the end."""
+    sizes = [3 + cells(words(name, pen.plain)) + 1 + cells(words(word, pen.plain)) for name, word in hints]
+    shown = len(hints)
+    kept = hints[-1:] if hints and hints[-1][0] == "?" else ()
+    while shown > len(kept) and sum(sizes[:shown]) + (sizes[-1] if kept and shown < len(hints) else 0) > room + 1:
+        shown -= 1
+    taken = hints[:shown] if shown == len(hints) else (*hints[:shown], *kept)
     spans: list[Span] = [Span(" ")]
-    used = 1
-    for number, (names, word) in enumerate(hints):
-        gap = "   " if number else ""
-        name, does = words(names, pen.plain), words(word, pen.plain)
-        size = len(gap) + cells(name) + 1 + cells(does)
-        if used + size > room - 1:
-            break
-        spans += [Span(gap), Span(name, "key"), Span(f" {does}", "dim")]
-        used += size
+    for number, (name, word) in enumerate(taken):
+        spans += [Span("   " if number else ""), Span(words(name, pen.plain), "key"),
+                  Span(f" {words(word, pen.plain)}", "dim")]
     return tuple(spans)

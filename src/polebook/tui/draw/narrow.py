@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from polebook.tui.draw import ledger, nodes
 from polebook.tui.draw.focus import focused
 from polebook.tui.draw.message import keys, message
 from polebook.tui.draw.overlay import overlay
+from polebook.tui.draw.pages import drawn
 from polebook.tui.draw.pen import BLANK
 from polebook.tui.draw.scene import Scene
 from polebook.tui.draw.sheet import rows_for_all, sheet
@@ -16,8 +16,6 @@ from polebook.tui.keys import hints
 from polebook.tui.lines import Line, Span
 
 LEAST_PAGE = 4
-DECENT_PAGE = 8
-NODES_WANT = 11
 STALE = "figures of before the fault"
 
 
@@ -49,7 +47,8 @@ class _Shares:
     """How many rows each part of the body has: what matters most is served first."""
 
     def __init__(self, scene: Scene, columns: int, rows: int, told: int) -> None:
-        want = len(scene.names) + ledger.FRAME_ROWS if scene.view.page == "ledger" else NODES_WANT
+        kind = drawn(scene)
+        want = kind.want(scene)
         self.page, self.sheet, self.verdict = LEAST_PAGE, 1, min(told, 1)
         self.rule = self.blank = self.top = 0  # a rule above the message; blanks above verdict and strip
         self.left = rows - LEAST_PAGE - self.sheet - self.verdict
@@ -57,8 +56,8 @@ class _Shares:
             self._to("verdict", min(told, 6))
         self._to("sheet", 2)
         self._to("verdict", min(told, 2))
-        self._to("sheet", 3)
-        self._to("page", min(want, DECENT_PAGE))
+        self._to("sheet", kind.sheet)
+        self._to("page", min(want, kind.decent))
         self._to("verdict", told)
         self._to("page", want)
         for part in ("rule", "blank"):
@@ -76,8 +75,7 @@ class _Shares:
 
 def shown_page(scene: Scene, room: int, rows: int) -> list[Line]:
     """The page that is chosen."""
-    draw = nodes.page if scene.view.page == "nodes" else ledger.page
-    lines = draw(scene, room, rows, focused(scene))
+    lines = drawn(scene).page(scene, room, rows, focused(scene))
     return [_faded(line) for line in lines] if scene.stale else lines
 
 
@@ -109,4 +107,5 @@ def key_line(scene: Scene, room: int) -> Line:
     """What can be pressed now."""
     view = scene.view
     purpose = view.overlay.purpose if view.overlay is not None else ""
-    return keys(scene.pen, hints(view.focus, purpose, view.field is not None), room)
+    own = drawn(scene).hints(scene) if view.focus == "page" and not purpose and view.field is None else ()
+    return keys(scene.pen, own or hints(view.focus, purpose, view.field is not None, view.page), room)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 
 from polebook.report.look import cells
+from polebook.tui.draw.difference import difference
 from polebook.tui.draw.pen import BLANK, Pen, left, window
 from polebook.tui.draw.scene import Scene
 from polebook.tui.draw.sheet import field_spans
@@ -33,6 +34,8 @@ def overlay(scene: Scene, over: Overlay, room: int, rows: int) -> list[Line]:
         lines += _problems(pen, over, room, rest)
     elif over.choices:
         lines += _choices(pen, over, room, rest)
+    elif over.purpose == "difference":
+        lines += difference(pen, over, room, rest)
     elif over.text:
         lines += _text(pen, over, room, rest)
     return lines[:max(rows, 0)]

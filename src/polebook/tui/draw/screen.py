@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from polebook.book.reach import within_reach
 from polebook.problem import ProblemsFound
-from polebook.tui.draw import narrow, wide
+from polebook.tui.draw import narrow, wide, writing
 from polebook.tui.draw.pen import BLANK, Pen, pen
 from polebook.tui.draw.scene import Scene
 from polebook.tui.lines import Line, Span
@@ -30,6 +30,8 @@ def _drawn(state: State, columns: int, rows: int) -> list[Line]:
     """The screen; without figures where they turn out to be beyond what can be computed."""
     draw = wide.screen if columns >= WIDE_COLUMNS and rows >= WIDE_ROWS else narrow.screen
     scene = Scene(state)
+    if state.view.writing is not None and state.view.overlay is None:
+        return writing.screen(scene, state.view.writing, columns, rows)
     if scene.ledger is None:
         return draw(scene, columns, rows)
     try:

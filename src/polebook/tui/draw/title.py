@@ -23,7 +23,7 @@ def title(scene: Scene, room: int) -> Line:
     told = _told(scene, left - 3 - min(cells(name), LEAST_NAME))
     fits = max(left - width(told) - 2, 1)
     begin: list[Span] = [Span(" "), Span(scene.pen.name(name, fits), "head")]
-    if not scene.session.history.saved and (scene.session.exists or scene.session.history.text):
+    if scene.state.unsaved:
         begin.append(Span(" *", "warn"))
     for text, style in flags:
         begin += [Span("  "), Span(text, style)]
@@ -35,8 +35,15 @@ def _flags(scene: Scene) -> list[tuple[str, str]]:
     flags = []
     if not session.exists:
         flags.append(("new", "warn"))
-    if session.read_only:
+    if session.read_only or session.held:
         flags.append(("read-only", "warn"))
+    theirs = scene.state.care.theirs
+    if theirs is not None:
+        flags.append(("gone from disk" if theirs.identity is None else "changed on disk", "bad"))
+    if scene.state.care.taken and scene.state.unsaved:
+        flags.append(("recovered", "warn"))
+    if scene.state.care.unkept:
+        flags.append((scene.pen.text(f"no recovery: {scene.state.care.unkept}"), "bad"))
     if session.baseline is not None:
         flags.append(("pinned", "moved"))
     return flags

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from polebook.tui.draw import ledger, nodes
+from polebook.tui.draw import ledger, nodes, response
 from polebook.tui.draw.message import message
 from polebook.tui.draw.narrow import key_line, page_rule, shown_page, without_figures
 from polebook.tui.draw.overlay import overlay
 from polebook.tui.draw.owners import owners
+from polebook.tui.draw.pages import drawn
 from polebook.tui.draw.panel import panel
 from polebook.tui.draw.pen import BLANK, Pen
 from polebook.tui.draw.scene import Scene
@@ -17,7 +18,8 @@ from polebook.tui.lines import Line, Span
 
 LEAST_LEFT, MOST_LEFT, PANEL = 80, 100, 53
 LEAST_OWNERS = 9
-TEXTS = frozenset(("help", "working", "cautions"))
+LEAST_SHEET, MOST_PLOT = 8, 12
+TEXTS = frozenset(("help", "working", "cautions", "changed", "recovered", "difference"))
 """Purposes that are read at the left, in the width that they were written for."""
 
 
@@ -36,13 +38,13 @@ def screen(scene: Scene, columns: int, rows: int) -> list[Line]:
     left = overlay(scene, over, side, size) if over is not None and over.purpose in TEXTS else \
         _left(scene, side - 1, size)  # a blank before the wall
     right = overlay(scene, over, width, size) if over is not None and over.purpose not in TEXTS else \
-        panel(scene, width, size)
-    body = [_beside(scene.pen, _at(left, row), _at(right, row), side) for row in range(size)]
-    top[-1] = _crossed(top[-1], side, scene.pen.sign("┬"))
-    return [*top, *body, _crossed(rule, side, scene.pen.sign("┴")), *last]
+        _right(scene, width, size)
+    body = [beside(scene.pen, _at(left, row), _at(right, row), side) for row in range(size)]
+    top[-1] = crossed(top[-1], side, scene.pen.sign("┬"))
+    return [*top, *body, crossed(rule, side, scene.pen.sign("┴")), *last]
 
 
-def _beside(pen: Pen, left: Line, right: Line, side: int) -> Line:
+def beside(pen: Pen, left: Line, right: Line, side: int) -> Line:
     """Both sides with the wall between them; a rule of either side joins it."""
     ends = _is_rule(pen, left), _is_rule(pen, right)
     wall = {(False, False): "│", (True, False): "┤", (False, True): "├", (True, True): "┼"}[ends]
@@ -53,7 +55,7 @@ def _is_rule(pen: Pen, line: Line) -> bool:
     return len(line) == 1 and bool(line[0].text) and not line[0].text.strip(pen.sign("─"))
 
 
-def _crossed(rule: Line, at: int, sign: str) -> Line:
+def crossed(rule: Line, at: int, sign: str) -> Line:
     """A rule with the wall's end on it."""
     spans: list[Span] = []
     for span in rule:
@@ -69,14 +71,21 @@ def _at(lines: list[Line], row: int) -> Line:
     return lines[row] if row < len(lines) else BLANK
 
 
+def _right(scene: Scene, room: int, rows: int) -> list[Line]:
+    """The sheet, and below it the response where the page is not that already."""
+    plot = min(rows // 5 + 3, MOST_PLOT)
+    if scene.view.page == "response" or rows - plot < LEAST_SHEET + 1:
+        return panel(scene, room, rows)
+    above = panel(scene, room, rows - plot - 1)
+    above += [BLANK] * (rows - plot - 1 - len(above))
+    return [*above, scene.pen.rule(room), *response.small(scene, room - 1, plot)]
+
+
 def _left(scene: Scene, room: int, rows: int) -> list[Line]:
     """The page, the verdict, and below it what fills the rows: the other figures that tell what to do next."""
     told = verdict(scene, room)
     space = rows - len(told) - 2
-    if scene.view.page == "ledger":
-        want = len(scene.names) + ledger.FRAME_ROWS
-    else:
-        want = min(len(nodes.ranked(scene)) + 7, space)
+    want = drawn(scene).wide(scene, space)
     page = shown_page(scene, room, max(min(want, space), 4))
     lines = [*page, BLANK, scene.pen.rule(room + 1), *told]
     rest = rows - len(lines) - 1
