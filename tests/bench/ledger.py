@@ -13,7 +13,7 @@ from pathlib import Path
 from statistics import median
 from time import perf_counter
 
-from polebook.book.build import document, ledger
+from polebook.book.build import BAND, document, ledger
 from polebook.chain.model import Chain
 from polebook.chain.read import load
 from polebook.stages.registry import KINDS
@@ -52,8 +52,31 @@ def milliseconds(chain: Chain, only: tuple[str, ...] | None, runs: int) -> float
     return median(times)
 
 
+SIGNAL = (BAND, "nodes", "bias", "account", "targets", "cautions")  # what a ledger had before it told of noise
+
+
+def noise(chain: Chain, rounds: int = 101) -> tuple[float, float, float]:
+    """Medians, in ms: a warm ledger without noise, what the noise at the reference adds to it, what the total adds.
+
+    Each round makes a ledger and asks it for all three in turn, so that what else the machine does falls on all alike.
+    """
+    parts: tuple[list[float], ...] = ([], [], [])
+    asked = (lambda of: (document(of, SIGNAL), of.lines), lambda of: of.noise.by_line, lambda of: of.noise.output_rms)
+    for turn in range(rounds + 1):
+        of = ledger(chain)
+        for times, ask in zip(parts, asked, strict=True):
+            start = perf_counter()
+            ask(of)
+            if turn:
+                times.append(1e3 * (perf_counter() - start))
+    return median(parts[0]), median(parts[1]), median(parts[2])
+
+
 def main() -> None:
     chain = load(str(SIX))
+    plain, spot, total = noise(chain)
+    print(f"six-stage.toml without noise: {plain:.2f} ms; noise at the reference adds {spot:.2f} ms "
+          f"({100 * spot / plain:.0f} %), its total {total:.2f} ms ({100 * total / plain:.0f} %)")
     print(f"six-stage.toml as it is: figures {milliseconds(chain, FIGURES, 21):.2f} ms, "
           f"all {milliseconds(chain, None, 21):.2f} ms")
     rows = {}

@@ -168,8 +168,14 @@ CASES = {
     "peaking over, an emitter capacitor": text(
         RAIL, FROM_50, emitter("Q1", re="220", c_peak="220p"), follower("Q2"), LOAD, target(peaking="0.5 dB")),
     # targets that cannot be judged, and none at all
-    "only targets that cannot be judged": text(RAIL, FROM_600, TWO, LOAD, target(noise="5n", swing="1")),
-    "met, but for one that cannot be judged": text(RAIL, FROM_600, TWO, LOAD, target(upper="200k", current="10m")),
+    "only targets that cannot be judged": text(RAIL, FROM_600, TWO, LOAD, target(**{"yield": "95 %"})),
+    "met, but for one that cannot be judged": text(
+        RAIL, FROM_600, TWO, LOAD, target(upper="200k", **{"yield": "95 %"})),
+    # levels and supply
+    "the swing is missed": text(RAIL, FROM_600, TWO, LOAD, target(swing="5")),
+    "the swing has the least to spare": text(RAIL, FROM_600, TWO, LOAD, target(swing="3", upper="100k")),
+    "the supply current is missed": text(RAIL, FROM_600, TWO, LOAD, target(current="3m")),
+    "the supply current has the least to spare": text(RAIL, FROM_600, TWO, LOAD, target(current="5m", upper="200k")),
     "no targets": text(RAIL, FROM_600, TWO, LOAD),
     "no targets, down to d.c.": text(
         BOTH, FROM_50, stage("U1", "noninverting", device="U", rf="9k1", rg="1k"), '[load]\nresistance = "10k"\n'),

@@ -5,6 +5,10 @@ from __future__ import annotations
 from copy import deepcopy
 from typing import Any
 
+_UNKNOWN = ("rise_time_s", "overshoot_percent", "settling_1_s", "settling_01_s", "sag_percent", "group_delay_s",
+            "group_delay_spread_s", "noise_density", "noise_total_output", "noise_total_input", "noise_from_hz",
+            "noise_to_hz", "noise_figure_db", "supply_current_a", "clips_first", "largest_source", "dynamic_range_db",
+            "noise_margin_db", "full_power_hz")
 _NO_LEVERAGE = {"gain": None, "lower_edge": None, "upper_edge": None, "noise": None}
 
 
@@ -44,6 +48,7 @@ _DOCUMENT: dict[str, Any] = {
         "sctc_lower_hz": 1300.0,
         "node_upper_hz": 301e3,
         "shrinkage": 0.8,
+        **dict.fromkeys(_UNKNOWN),
     },
     "lines": [
         _line("source", "voltage", 0.93, -0.630, output_ohm=600.0, owns_upper=0.06, owns_lower=0.0),

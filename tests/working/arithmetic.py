@@ -7,7 +7,7 @@ import math
 import re
 from dataclasses import dataclass
 
-UNITS = ("V", "A", "Ω", "F", "H", "S", "s", "Hz", "W", "C")
+UNITS = ("V", "A", "Ω", "F", "H", "S", "s", "Hz", "W", "C", "K")
 PLAIN = ("dB", "dBΩ", "°C", "%", "rad")
 PREFIX = {"f": -15, "p": -12, "n": -9, "u": -6, "m": -3, "": 0, "k": 3, "M": 6, "G": 9, "T": 12}
 NUMBER = r"[0-9]+(?:\.[0-9]+)?(?:e-?[0-9]+)?"
@@ -58,6 +58,8 @@ FUNCTIONS = {
     "sqrt": lambda x: x.through(math.sqrt, lambda v: 0.5 / math.sqrt(v) if v else 0.0),
     "ln": lambda x: x.through(math.log, lambda v: 1.0 / v),
     "log10": lambda x: x.through(math.log10, lambda v: 1.0 / (v * math.log(10.0))),
+    "exp": lambda x: x.through(math.exp, math.exp),
+    "cos": lambda x: Rough(math.cos(x.value), 1.1 * abs(math.sin(x.value)) * x.off + x.off * x.off),
     "max": lambda *x: max(x, key=lambda one: one.value),
     "min": lambda *x: min(x, key=lambda one: one.value),
 }

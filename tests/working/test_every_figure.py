@@ -11,6 +11,7 @@ from tests.working.arithmetic import Rough, read
 from tests.working.chains import NAMES, every, known, told
 
 NEAR = 1e-11  # of the sizes that a result is made of
+SECTIONS = ("lines", "nodes", "parts", "cards", "bias", "targets", "poles", "zeros", "rails", "levels")
 FALLBACK = "out of the whole d.c. network at once"
 
 
@@ -33,12 +34,12 @@ def figure_name(document, path):
         return f"overall.{rest[0]}" if rest[0] not in ("clips_first",) else ""
     if section == "account":
         return f"account.{rest[0]}.{rest[1]}"
-    if section not in ("lines", "nodes", "parts", "cards", "bias", "targets", "poles", "zeros") or not rest:
+    if section not in SECTIONS or not rest:
         return ""
     row, keys = document[section][rest[0]], rest[1:]
     if keys[0] == "bridges":
         return f"{row['name']}.{row['bridges'][keys[1]]['part']}.{keys[2]}"
-    if keys[0] in ("role", "interstage", "from", "stage"):
+    if keys[0] in ("role", "interstage", "from", "stage", "clips_by"):
         return ""
     owner = {
         "lines": lambda: row["name"],
@@ -47,6 +48,8 @@ def figure_name(document, path):
         "cards": lambda: f"device.{row['device']}.{row['figure']}",
         "bias": lambda: f"bias.{row['stage']}",
         "targets": lambda: f"target.{row['name']}",
+        "rails": lambda: f"rail.{row['rail']}",
+        "levels": lambda: row["node"],
     }.get(section, lambda: f"{section}.{rest[0] + 1}")()
     return f"{owner}.{'.'.join(map(str, keys))}"
 

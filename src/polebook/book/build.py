@@ -7,6 +7,7 @@ from math import atan2, degrees, isfinite, log10, pi
 from typing import TYPE_CHECKING, Any
 
 from polebook import __version__
+from polebook.book import noise_rows, pulse_rows
 from polebook.book.account import line_losses
 from polebook.book.ledger import Ledger, ledger
 from polebook.book.lines import Line
@@ -17,22 +18,21 @@ from polebook.solve.fold import fold
 if TYPE_CHECKING:
     from polebook.book.poles import Root
 
-LATER = ("rise_time_s", "overshoot_percent", "settling_1_s", "settling_01_s", "sag_percent", "group_delay_s",
-         "group_delay_spread_s", "noise_density", "noise_total_output", "noise_total_input", "noise_from_hz",
-         "noise_to_hz", "noise_figure_db", "supply_current_a", "clips_first", "largest_source", "dynamic_range_db",
-         "noise_margin_db", "full_power_hz")
-__all__ = ["Ledger", "at", "document", "ledger"]
+BAND = "band"
+__all__ = ["BAND", "Ledger", "at", "document", "ledger"]
 
 
 def document(of: Ledger, only: Collection[str] | None = None) -> dict[str, Any]:
     """The whole ledger: base SI units at full precision, None where a figure does not apply.
 
-    With `only`, sections (keys of SECTIONS) that are not named stand as None and are not computed.
+    With `only`, sections (keys of SECTIONS) that are not named stand as None and are not computed. BAND in it stands
+    for what "overall" says of gain and band alone.
     """
     with within_reach(of.chain):
         result = {"format": 1, "tool": f"polebook {__version__}",
                   "chain": {"title": of.chain.title, "digest": of.chain.digest}}
-        return result | {name: make(of) if only is None or name in only else None for name, make in SECTIONS.items()}
+        result |= {name: make(of) if only is None or name in only else None for name, make in SECTIONS.items()}
+        return result | {"overall": of_the_band(of)} if only is not None and BAND in only else result
 
 
 def roots(found: tuple[Root, ...] | None) -> list[dict[str, Any]] | None:
@@ -44,7 +44,7 @@ def roots(found: tuple[Root, ...] | None) -> list[dict[str, Any]] | None:
 
 def cards(of: Ledger) -> list[dict[str, Any]]:
     """Every figure that the file states on a card in use, with its leverage; values in the key's own unit."""
-    return [{"device": card, "figure": key, "value": value, "leverage": {**row, "noise": None}}
+    return [{"device": card, "figure": key, "value": value, "leverage": row}
             for (card, key), (value, row) in of.leverage.cards.items()]
 
 
@@ -59,6 +59,11 @@ def decibels(gain: float | None) -> float | None:
 
 
 def overall(of: Ledger) -> dict[str, Any]:
+    return {**of_the_band(of), **pulse_rows.overall(of), **noise_rows.overall(of), **of_levels(of)}
+
+
+def of_the_band(of: Ledger) -> dict[str, Any]:
+    """Gain, stability and band of the whole chain: what an audit's page tells, without the figures that cost more."""
     solution = of.solution
     band = solution.band if of.judged else None
     return {
@@ -68,7 +73,20 @@ def overall(of: Ledger) -> dict[str, Any]:
         "gain_at_reference": of.gain_at_reference, "lower_edge_hz": of.lower_hz, "upper_edge_hz": of.upper_hz,
         "peaking_db": band.peaking_db if band else None, "octc_upper_hz": solution.constants.upper_hz,
         "sctc_lower_hz": solution.constants.lower_hz, "node_upper_hz": of.node_upper_hz, "shrinkage": of.shrinkage,
-        **dict.fromkeys(LATER),
+    }
+
+
+def of_levels(of: Ledger) -> dict[str, Any]:
+    """What the whole chain draws, where it clips first, and how far its signals lie above its noise."""
+    from polebook.book.levels import over_noise_db  # deferred: an audit asks for none of it
+
+    levels, noise = of.levels, of.input_noise
+    largest = levels.largest_source if levels else None
+    return {
+        "supply_current_a": of.supply_current, "clips_first": levels.first.stage if levels and levels.first else None,
+        "largest_source": largest, "dynamic_range_db": over_noise_db(largest, noise),
+        "noise_margin_db": over_noise_db(of.chain.get("source.smallest"), noise),
+        "full_power_hz": levels.full_power_hz if levels else None,
     }
 
 
@@ -85,17 +103,18 @@ def by_stage(of: Ledger, shares: dict[int, float]) -> dict[str, float]:
 
 def lines(of: Ledger) -> list[dict[str, Any]]:
     """Source, stages and load."""
-    owners = by_stage(of, of.owns_upper), by_stage(of, of.owns_lower)
+    owners = by_stage(of, of.owns_upper), by_stage(of, of.owns_lower), of.noise.by_line if of.noise else {}
     return [line(one, *owners) for one in of.lines]
 
 
-def line(one: Line, upper: dict[str, float], lower: dict[str, float]) -> dict[str, Any]:
+def line(one: Line, upper: dict[str, float], lower: dict[str, float], noise: dict[str, float]) -> dict[str, Any]:
     return {
         "name": one.name, "kind": one.kind, "gain": one.gain, "gain_db": decibels(one.gain), "open_gain": one.open_gain,
         "loading": one.loading, "transfer_ohm": one.transfer_ohm, "k": one.k, "input_ohm": one.input_ohm,
         "output_ohm": one.output_ohm,
         "owns_upper": None if one.left_out else upper.get(one.name),
-        "owns_lower": None if one.left_out else lower.get(one.name), "noise_share": None,
+        "owns_lower": None if one.left_out else lower.get(one.name),
+        "noise_share": None if one.left_out else noise.get(one.name),
         "bridges": [{"part": b.part, "type": b.type, "value": b.value, "k": b.k, "at_input": b.at_input,
                      "at_output": b.at_output} for b in one.bridges],
     }
@@ -117,9 +136,9 @@ def nodes(of: Ledger) -> list[dict[str, Any]]:
 
 
 def parts(of: Ledger) -> list[dict[str, Any]]:
-    """Every part of the network, then the stated currents; a fitted part's leverage counts what it does to the bias."""
+    """Parts of the network, noise sources, stated currents; a fitted part's leverage counts what it does to bias."""
     net, taus = of.solution.circuit.network, of.solution.constants.by_part
-    lever = of.leverage
+    lever, shares = of.leverage, of.noise.shares if of.noise else {}
     result = []
     for index, part in enumerate(net.layout.parts):
         if part.type == "gain":
@@ -127,12 +146,13 @@ def parts(of: Ledger) -> list[dict[str, Any]]:
         result.append({
             "stage": part.stage, "part": part.name, "type": part.type, "role": part.role or None,
             "value": net.values[index], "tau_s": taus.get(index), "owns_upper": of.owns_upper.get(index),
-            "owns_lower": of.owns_lower.get(index), "noise_share": None,
-            "leverage": {**lever.parts.get((part.stage, part.name), lever.elements[index]), "noise": None},
+            "owns_lower": of.owns_lower.get(index), "noise_share": shares.get((part.stage, part.name)),
+            "leverage": lever.parts.get((part.stage, part.name), lever.elements[index]),
         })
+    result += noise_rows.parts(of)
     for (stage, key), (value, row) in lever.currents.items():
         result.append({"stage": stage, "part": key, "type": "I", "role": None, "value": value, "tau_s": None,
-                       "owns_upper": None, "owns_lower": None, "noise_share": None, "leverage": {**row, "noise": None}})
+                       "owns_upper": None, "owns_lower": None, "noise_share": None, "leverage": row})
     return result
 
 
@@ -149,6 +169,21 @@ def operating(of: Ledger) -> list[dict[str, Any]]:
                            "control_v": point.control_v, "lower_v": point.lower_v, "output_v": point.output_v,
                            "dissipation_w": watts, "from": point.origin})
     return result
+
+
+def rails(of: Ledger) -> list[dict[str, Any]]:
+    """Ground and every rail that stands, A out of it into the circuit: they sum to 0."""
+    return [{"rail": name, "current_a": of.rails.current(name)} for name in of.rails.standing]
+
+
+def levels(of: Ledger) -> list[dict[str, Any]] | None:
+    """Every interstage node, V peak (noise: V rms); None where the chain is not stable."""
+    if of.levels is None:
+        return None
+    return [{"node": row.node, "largest_v": row.largest, "smallest_v": row.smallest,
+             "noise_v": of.noise_at(row.node), "clip_v": row.clip,
+             "clips_by": f"{row.stage} {row.clips_by}" if row.stage else None, "headroom_db": row.headroom_db}
+            for row in of.levels.rows]
 
 
 def account(of: Ledger) -> dict[str, Any]:
@@ -172,14 +207,10 @@ def cautions(of: Ledger) -> list[dict[str, Any]]:
             for problem in of.cautions]
 
 
-def _later(_: Ledger) -> None:
-    """A section that this version does not compute."""
-
-
 SECTIONS: Mapping[str, Callable[[Ledger], Any]] = {
     "overall": overall, "lines": lines, "nodes": nodes, "parts": parts, "cards": cards, "bias": operating,
-    "rails": _later, "poles": lambda of: roots(of.poles.roots), "zeros": lambda of: roots(of.zeros),
-    "account": account, "targets": targets, "levels": _later, "verdict": lambda of: of.verdict, "cautions": cautions,
+    "rails": rails, "poles": lambda of: roots(of.poles.roots), "zeros": lambda of: roots(of.zeros),
+    "account": account, "targets": targets, "levels": levels, "verdict": lambda of: of.verdict, "cautions": cautions,
 }
 """Key of the document -> what computes it."""
 

@@ -8,11 +8,12 @@ from typing import TYPE_CHECKING
 
 from polebook.book import account as accounts
 from polebook.book.account import Account
+from polebook.book.asked import ASKED
 from polebook.book.cautions import cautions
 from polebook.book.lines import Line, lines
 from polebook.book.miller import Bridge, bridges
 from polebook.book.shares import owned
-from polebook.book.sites import Site, equal_stage_pole, node_estimate, sites
+from polebook.book.sites import Site, equal_stage_pole, interstage_names, node_estimate, sites
 from polebook.book.solution import Solution
 from polebook.book.targets import Got, Target, targets
 from polebook.book.verdict import verdict
@@ -22,8 +23,14 @@ from polebook.problem import Problem
 from polebook.solve.fold import fold
 
 if TYPE_CHECKING:
+    from polebook.book.delay import Spread
+    from polebook.book.levels import Levels
     from polebook.book.leverage import Leverage
+    from polebook.book.noise import Noise
+    from polebook.book.noise_band import Band, Pieces
     from polebook.book.poles import Resolved, Root
+    from polebook.book.pulse import Pulse, Sag
+    from polebook.circuit.bias_rails import Rails
 
 
 class Ledger:
@@ -108,10 +115,10 @@ class Ledger:
 
     @cached_property
     def leverage(self) -> Leverage:
-        """What moving a part, a card's figure or a stated current does to gain and edges."""
+        """What moving a part, a card's figure or a stated current does to gain, edges and noise."""
         from polebook.book.leverage import leverage  # deferred: an audit asks for none of these three, 3 ms sooner
 
-        return leverage(self.solution, self.lower_hz, self.upper_hz)
+        return leverage(self.solution, self.lower_hz, self.upper_hz, self.noise)
 
     @cached_property
     def poles(self) -> Resolved:
@@ -126,6 +133,80 @@ class Ledger:
         from polebook.book.poles import zeros  # deferred with leverage
 
         return zeros(self.solution)
+
+    @cached_property
+    def rails(self) -> Rails:
+        """Every current out of the rails."""
+        from polebook.circuit.bias_rails import rails  # deferred: an audit without a target for it does not ask
+
+        return rails(self.chain, self.solution.circuit.plan)
+
+    @property
+    def supply_current(self) -> float | None:
+        """A of the rail that gives or takes most; None without a rail, or where a current is not known."""
+        current = self.rails.current(self.rails.greater) if self.rails.greater else None
+        return None if current is None else abs(current)
+
+    @cached_property
+    def levels(self) -> Levels | None:
+        """Signal and clip level from node to node; None where the chain is not stable."""
+        from polebook.book.levels import Levels  # deferred with the rails
+
+        return Levels(self.solution) if self.judged else None
+
+    @cached_property
+    def noise(self) -> Noise | None:
+        """What the chain's sources of noise make of its signal; None where the chain is not stable."""
+        from polebook.book.noise import Noise  # deferred with the rails
+
+        return Noise(self.solution, self.reference_hz, self.upper_hz) if self.judged else None
+
+    @property
+    def input_noise(self) -> float | None:
+        """Noise of the noise band referred to the input, V or A rms."""
+        return self.noise.input_rms if self.noise else None
+
+    def noise_at(self, node: str) -> float | None:
+        """Noise of the noise band at an interstage node, V rms."""
+        return self.noise_at_nodes[node][0] if self.noise else None
+
+    @cached_property
+    def noise_at_nodes(self) -> dict[str, tuple[float | None, Pieces, Band]]:
+        """Interstage node -> its noise, V rms, what its square is made of, its band; nothing where it is not stable."""
+        names = interstage_names(self.solution.circuit.layout)
+        if not self.noise:
+            return {}
+        found = self.noise.at_nodes(list(names))
+        return dict(zip(names.values(), zip(found.rms, found.pieces, found.bands, strict=True), strict=True))
+
+    @cached_property
+    def pulse(self) -> Pulse:
+        """Step response of the upper network, or why there is none."""
+        from polebook.book.pulse import pulse  # deferred: an audit without a target for it does not ask
+
+        return pulse(self.solution)
+
+    @cached_property
+    def sag(self) -> Sag:
+        """Sag of a pulse of the target's length, or why there is none."""
+        from polebook.book.pulse import sag  # deferred with the step response
+
+        return sag(self.solution, self.chain.get("target.pulse"))
+
+    @cached_property
+    def delay_s(self) -> float | None:
+        """Group delay at the reference frequency."""
+        from polebook.book.delay import delay_at  # deferred with the step response
+
+        return delay_at(self.solution, self.reference_hz) if self.judged else None
+
+    @cached_property
+    def delays(self) -> Spread | None:
+        """Greatest and least group delay between the edges; None without a band."""
+        from polebook.book.delay import spread  # deferred with the step response
+
+        clean = self.judged and self.solution.band.clean
+        return spread(self.solution, self.lower_hz, self.upper_hz) if clean else None
 
     @cached_property
     def node_upper_hz(self) -> float | None:
@@ -150,7 +231,8 @@ class Ledger:
         gain = self.gain_at_reference if "target.reference" in self.chain.given else None
         return targets(self.chain, Got(
             self.solution.gain if gain is None else gain, self.lower_hz, self.upper_hz,
-            band.peaking_db if band else 0.0, not self.judged, bool(band and band.clean)))
+            band.peaking_db if band else 0.0, not self.judged, bool(band and band.clean),
+            lambda name, want: ASKED[name](self, want)))
 
     @cached_property
     def verdict(self) -> str:
@@ -159,9 +241,11 @@ class Ledger:
 
     @cached_property
     def cautions(self) -> list[Problem]:
+        from polebook.book import level_cautions  # deferred with the levels
+
         circuit = self.solution.circuit
         return [*bias_cautions.cautions(circuit.plan, self.chain, dict(circuit.points)),
-                *cautions(self.solution, self.judged)]
+                *cautions(self.solution, self.judged), *level_cautions.cautions(self)]
 
 
 def ledger(chain: Chain) -> Ledger:

@@ -8,14 +8,15 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass, field
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from polebook.book.noise_slopes import Slopes, slopes_of
 from polebook.book.shares import derivatives
 from polebook.book.solution import Solution
 from polebook.chain.model import Chain
-from polebook.circuit.build import CURRENT_KEYS, values
+from polebook.circuit.build import CURRENT_KEYS, values_and_noise
 from polebook.formula import Formula
 from polebook.solve.contributions import contributions
 from polebook.solve.transfer import adjoint, branch_currents
@@ -29,8 +30,13 @@ FORMULAS = (
     Formula("leverage.gain", "d ln|gain|/d ln p", ADJOINT),
     Formula("leverage.lower_edge", "d ln f_L/d ln p = -d(ln|H(f_L)| - ln|gain|)/d ln p / (d ln|H|/d ln f)", ADJOINT),
     Formula("leverage.upper_edge", "d ln f_H/d ln p = -d(ln|H(f_H)| - ln|gain|)/d ln p / (d ln|H|/d ln f)", ADJOINT),
+    Formula("leverage.noise", "d ln e/d ln p, e the input-referred noise density at the reference frequency, which "
+                              "stands still", ADJOINT),
 )
-FIGURES = ("gain", "lower_edge", "upper_edge")
+FIGURES = ("gain", "lower_edge", "upper_edge", "noise")
+if TYPE_CHECKING:
+    from polebook.book.noise import Noise
+
 STEP = 1e-30  # imaginary share of a key's value: its square is nothing
 
 Row = dict[str, float | None]
@@ -38,30 +44,40 @@ Row = dict[str, float | None]
 
 @dataclass(slots=True)
 class Leverage:
-    """Leverage on gain, lower_edge and upper_edge; None where there is no such edge.
+    """Leverage on gain, lower_edge, upper_edge and noise; None where there is no such edge, or no noise.
 
-    elements  by part number, of the element alone
+    elements  by part number, of the element alone: of a resistor with its noise, of a device with its noise as it is
+    sources   (stage, part) -> leverage of a noise source's density alone, of those that are no resistors
+    slopes    what the leverage on the noise is made of
     parts     (stage, part) of a fitted part, through the bias
     currents  (stage, key) -> (A, leverage) of a stated quiescent current
     cards     (card, key) -> (value in the key's own unit, leverage)
     """
 
+    slopes: Slopes | None = None
     elements: dict[int, Row] = field(default_factory=dict)
+    sources: dict[tuple[str, str], float] = field(default_factory=dict)
     parts: dict[tuple[str, str], Row] = field(default_factory=dict)
     currents: dict[tuple[str, str], tuple[float, Row]] = field(default_factory=dict)
     cards: dict[tuple[str, str], tuple[float, Row]] = field(default_factory=dict)
 
 
-def leverage(of: Solution, lower_hz: float | None, upper_hz: float | None) -> Leverage:
+def leverage(of: Solution, lower_hz: float | None, upper_hz: float | None, noise: Noise | None = None) -> Leverage:
     """Leverage of everything that the file states a value for; edges in Hz."""
     partial = {"gain": _of_gain(of), "lower_edge": None, "upper_edge": None}
     for name, edge in (("lower_edge", lower_hz), ("upper_edge", upper_hz)):
         if edge is not None:
             partial[name] = _of_edge(of, edge, partial["gain"] or {})
-    result = Leverage(elements={index: {name: None if each is None else each.get(index, 0.0)
-                                        for name, each in partial.items()} for index in partial["gain"] or {}})
+    slopes = slopes_of(noise) if noise is not None else None
+    partial["noise"] = None if slopes is None else slopes.elements
+    result = Leverage(slopes, {index: {name: None if each is None else each.get(index, 0.0)
+                                       for name, each in partial.items()} for index in partial["gain"] or {}})
+    for owned, lever in zip(of.circuit.layout.recorder.noises, () if slopes is None else slopes.sources, strict=False):
+        at = owned.stage, owned.part
+        result.sources[at] = result.sources.get(at, 0.0) + lever
     keys = list(_keys(of.chain))
-    for (kind, owner, name, path), row in zip(keys, _through_bias(of, partial, [key[3] for key in keys]), strict=True):
+    rows = _through_bias(of, partial, slopes, [key[3] for key in keys])
+    for (kind, owner, name, path), row in zip(keys, rows, strict=True):
         if kind == "part":
             result.parts[owner, name] = row
         elif kind == "current":
@@ -116,8 +132,12 @@ def _keys(chain: Chain) -> Iterator[tuple[str, str, str, str]]:
                 yield "card", card, path.rpartition(".")[2], path
 
 
-def _through_bias(of: Solution, partial: dict[str, dict[int, float] | None], paths: list[str]) -> list[Row]:
-    """Leverage of each path: d(figure)/d(element) times d(element)/d(path), summed over the elements."""
+def _through_bias(of: Solution, partial: dict[str, dict[int, float] | None], slopes: Slopes | None,
+                  paths: list[str]) -> list[Row]:
+    """Leverage of each path: d(figure)/d(element) times d(element)/d(path), summed over the elements.
+
+    On the noise, what the path does to its sources comes to it.
+    """
     count = len(paths)
     numbers = of.chain.numbers
     override: dict[str, Any] = {}
@@ -126,11 +146,14 @@ def _through_bias(of: Solution, partial: dict[str, dict[int, float] | None], pat
         stepped[k] *= 1 + 1j * STEP
         override[path] = stepped
     with np.errstate(all="ignore"):
-        moved = np.array([np.broadcast_to(value, (count,)) for value in values(of.circuit, override)], dtype=complex)
+        stepped_values, spectra = values_and_noise(of.circuit, override)
+        moved = np.array([np.broadcast_to(value, (count,)) for value in stepped_values], dtype=complex)
         relative = moved.imag / STEP / np.array(of.circuit.network.values, dtype=float)[:, None]
     relative = np.where(np.isfinite(relative), relative, 0.0)  # a device cut off has figures that nothing moves
     rows: dict[str, Any] = {}
     for name, each in partial.items():
         weights = None if each is None else np.array([each[index] for index in range(relative.shape[0])])
         rows[name] = None if weights is None else weights @ relative
+    if slopes is not None:
+        rows["noise"] = rows["noise"] + slopes.moved(spectra, count, STEP)
     return [{name: None if row is None else float(row[k]) for name, row in rows.items()} for k in range(count)]

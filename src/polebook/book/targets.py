@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from math import log10
 
@@ -17,7 +18,7 @@ FORMULAS = (
 )
 NAMES = ("gain", "lower", "upper", "peaking", "noise", "swing", "current", "overshoot", "rise", "sag", "yield")
 LESS_IS_BETTER = frozenset({"lower", "noise", "current", "peaking", "overshoot", "rise", "sag"})
-LATER = frozenset({"noise", "swing", "current", "overshoot", "rise", "sag", "yield"})
+LATER = frozenset({"yield"})
 TOLERANCE_DB = 1.0
 
 
@@ -35,7 +36,10 @@ class Target:
 
 @dataclass(frozen=True, slots=True)
 class Got:
-    """What the targets of this ledger are judged by. An absent edge of a chain that has a band is no fault of it."""
+    """What the targets of this ledger are judged by. An absent edge of a chain that has a band is no fault of it.
+
+    asked  (target, want) -> (what was got, why it can't be judged, "" where it can), of targets beyond gain and band
+    """
 
     gain: float
     lower_hz: float | None
@@ -43,6 +47,7 @@ class Got:
     peaking_db: float
     unstable: bool
     clean: bool
+    asked: Callable[[str, float], tuple[float | None, str]]
 
 
 def targets(chain: Chain, got: Got) -> list[Target]:
@@ -61,6 +66,9 @@ def judge(chain: Chain, name: str, want: float, got: Got) -> Target:
         return _gain(chain, want, got)
     if name == "peaking":
         return _compare(name, want, got.peaking_db)
+    if name not in ("lower", "upper"):
+        value, why = got.asked(name, want)
+        return Target(name, want, value, None, None, why) if why or value is None else _compare(name, want, value)
     if not got.clean:
         return Target(name, want, None, None, None, "the chain has no clean midband, so it has no edges")
     edge = got.lower_hz if name == "lower" else got.upper_hz

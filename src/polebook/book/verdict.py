@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
+from collections.abc import Mapping
+from typing import TYPE_CHECKING, Protocol
 
-from polebook.book import verdict_gain, verdict_peak
+from polebook.book import verdict_gain, verdict_levels, verdict_noise, verdict_peak, verdict_pulse
 from polebook.book.verdict_edge import limit, name_of
 from polebook.book.verdict_lever import gain_lever
 from polebook.book.verdict_unstable import unstable
@@ -28,6 +29,20 @@ if TYPE_CHECKING:
 
 EDGES = ("upper", "lower")
 AMPLE = 5.0  # margin from which its size says no more
+
+
+class Teller(Protocol):
+    """Who tells of a target beyond gain and band, in clauses."""
+
+    def headline(self, of: Ledger, target: Target) -> str: ...
+    def cause(self, of: Ledger, target: Target) -> str: ...
+    def mend(self, of: Ledger, target: Target) -> str: ...
+
+
+BEYOND: Mapping[str, Teller] = {
+    "noise": verdict_noise, "swing": verdict_levels, "current": verdict_levels,
+    "rise": verdict_pulse, "overshoot": verdict_pulse, "sag": verdict_pulse,
+}
 
 
 def verdict(of: Ledger) -> str:
@@ -54,6 +69,8 @@ def cause(of: Ledger, target: Target) -> str:
         return found.brief() if found else ""
     if target.name == "gain":
         return verdict_gain.cause(of, target)
+    if target.name in BEYOND:
+        return BEYOND[target.name].cause(of, target)
     return verdict_peak.missed(of)[0].rstrip(".")
 
 
@@ -97,6 +114,8 @@ def _headline(of: Ledger, target: Target) -> str:
     got = target.got or 0.0
     if target.name == "gain":
         return f"gain {verdict_gain.headline(of, target)}"
+    if target.name in BEYOND:
+        return BEYOND[target.name].headline(of, target)
     if target.name == "peaking":
         return f"peaking {loss(got, digits=2)} for {stated_decibels(target.want)}"
     return f"{target.name} edge {figure(got, 'Hz')} for {stated(target.want, 'Hz')}"
@@ -112,6 +131,9 @@ def _why(of: Ledger, target: Target, short: bool) -> tuple[str, str]:
         return verdict_gain.missed(of, target)
     if target.name == "peaking":
         return verdict_peak.missed(of)
+    if target.name in BEYOND:
+        because = BEYOND[target.name].cause(of, target)
+        return f"{because}." if because else "", sentences(BEYOND[target.name].mend(of, target))
     found = limit(of, target.name)
     return (found.told(short), sentences(found.mend(of))) if found else ("no part of it owns the edge.", "")
 
@@ -137,8 +159,9 @@ def _met(of: Ledger, short: bool) -> tuple[str, str]:
 
 
 def _tells(target: Target) -> bool:
-    """A response that does not peak says nothing of what limits the chain."""
-    return target.name != "peaking" or (target.got or 0.0) >= verdict_peak.SLIGHT
+    """A response that does not peak, overshoot or sag says nothing of what limits the chain."""
+    least = {"peaking": verdict_peak.SLIGHT, "overshoot": verdict_pulse.NONE, "sag": verdict_pulse.NONE}
+    return (target.got or 0.0) >= least.get(target.name, 0.0)
 
 
 def _spare(of: Ledger, target: Target) -> str:
@@ -156,6 +179,8 @@ def _near(of: Ledger, target: Target, short: bool) -> tuple[str, str]:
         return (capital(found.told(short)), sentences(found.mend(of))) if found else ("", "")
     if target.name == "peaking":
         return verdict_peak.missed(of)
+    if target.name in BEYOND:
+        return sentences(BEYOND[target.name].cause(of, target)), sentences(BEYOND[target.name].mend(of, target))
     return "", sentences(gain_lever(of, verdict_gain.difference(target) < 0.0))
 
 

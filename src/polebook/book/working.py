@@ -10,6 +10,7 @@ from polebook.book.reach import within_reach
 from polebook.book.workings import index
 from polebook.book.workings.bias import bias
 from polebook.book.workings.judged import account, target
+from polebook.book.workings.levels import level, rail
 from polebook.book.workings.lines import line
 from polebook.book.workings.nodes import node
 from polebook.book.workings.nulls import why
@@ -22,7 +23,8 @@ from polebook.problem import ProblemsFound
 
 _MAKERS: Mapping[str, Callable[[Books, Sheet], Working]] = {
     "overall": whole, "lines": line, "bridges": bridge, "nodes": node, "parts": part, "bias": bias,
-    "account": account, "targets": target, "cards": card, "poles": root, "zeros": root,
+    "account": account, "targets": target, "cards": card, "poles": root, "zeros": root, "rails": rail,
+    "levels": level,
 }
 
 

@@ -110,7 +110,8 @@ def _device(net: Network, stage: Stage, topology: str, entry: int) -> int:
         lower = lower if held or driven_low else foot
     stopper = path("stopper") if net.stands(path("stopper")) else ""
     device = Device(stage.name, card.name, card.family, sign, side, lower, output, stopper, stated("current"),
-                    stated("across"), fed_output, not held and topology in ("follower", "common_control"))
+                    stated("across"), fed_output, not held and topology in ("follower", "common_control"),
+                    output_rail=rail, lower_rail=foot)
     if topology == "inverting" and net.stands(path("rf")) and path("c_rf") not in net.chain.numbers:
         device = replace(device, control=net.behind(side, stopper) if stopper else side, stopper="")
         net.resistor(device.control, out, path("rf"))

@@ -100,8 +100,7 @@ def _device(chain: Chain, device: Device, what: str, card: str, family: str, poi
     for sentence, why in region(family, get, device.sign, point):
         yield _caution(chain, name, f"{what} {sentence}", why, f"check the bias of {name}")
     for key, sentence in ratings.exceeded(get, point.current, point.across):
-        why = f"past {key} of card {card} a device can fail{' and get hot enough to burn' if key == 'p_max' else ''}"
-        yield _caution(chain, name, f"{what} {sentence}", why,
+        yield _caution(chain, name, f"{what} {sentence}", ratings.why(key, card),
                        "lower its current or voltage, or take a device that stands it")
     if point.across is not None:
         return

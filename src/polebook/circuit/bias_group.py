@@ -59,8 +59,11 @@ class Numbers:
     across: Sequence[Value | None]
 
 
-def groups(net: Network) -> list[Group]:
-    """The groups of a network that hold a device or end at an amplifier's input, by the first of these."""
+def groups(net: Network, every: bool = False) -> list[Group]:
+    """The groups of a network that hold a device or end at an amplifier's input, by the first of these.
+
+    With `every`, those of resistors alone too, behind the others.
+    """
     parent: dict[int, int] = {}
 
     def root(node: int) -> int:
@@ -82,8 +85,8 @@ def groups(net: Network) -> list[Group]:
             gathered.setdefault(root(amplifier.input), ([], []))
     for resistor in net.resistors:
         free = [n for n in (resistor.a, resistor.b) if not net.level(n)]
-        if free and root(free[0]) in gathered:
-            gathered[root(free[0])][0].append(resistor)
+        if free and (every or root(free[0]) in gathered):
+            gathered.setdefault(root(free[0]), ([], []))[0].append(resistor)
     return [_group(net, resistors, devices) for resistors, devices in gathered.values()]
 
 

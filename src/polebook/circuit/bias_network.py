@@ -38,6 +38,7 @@ class Device:
     fed_output  no resistor at the output terminal: a current source carries what the device needs
     fed_lower   no resistor at a lower terminal that is a stage's input or output
     upper       card of a cascode's upper device, "" for none: `output` is then the upper one's
+    output_rail, lower_rail  nodes of the rails that its two sides belong to: a current source hangs on one of them
     """
 
     name: str
@@ -54,6 +55,8 @@ class Device:
     fed_lower: bool = False
     upper: str = ""
     upper_family: str = ""
+    output_rail: int = POSITIVE
+    lower_rail: int = GROUND
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,6 +79,7 @@ class Network:
     resistors: list[Resistor] = field(default_factory=list)
     devices: list[Device] = field(default_factory=list)
     amplifiers: list[Amplifier] = field(default_factory=list)
+    tied: dict[int, int] = field(default_factory=dict)  # node -> the held node that a wire ties it to
 
     def node(self) -> int:
         self.parent.append(len(self.parent))
@@ -101,8 +105,10 @@ class Network:
             return
         if self.level(a):
             self.hold(b, self.level(a))
+            self.tied[b] = a
         elif self.level(b):
             self.hold(a, self.level(b))
+            self.tied[a] = b
         elif a != b:
             self.parent[b] = a
 

@@ -9,12 +9,13 @@ from polebook.chain.model import Chain, Stage
 from polebook.circuit import bias, terminals
 from polebook.circuit.bias import Operating
 from polebook.circuit.bias_missing import missing as missing_currents
-from polebook.circuit.figures import stage_figures
+from polebook.circuit.figures import stage_figures, stage_noise
 from polebook.circuit.layout import Layout, arrange
 from polebook.circuit.recorder import Collector, Recorder
 from polebook.circuit.terminals import Get
 from polebook.circuit.views import Network, network
 from polebook.devices.missing import Lack
+from polebook.devices.spectrum import Spectrum
 from polebook.problem import Problem, ProblemsFound
 from polebook.stages.registry import KINDS, STAMPS
 from polebook.stages.stamper import GROUND, Given, Stamper, Value
@@ -63,9 +64,11 @@ def circuit(chain: Chain) -> Circuit:
 def given_of(chain: Chain, stage: Stage, get: Get, points: Mapping[str, Operating]) -> tuple[Given, tuple[Lack, ...]]:
     """What a stage is stamped from, and what is missing for it."""
     figures, upper, lacks = stage_figures(chain, stage, get, points)
+    noise, upper_noise = ({}, {}) if lacks else stage_noise(chain, stage, get, points, figures, upper)
     family = chain.cards[stage.device].family if stage.device else ""
     prefix = stage.name + "."
-    given = Given(family, lambda key: get(prefix + key), figures, upper, stage.arms, stage.poles, stage.lower_poles)
+    given = Given(family, lambda key: get(prefix + key), figures, upper, stage.arms, stage.poles, stage.lower_poles,
+                  noise, upper_noise)
     return given, lacks
 
 
@@ -74,6 +77,11 @@ def values(of: Circuit, override: Mapping[str, Value]) -> list[Value]:
 
     The parts are those of the layout, in its order; a value that makes a part vanish needs a new circuit.
     """
+    return values_and_noise(of, override)[0]
+
+
+def values_and_noise(of: Circuit, override: Mapping[str, Value]) -> tuple[list[Value], list[Spectrum]]:
+    """`values`, and the noise sources that are no resistors, in the order of the recorder's `noises`."""
     numbers = of.chain.numbers
 
     def get(path: str) -> Value | None:
@@ -88,7 +96,7 @@ def values(of: Circuit, override: Mapping[str, Value]) -> list[Value]:
             given, _ = given_of(of.chain, stage, get, points)
             STAMPS[KINDS[stage.kind].topology](stamper, 0, given)
     terminals.load(stamper, 0, get)
-    return collector.values
+    return collector.values, collector.spectra
 
 
 def with_values(of: Circuit, override: Mapping[str, Value]) -> Network:

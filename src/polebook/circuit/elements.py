@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
+from polebook.stages.stamper import GROUND
+
 
 @dataclass(frozen=True, slots=True)
 class Part:
@@ -14,6 +16,7 @@ class Part:
     type: str  # R, C, L, gm, tau, gain
     role: str  # "high", "low", "" for what stores nothing
     segment: int
+    silent: bool = False  # a resistance that makes no thermal noise
 
     @property
     def short(self) -> bool:
@@ -68,6 +71,24 @@ class Storage:
 
     part: int
     node: int
+
+
+@dataclass(frozen=True, slots=True)
+class NoiseSource:
+    """A noise source that is no resistor.
+
+    part    name that it is booked to: a part of its stage ("gm"), or its own ("ib", "ig", "en", "in")
+    i, j    nodes of a current; GROUND both for a voltage
+    driven  driven node whose control a voltage stands in, GROUND for a current; ahead  see Stamper.noise_voltage
+    """
+
+    stage: str
+    part: str
+    segment: int
+    i: int
+    j: int
+    driven: int = GROUND
+    ahead: int = GROUND
 
 
 @dataclass(slots=True)

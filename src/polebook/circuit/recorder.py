@@ -4,15 +4,19 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
-from polebook.circuit.elements import Branch, Drive, Part, Segment, Storage, Transfer
-from polebook.stages.stamper import Labelled, Value
+from polebook.circuit.elements import Branch, Drive, NoiseSource, Part, Segment, Storage, Transfer
+from polebook.devices.spectrum import Spectrum
+from polebook.stages.stamper import GROUND, Labelled, Value
 
 KINDS = {"R": ("R", ""), "C-low": ("C", "low"), "C-high": ("C", "high"), "L-high": ("L", "high"), "L-low": ("L", "low")}
 
 
 @dataclass(slots=True)
 class Recorder:
-    """Builds the network: nodes, elements, owners, roles, and which parts stand."""
+    """Builds the network: nodes, elements, owners, roles, which parts stand, and the noise sources.
+
+    noises and spectra go together; `untold` are (stage, part) of noise that cannot be told, `told` which could.
+    """
 
     names: list[str] = field(default_factory=list)
     sites: list[str] = field(default_factory=list)
@@ -22,6 +26,10 @@ class Recorder:
     stood: list[bool] = field(default_factory=list)
     fresh: list[bool] = field(default_factory=list)
     segments: list[Segment] = field(default_factory=list)
+    noises: list[NoiseSource] = field(default_factory=list)
+    spectra: list[Spectrum] = field(default_factory=list)
+    untold: list[tuple[str, str]] = field(default_factory=list)
+    told: list[bool] = field(default_factory=list)
     _own: dict[tuple[int, str], int] = field(default_factory=dict)
 
     def begin(self, name: str, kind: str, before: int) -> Segment:
@@ -47,8 +55,9 @@ class Recorder:
         self._branch(Branch(node, behind, (group,), series=True))
         return behind
 
-    def resistor(self, part: str, i: int, j: int, value: Value | None, bridge: bool = False) -> None:
-        self._across(part, "R", i, j, value, bridge)
+    def resistor(self, part: str, i: int, j: int, value: Value | None, bridge: bool = False,
+                 silent: bool = False) -> None:
+        self._across(part, "R", i, j, value, bridge, silent)
 
     def capacitor(self, part: str, i: int, j: int, value: Value | None, bridge: bool = False) -> None:
         self._across(part, "C-high", i, j, value, bridge)
@@ -72,6 +81,21 @@ class Recorder:
     def washout(self, part: str, node: int, tau: Value) -> None:
         self._segment.storages.append(Storage(self._part(part, "tau", "low", tau), node))
 
+    def noise_current(self, part: str, i: int, j: int, spectrum: Spectrum | None) -> None:
+        self._noise(NoiseSource(self._segment.name, part, len(self.segments) - 1, i, j), spectrum)
+
+    def noise_voltage(self, part: str, node: int, ahead: int, spectrum: Spectrum | None) -> None:
+        source = NoiseSource(self._segment.name, part, len(self.segments) - 1, GROUND, GROUND, node, ahead)
+        self._noise(source, spectrum)
+
+    def _noise(self, source: NoiseSource, spectrum: Spectrum | None) -> None:
+        self.told.append(spectrum is not None)
+        if spectrum is None:
+            self.untold.append((source.stage, source.part))
+        else:
+            self.noises.append(source)
+            self.spectra.append(spectrum)
+
     @property
     def _segment(self) -> Segment:
         return self.segments[-1]
@@ -84,33 +108,34 @@ class Recorder:
         self._segment.nodes.append(number)
         return number
 
-    def _across(self, part: str, type_: str, i: int, j: int, value: Value | None, bridge: bool) -> None:
+    def _across(self, part: str, type_: str, i: int, j: int, value: Value | None, bridge: bool,
+                silent: bool = False) -> None:
         if i == j:
             self.stood.append(False)
             return
-        group = self._group([(part, type_, value)])
+        group = self._group([(part, type_, value)], silent)
         if group:
             self._branch(Branch(i, j, (group,), series=False, bridge=bridge))
 
     def _branch(self, branch: Branch) -> None:
         self._segment.branches.append(branch)
 
-    def _group(self, parts: Labelled) -> tuple[int, ...]:
+    def _group(self, parts: Labelled, silent: bool = False) -> tuple[int, ...]:
         group = []
         for name, type_, value in parts:
             if self._stands(value):
                 kind, role = KINDS[type_]
-                group.append(self._part(name, kind, role, value))
+                group.append(self._part(name, kind, role, value, silent))
         return tuple(group)
 
-    def _part(self, name: str, type_: str, role: str, value: Value) -> int:
+    def _part(self, name: str, type_: str, role: str, value: Value, silent: bool = False) -> int:
         """Number of the part; a name stamped twice (cin_cm of both inputs) is one part in two places."""
         index = self._own.get((len(self.segments), name))
         self.fresh.append(index is None)
         if index is not None:
             return index
         self._own[len(self.segments), name] = len(self.parts)
-        self.parts.append(Part(self._segment.name, name, type_, role, len(self.segments) - 1))
+        self.parts.append(Part(self._segment.name, name, type_, role, len(self.segments) - 1, silent))
         self.values.append(value)
         return len(self.parts) - 1
 
@@ -121,9 +146,10 @@ class Recorder:
 
 
 class Collector:
-    """Runs the same stamps for other values: the parts that stood are collected in the same order."""
+    """Runs the same stamps for other values: the parts that stood, and the noise told, are collected in the same order.
+    """
 
-    __slots__ = ("_calls", "_fresh", "_node", "_part", "_stood", "values")
+    __slots__ = ("_calls", "_fresh", "_node", "_noises", "_part", "_stood", "_told", "spectra", "values")
 
     def __init__(self, recorder: Recorder) -> None:
         self._stood = recorder.stood
@@ -131,7 +157,10 @@ class Collector:
         self._calls = 0
         self._part = 0
         self._node = 0
+        self._told = recorder.told
+        self._noises = 0
         self.values: list[Value] = []
+        self.spectra: list[Spectrum] = []
 
     def stands(self, value: Value | None) -> bool:
         self._calls += 1
@@ -146,7 +175,8 @@ class Collector:
     def series(self, label: str, node: int, site: str, parts: Labelled) -> int:
         return self.node(label, site) if self._take(parts) else node
 
-    def resistor(self, part: str, i: int, j: int, value: Value | None, bridge: bool = False) -> None:
+    def resistor(self, part: str, i: int, j: int, value: Value | None, bridge: bool = False,
+                 silent: bool = False) -> None:
         self._take(((part, "", value),))
 
     capacitor = resistor
@@ -164,6 +194,13 @@ class Collector:
         self._collect(tau)
 
     washout = lag
+
+    def noise_current(self, part: str, i: int, j: int, spectrum: Spectrum | None) -> None:
+        self._noises += 1
+        if spectrum is not None and self._told[self._noises - 1]:
+            self.spectra.append(spectrum)
+
+    noise_voltage = noise_current
 
     def _take(self, parts: Labelled) -> bool:
         any_stands = False

@@ -39,7 +39,7 @@ def _judge(file: str, out: Out, quiet: bool) -> dict[str, Any]:
         from polebook.book import build  # deferred: a faulty file is told without numpy, 75 ms sooner
 
         ledger = build.ledger(chain)  # leverage, which the verdict takes, is more than an audit asks for
-        document = build.document(ledger, ("overall", "targets", *(() if ledger.judged else ("verdict",))))
+        document = build.document(ledger, (build.BAND, "targets", *(() if ledger.judged else ("verdict",))))
     except ProblemsFound as found:
         out.found(found)
         problems = [_problem(problem) for problem in found.problems]

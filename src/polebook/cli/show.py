@@ -7,7 +7,7 @@ import argparse
 from polebook.cli.command import MET, Command, Usage
 from polebook.cli.out import Out
 from polebook.cli.table_file import check, csv_option, deliver
-from polebook.report.pages import LEDGER, PAGES
+from polebook.report.pages import DIRECT, HISS, LEDGER, PAGES, STEP
 
 _ABOUT = """Print the ledger of a chain file: targets, lines, nodes, account and cautions.
 
@@ -18,7 +18,10 @@ _ABOUT = """Print the ledger of a chain file: targets, lines, nodes, account and
   times    time constants ranked, and the edges that their sums estimate
   poles    poles and zeros, each with the stage that makes it
   leverage what 1 % more of a part, card figure or stated current moves
-  bias     currents and voltages, the d.c. plan
+  noise    who makes the noise, its density over frequency, its total
+  pulse    the step response: rise, overshoot, settling, sag, group delay
+  levels   the d.c. plan; then signal, noise and clip level from node to node
+  bias     the d.c. plan: currents, voltages, heat, and what each rail feeds
   account  what each node loses of what it was allotted
   all      everything"""
 
@@ -57,6 +60,18 @@ def _run(args: argparse.Namespace, out: Out) -> int:
     document = dict(build.document(ledger))
     if hertz is not None:
         document["at"] = build.at(ledger, hertz)
+    if args.page in DIRECT and not args.json:
+        from polebook.book.direct import direct  # deferred: no other page tells of the rails one by one
+
+        document["direct"] = direct(ledger)
+    if args.page in HISS and not args.json:
+        from polebook.book.noise_rows import page as hiss  # deferred with them
+
+        document["noise"] = hiss(ledger)
+    if args.page in STEP and not args.json:
+        from polebook.book.pulse_rows import page as step  # deferred: no other page draws the step response
+
+        document["pulse"] = step(ledger)
     if args.json:
         from polebook.report.jsonout import dump
 

@@ -16,7 +16,8 @@ FIGURE is written like
   Q1.cmu.k                of a bridge          Q2.c_comp.owns_upper  of a part
   bias.Q1.current_a       of a stage's bias    account.upper.lost_db of the account
   target.upper.margin     of a target          poles.1.hz            of a pole
-  Q1.rc.leverage.gain     of a part's leverage
+  Q1.rc.leverage.gain     of a part's leverage rail.positive.current_a of a rail
+  n1.clip_v               of a level
 as the keys of show --json are; a beginning that only one has will do: overall.upper"""
 
 

@@ -5,9 +5,12 @@ Hybrid-pi model as in the textbooks; which formula stands for which figure is fi
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from polebook.devices.missing import Lack, settle
-from polebook.devices.num import TWO_PI, Reading, Value, floor_at, power, ratio, thermal_voltage
+from polebook.devices.num import CHARGE, TWO_PI, Reading, Value, floor_at, power, ratio, thermal_voltage
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.devices.spectrum import Noise, Spectrum
 from polebook.formula import Formula
 from polebook.param import Param
 
@@ -23,7 +26,12 @@ TAU_F = Formula("devices.tau_F", "tau_F = 1/(2·pi·ft) - (c_be0 + cob)·VT/ft_i
 CPI = Formula("parts.cpi", "cpi = gm·tau_F + c_be0", HYBRID_PI)
 CPI_DEPLETION = Formula("parts.cpi", "cpi = c_be0, as the card tells no ft", HYBRID_PI)
 LAW = Formula("bias.bjt", "V_control - V_lower = vbe, and the base draws ic/beta", "common practice")
-FORMULAS = (GM, RPI, RO, CMU, CPI, VBE, VCB, TAU_F, LAW)
+SHOT = "shot noise (W. Schottky, 1918; P. R. Gray, P. J. Hurst, S. H. Lewis and R. G. Meyer, Analysis and Design of " \
+       "Analog Integrated Circuits, 5th ed., Wiley, ch. 11; both from memory)"
+NOISE_IC = Formula("noise.bjt.gm", "S = 2·q·ic", SHOT)
+NOISE_IB = Formula("noise.bjt.ib", "S = 2·q·ib·(1 + flicker_corner/f)", SHOT)
+IB = Formula("parts.ib", "ib = ic/beta", "definition")
+FORMULAS = (GM, RPI, RO, CMU, CPI, VBE, VCB, TAU_F, LAW, NOISE_IC, NOISE_IB, IB)
 
 PARAMS = (
     family_key("bjt"),
@@ -117,6 +125,21 @@ def small_signal(
         lacks.append(Lack("cmu", "cob_v", "cob is measured at cob_v"))
     found["cpi"] = _diffusion_capacitance(card, gm, temperature_c, lacks)
     return settle({key: value for key, value in found.items() if value is not None}, lacks)
+
+
+def noise(card: Reading, figures: Mapping[str, Value], current: Value | None) -> Noise:
+    """Shot noise of the collector current ("gm", collector to emitter) and of the base current ("ib").
+
+    figures are the card's small-signal ones; current a magnitude in A, without which neither can be told. A device
+    that is cut off has none.
+    """
+    if current is None:
+        return {"gm": None, "ib": None}
+    beta, corner, carried = card("beta"), card("flicker_corner"), floor_at(current, 0.0)
+    if beta is None:
+        beta = figures["gm"] * figures["rpi"]
+    return {"gm": Spectrum(2.0 * CHARGE * carried),
+            "ib": Spectrum(2.0 * CHARGE * carried / beta, 0.0 if corner is None else corner)}
 
 
 def _transconductance(card: Reading, current: Value | None, celsius: Value, lacks: list[Lack]) -> Value | None:

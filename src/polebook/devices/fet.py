@@ -6,9 +6,12 @@ Both follow Id = k/2·u² with the overdrive u = Vgs - cut-off: for the mosfet c
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from polebook.devices.missing import Lack, settle
-from polebook.devices.num import Reading, Value, floor_at, ratio, sqrt, step
+from polebook.devices.num import BOLTZMANN, CHARGE, ICE_K, Reading, Value, floor_at, ratio, sqrt, step
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.devices.spectrum import Noise, Spectrum
 from polebook.formula import Formula
 from polebook.param import Param
 
@@ -24,7 +27,12 @@ CDS = Formula("parts.cds", "cds = max(0, coss - crss)", "common practice")
 LAW_MOSFET = Formula("bias.mosfet", "id = k/2·max(0, vgs - vgs_th)^2", SQUARE_LAW)
 LAW_JFET = Formula("bias.jfet", "id = idss·max(0, 1 + vgs/vgs_off)^2", SQUARE_LAW)
 VGS_OFF = Formula("devices.vgs_off", "vgs_off = sqrt(2·idss/k)", SQUARE_LAW)
-FORMULAS = (GM, GM_JFET, K_MEASURED, RO, CGD, CGS, CDS, LAW_MOSFET, LAW_JFET, VGS_OFF)
+CHANNEL = "thermal noise of the channel (A. van der Ziel, Thermal noise in field-effect transistors, Proc. IRE 50, " \
+          "1962; from memory)"
+NOISE_GM = Formula("noise.fet.gm", "S = 4·k_B·T_K·gamma_noise·gm·(1 + flicker_corner/f)", CHANNEL)
+NOISE_IG = Formula("noise.fet.ig", "S = 2·q·ig", "shot noise (W. Schottky, 1918; from memory)")
+GAMMA = 2.0 / 3.0  # of a long channel, where the card has none
+FORMULAS = (GM, GM_JFET, K_MEASURED, RO, CGD, CGS, CDS, LAW_MOSFET, LAW_JFET, VGS_OFF, NOISE_GM, NOISE_IG)
 
 _POLARITY = Param("polarity", "choice", "channel: n or p", default="n", choices=("n", "p"))
 
@@ -122,6 +130,16 @@ def small_signal(card: Reading, current: Value | None) -> dict[str, Value]:
     found["cgs"] = _difference(card, "cgs", "ciss", lacks)
     found["cds"] = _difference(card, "cds", "coss", lacks)
     return settle({key: value for key, value in found.items() if value is not None}, lacks)
+
+
+def noise(card: Reading, figures: Mapping[str, Value], celsius: Value) -> Noise:
+    """Thermal noise of the channel ("gm", drain to source) and shot noise of the gate leakage ("ig")."""
+    gamma, corner, leakage = card("gamma_noise"), card("flicker_corner"), card("ig")
+    factor = 4.0 * BOLTZMANN * (celsius + ICE_K) * (GAMMA if gamma is None else gamma)
+    found: Noise = {"gm": Spectrum(factor * figures["gm"], 0.0 if corner is None else corner)}
+    if leakage is not None:
+        found["ig"] = Spectrum(2.0 * CHARGE * leakage)
+    return found
 
 
 def _transconductance(card: Reading, current: Value | None, lacks: list[Lack]) -> Value | None:

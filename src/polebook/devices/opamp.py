@@ -5,12 +5,15 @@ from __future__ import annotations
 from polebook.devices.missing import Lack, settle
 from polebook.devices.num import TWO_PI, Reading, Value
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.devices.spectrum import Noise, Spectrum
 from polebook.formula import Formula
 from polebook.param import Param
 
 GBW = Formula("parts.gbw", "tau = a0/(2·pi·gbw)", "definition: the dominant pole lies at gbw/a0")
 F2 = Formula("parts.f2", "tau = 1/(2·pi·f2)", "definition")
-FORMULAS = (GBW, F2)
+NOISE_EN = Formula("noise.opamp.en", "S = en^2·(1 + en_corner/f)", "the data sheet's density and corner")
+NOISE_IN = Formula("noise.opamp.in", "S = in^2·(1 + in_corner/f)", "the data sheet's density and corner")
+FORMULAS = (GBW, F2, NOISE_EN, NOISE_IN)
 
 PARAMS = (
     family_key("opamp"),
@@ -51,3 +54,13 @@ def small_signal(card: Reading) -> dict[str, Value]:
     found["gbw"] = None if gbw is None else a0 / (TWO_PI * gbw)
     found["f2"] = None if second is None else 1.0 / (TWO_PI * second)
     return settle({key: value for key, value in found.items() if value is not None}, lacks)
+
+
+def noise(card: Reading) -> Noise:
+    """Voltage noise between the inputs ("en") and current noise of each of them ("in"), as far as the card has them."""
+    found: Noise = {}
+    for key in ("en", "in"):
+        density, corner = card(key), card(f"{key}_corner")
+        if density is not None:
+            found[key] = Spectrum(density * density, 0.0 if corner is None else corner)
+    return found

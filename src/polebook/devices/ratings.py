@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from polebook.devices.num import Reading
 from polebook.param import Param
 from polebook.quantity import engineering
@@ -23,13 +25,23 @@ def family_key(family: str) -> Param:
 
 def exceeded(card: Reading, current: float | None, across: float | None) -> list[tuple[str, str]]:
     """(key, sentence) of every rating of the card that a quiescent current (A) and voltage (V) go past."""
-    figures = {
-        "p_max": ("dissipates", None if current is None or across is None else current * across, "W"),
-        "v_max": ("stands at", across, "V"),
-        "i_max": ("carries", current, "A"),
-    }
+    watts = None if current is None or across is None else current * across
+    return past(card, {"p_max": watts, "v_max": across, "i_max": current})
+
+
+VERBS = {"p_max": ("dissipates", "W"), "v_max": ("stands at", "V"), "i_max": ("carries", "A")}
+
+
+def why(key: str, card: str) -> str:
+    """Why a stage past a rating of its card is told."""
+    return f"past {key} of card {card} a device can fail{' and get hot enough to burn' if key == 'p_max' else ''}"
+
+
+def past(card: Reading, figures: Mapping[str, float | None]) -> list[tuple[str, str]]:
+    """(key, sentence) of every rating that the figure beside it (W, V, A; None: not known) goes past."""
     told = []
-    for key, (verb, value, unit) in figures.items():
+    for key, value in figures.items():
+        verb, unit = VERBS[key]
         most = card(key)
         if most is not None and value is not None and value > most:
             told.append((key, f"{verb} {engineering(value, unit)}, its rating {key} is {engineering(most, unit)}"))

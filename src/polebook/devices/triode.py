@@ -6,9 +6,12 @@ P = gm_ia/(1.5·gm_ia/gm)^1.5. Then gm goes with the cube root of ia, and mu sta
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from polebook.devices.missing import Lack, settle
-from polebook.devices.num import Reading, Value, floor_at, power, ratio, sqrt
+from polebook.devices.num import BOLTZMANN, Reading, Value, floor_at, power, ratio, sqrt
 from polebook.devices.ratings import FREE_TEXT, RATINGS, family_key
+from polebook.devices.spectrum import T0_K, Noise, Spectrum
 from polebook.formula import Formula
 from polebook.param import Param
 
@@ -20,7 +23,10 @@ MU = Formula("devices.mu", "mu = gm_0·rp", "definition")
 RO = Formula("parts.ro", "ro = mu/gm", CHILD_LANGMUIR)
 PERVEANCE = Formula("devices.P", "P = gm_ia/(1.5·gm_ia/gm_0)^1.5", CHILD_LANGMUIR)
 LAW = Formula("bias.triode", "ia = P·max(0, vgk + vak/mu)^1.5", CHILD_LANGMUIR)
-FORMULAS = (GM, GM_THERE, GM_MEASURED, MU, RO, PERVEANCE, LAW)
+NOISE_GM = Formula("noise.triode.gm", "S = 4·k_B·T_0·req_noise·gm^2·(1 + flicker_corner/f)",
+                   "equivalent noise resistance at 290 K, common practice for valves")
+REQ = Formula("devices.req_noise", "req_noise = 2.5/gm", "common practice for triodes")
+FORMULAS = (GM, GM_THERE, GM_MEASURED, MU, RO, PERVEANCE, LAW, NOISE_GM, REQ)
 
 PARAMS = (
     family_key("triode"),
@@ -89,6 +95,13 @@ def small_signal(card: Reading, current: Value | None) -> dict[str, Value]:
     else:
         found["ro"] = None if gm is None else ratio(mu, gm)
     return settle({key: value for key, value in found.items() if value is not None}, lacks)
+
+
+def noise(card: Reading, figures: Mapping[str, Value]) -> Noise:
+    """Noise of the anode current ("gm", anode to cathode): that of req_noise ahead of the grid, 2.5/gm without it."""
+    req, corner, gm = card("req_noise"), card("flicker_corner"), figures["gm"]
+    white = 4.0 * BOLTZMANN * T0_K * (2.5 * gm if req is None else req * gm * gm)
+    return {"gm": Spectrum(white, 0.0 if corner is None else corner)}
 
 
 def _transconductance(card: Reading, current: Value | None, lacks: list[Lack]) -> Value | None:

@@ -48,5 +48,6 @@ def values(of: Ledger, figures: Collection[Figure]) -> dict[str, float | None]:
     """What each of `figures` is in the ledger `of`; None for one that it does not have. Sections not asked for rest."""
     if not figures:
         return {}
-    known = entries(build.document(of, {"overall", *(figure.section for figure in figures)}))
+    sections = {figure.section for figure in figures}
+    known = entries(build.document(of, sections if "overall" in sections else {build.BAND, *sections}))
     return {one.name: known[one.name].value if one.name in known else None for one in figures}

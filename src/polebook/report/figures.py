@@ -7,7 +7,8 @@ from math import isfinite, log10
 from polebook.quantity import engineering
 
 NONE = "–"
-UNIT_OF_TYPE = {"C": "F", "L": "H", "R": "Ω", "gm": "S", "tau": "s", "I": "A"}
+UNIT_OF_TYPE = {"C": "F", "L": "H", "R": "Ω", "gm": "S", "tau": "s", "I": "A", "en": "V/√Hz",
+                "in": "A/√Hz"}
 _DECIBELS = frozenset(("dB", "dBΩ"))
 _NO_PREFIX = frozenset(("°C", "%", "1/V"))  # a column in one of these has plain numbers
 _TARGET_UNITS = {"lower": "Hz", "upper": "Hz", "reference": "Hz", "swing": "V", "current": "A", "rise": "s"}

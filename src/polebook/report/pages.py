@@ -4,13 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Callable
 
-from polebook.report import leverage, roots, sections, tables, times
+from polebook.report import levels, leverage, noise, pulse, roots, sections, tables, times
 from polebook.report.document import Document, finite
 from polebook.report.look import Look
 
 Section = Callable[[Document, Look], list[str]]
 
 LEDGER = "ledger"
+DIRECT = frozenset({"levels", "bias", "all"})  # pages that tell the d.c. plan: they ask for `direct` in the document
+HISS = frozenset({"noise", "all"})  # pages that tell the density over frequency: they ask for `noise` in the document
+STEP = frozenset({"pulse", "all"})  # pages that draw the step response: they ask for `pulse` in the document
 PAGES: dict[str, tuple[Section, ...]] = {
     LEDGER: (
         sections.verdict,
@@ -19,6 +22,9 @@ PAGES: dict[str, tuple[Section, ...]] = {
         tables.nodes,
         sections.account,
         sections.other_owners,
+        noise.summary,
+        pulse.summary,
+        levels.summary,
         sections.cautions,
     ),
     "lines": (tables.lines, sections.bridges),
@@ -26,8 +32,12 @@ PAGES: dict[str, tuple[Section, ...]] = {
     "parts": (tables.parts, sections.owners),
     "times": (times.upper, times.lower),
     "poles": (roots.poles, roots.zeros),
-    "leverage": (leverage.leverage,),
-    "bias": (tables.bias, sections.cautions),
+    "leverage": (leverage.leverage, noise.levers),
+    "noise": (noise.totals, noise.sources, noise.by_line, noise.curve, noise.levers),
+    "pulse": (pulse.plot, pulse.marks, pulse.figures, pulse.estimates),
+    "levels": (levels.bias, levels.rails, levels.levels, levels.diagram, levels.summary,
+               sections.cautions),
+    "bias": (levels.bias, levels.rails, sections.cautions),
     "account": (tables.accounts, sections.account, sections.owners),
     "all": (
         sections.verdict,
@@ -44,7 +54,19 @@ PAGES: dict[str, tuple[Section, ...]] = {
         roots.poles,
         roots.zeros,
         leverage.leverage,
-        tables.bias,
+        noise.levers,
+        noise.totals,
+        noise.sources,
+        noise.by_line,
+        noise.curve,
+        pulse.marks,
+        pulse.figures,
+        pulse.estimates,
+        levels.bias,
+        levels.rails,
+        levels.levels,
+        levels.diagram,
+        levels.summary,
         sections.cautions,
     ),
 }

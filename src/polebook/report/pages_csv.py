@@ -7,6 +7,7 @@ from collections.abc import Callable, Sequence
 from polebook.report.csvout import Value, csv_text, titled
 from polebook.report.document import Document, Entry, entries, finite, part_name
 from polebook.report.figures import UNIT_OF_TYPE
+from polebook.report.noise import ranked
 from polebook.report.pages import LEDGER
 from polebook.report.times import alone, constants, seen
 
@@ -35,6 +36,11 @@ _BIAS: Columns = (
     ("dissipation", "W", "dissipation_w"), ("from", "", "from"),
 )
 _RAILS: Columns = (("rail", "", "rail"), ("current", "A", "current_a"))
+_LEVELS: Columns = (
+    ("node", "", "node"), ("smallest peak", "V", "smallest_v"), ("largest peak", "V", "largest_v"),
+    ("noise rms", "V", "noise_v"), ("clip peak", "V", "clip_v"), ("headroom", "dB", "headroom_db"),
+    ("clips by", "", "clips_by"),
+)
 _ROOTS: Columns = (
     ("frequency", "Hz", "hz"), ("Q", "", "q"), ("re", "rad/s", "re"), ("im", "rad/s", "im"), ("stage", "", "stage"),
 )
@@ -103,8 +109,72 @@ def _leverage(document: Document) -> str:
     return csv_text(heading, rows)
 
 
+def _draws(document: Document) -> str:
+    """What carries the current of each rail, where the page was asked for."""
+    draws = (document.get("direct") or {}).get("draws", ())
+    return csv_text(("from rail", "stage", "through", titled("current", "A")),
+                    ([draw[key] for key in ("rail", "stage", "element", "current_a")] for draw in draws))
+
+
+_NOISE: Columns = (
+    ("input density", "V/√Hz or A/√Hz", "noise_density"), ("noise figure", "dB", "noise_figure_db"),
+    ("output", "V", "noise_total_output"), ("input", "V or A", "noise_total_input"), ("from", "Hz", "noise_from_hz"),
+    ("to", "Hz", "noise_to_hz"), ("smallest over noise", "dB", "noise_margin_db"),
+)
+_DENSITY: Columns = (
+    ("frequency", "Hz", "hz"), ("input density", "V/√Hz or A/√Hz", "input"), ("output density", "V/√Hz", "output"),
+    ("most of it", "", "most"), ("its share", "1", "share"),
+)
+
+
+def _noise(document: Document) -> str:
+    return _rows(_NOISE, [document["overall"]])
+
+
+def _sources(document: Document) -> str:
+    """Every part that makes noise, the greatest first."""
+    what = (document.get("noise") or {}).get("what", {})
+    rows: list[list[Value]] = [[part_name(part), what.get(part_name(part), ""), share] for part, share in
+                               ranked(document)]
+    return csv_text(("noise of", "what", titled("share of the power", "1")), rows)
+
+
+def _density(document: Document) -> str:
+    return _rows(_DENSITY, (document.get("noise") or {}).get("curve") or ())
+
+
+_STEP: Columns = (
+    ("rise", "s", "rise_time_s"), ("overshoot", "%", "overshoot_percent"), ("settled to 1 %", "s", "settling_1_s"),
+    ("settled to 0.1 %", "s", "settling_01_s"), ("sag", "%", "sag_percent"), ("group delay", "s", "group_delay_s"),
+    ("its spread", "s", "group_delay_spread_s"),
+)
+_MARKS: Columns = (("mark", "", "mark"), ("time", "s", "time_s"), ("of the final value", "1", "height"))
+_RISES: Columns = (("node", "", "name"), ("pole", "Hz", "pole_hz"), ("rise alone", "s", "rise_s"))
+
+
+def _step(document: Document) -> str:
+    return _rows(_STEP, [document["overall"]])
+
+
+def _marks(document: Document) -> str:
+    return _rows(_MARKS, (document.get("pulse") or {}).get("marks") or ())
+
+
+def _rises(document: Document) -> str:
+    return _rows(_RISES, (document.get("pulse") or {}).get("nodes") or ())
+
+
+def _curve(document: Document) -> str:
+    """The step response over time, as a share of its final value and as it is."""
+    pulse = document.get("pulse") or {}
+    heading = (titled("time", "s"), titled("of the final value", "1"),
+               titled("response", document["overall"]["gain_unit"]))
+    return csv_text(heading, ([t, height, height * pulse["final"]] for t, height in pulse.get("curve") or ()))
+
+
 _LINES_TABLE, _NODES_TABLE = _plain("lines", _LINES), _plain("nodes", _NODES)
 _TARGETS_TABLE, _BIAS_TABLE, _RAILS_TABLE = _plain("targets", _TARGETS), _plain("bias", _BIAS), _plain("rails", _RAILS)
+_LEVELS_TABLE = _plain("levels", _LEVELS)
 PAGES_CSV: dict[str, tuple[Table, ...]] = {
     LEDGER: (_TARGETS_TABLE, _LINES_TABLE, _NODES_TABLE),
     "lines": (_LINES_TABLE, _bridges),
@@ -113,10 +183,13 @@ PAGES_CSV: dict[str, tuple[Table, ...]] = {
     "times": (_times,),
     "poles": (_roots,),
     "leverage": (_leverage,),
-    "bias": (_BIAS_TABLE, _RAILS_TABLE),
+    "noise": (_noise, _sources, _density),
+    "pulse": (_step, _marks, _rises, _curve),
+    "levels": (_LEVELS_TABLE, _BIAS_TABLE, _RAILS_TABLE, _draws),
+    "bias": (_BIAS_TABLE, _RAILS_TABLE, _draws),
     "account": (_NODES_TABLE,),
-    "all": (_TARGETS_TABLE, _LINES_TABLE, _bridges, _NODES_TABLE, _times, _parts, _roots, _leverage, _BIAS_TABLE,
-            _RAILS_TABLE),
+    "all": (_TARGETS_TABLE, _LINES_TABLE, _bridges, _NODES_TABLE, _times, _parts, _roots, _leverage, _noise, _sources,
+            _density, _step, _marks, _rises, _BIAS_TABLE, _RAILS_TABLE, _draws, _LEVELS_TABLE),
 }
 
 

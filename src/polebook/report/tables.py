@@ -159,30 +159,6 @@ def _still(listed: list[Entry], look: Look) -> list[str]:
     return table(columns, rows, look)
 
 
-def bias(document: Document, look: Look) -> list[str]:
-    """The d.c. plan: what a meter shows, and where each current comes from; then the rails."""
-    rows: list[list[Cell | str]] = [
-        [
-            entry["stage"],
-            entry["device"] or "",
-            show.eng(entry["current_a"], "A"),
-            show.eng(entry["across_v"], "V"),
-            *(show.eng(entry[key], "V") for key in ("control_v", "lower_v", "output_v")),
-            show.eng(entry["dissipation_w"], "W"),
-            entry["from"] or show.NONE,
-        ]
-        for entry in entries(document, "bias")
-    ]
-    names = ("bias", "device", "current", "across", "control", "lower", "output", "heat", "from")
-    shown = table(_columns(*names, words=(0, 1, 8)), rows, look, gap=1) if rows else []
-    rails: list[list[Cell | str]] = [
-        [rail["rail"], show.eng(rail["current_a"], "A")] for rail in entries(document, "rails")
-    ]
-    if rails:
-        shown += [*([""] if shown else []), *table(_columns("rails", "current"), rails, look)]
-    return shown
-
-
 def at_frequency(section: Entry, look: Look) -> list[str]:
     """Every line's gain, phase and loss at one frequency."""
     rows: list[list[Cell | str]] = [

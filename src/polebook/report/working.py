@@ -19,7 +19,7 @@ INDENT = 3
 LEAST = 24  # columns that the words beside a number get, else their origin stands below
 _SYMBOL = re.compile(r"[^\W\d][\w.]*")
 _WHOLE = frozenset({"", "dB", "dBΩ", "°C", "%", "rad"})  # units without a prefix
-_WORDS = frozenset({"sqrt", "ln", "log10", "max", "min", "pi"})
+_WORDS = frozenset({"sqrt", "ln", "log10", "exp", "cos", "max", "min", "pi"})
 
 
 def working(document: Entry, title: str, file: str, look: Look) -> str:

@@ -8,7 +8,7 @@ import numpy as np
 
 from polebook.circuit.elements import Branch
 from polebook.circuit.layout import Layout
-from polebook.circuit.views import Network, View, impedance
+from polebook.circuit.views import Network, View, impedance, live
 from polebook.solve.fold import Folded
 from polebook.stages.stamper import GROUND, Value
 
@@ -34,8 +34,10 @@ def compounds(layout: Layout) -> list[Branch]:
     return [branch for branch in layout.branches if len(_kinds(layout, branch)) > 1 and _kinds(layout, branch) != {"R"}]
 
 
-def _kinds(layout: Layout, branch: Branch) -> set[str]:
-    return {layout.parts[index].type for group in branch.groups for index in group}
+def _kinds(layout: Layout, branch: Branch, view: View = "full") -> set[str]:
+    """R, C and L of a branch, those that store only where the view has them live."""
+    parts = (layout.parts[index] for group in branch.groups for index in group)
+    return {part.type for part in parts if part.type == "R" or live(part, view)}
 
 
 def _denominator(net: Network, branch: Branch, s: Value, view: View) -> Value:
@@ -43,7 +45,7 @@ def _denominator(net: Network, branch: Branch, s: Value, view: View) -> Value:
     z = impedance(net, branch, s, view)
     if z is None or (isinstance(z, float) and z == 0.0):
         return 1.0
-    kinds = _kinds(net.layout, branch)
+    kinds = _kinds(net.layout, branch, view)
     if branch.series:
         return (s if "L" in kinds else 1.0) / z
     return z * (s if "C" in kinds else 1.0)
@@ -66,19 +68,19 @@ def across(layout: Layout, branch: Branch) -> int:
     return next((k for k in ends if not layout.driven[k]), ends[0])
 
 
-def powers(layout: Layout) -> dict[int, int]:
+def powers(layout: Layout, view: View = "full") -> dict[int, int]:
     """Powers of s by which the factors lack of the determinant, by node: one for each capacitor in series alone, each
-    coil across alone, each washout."""
+    coil across alone, each washout, where the view has it live."""
     result: dict[int, int] = {}
     steps = {step.branch: step.node for taken in layout.steps for step in taken if step.branch >= 0}
     for number, branch in enumerate(layout.branches):
         if not branch.single:
             continue
-        kind = layout.parts[branch.groups[0][0]].type
-        if kind == ("C" if branch.series else "L"):
+        part = layout.parts[branch.groups[0][0]]
+        if part.type == ("C" if branch.series else "L") and live(part, view):
             node = steps[number] if branch.series else across(layout, branch)
             result[node] = result.get(node, 0) + 1
-    for _, signed in layout.stamps.washing:
+    for _, signed in layout.stamps.washing if view in ("full", "lower") else ():
         node = layout.stamps.where[signed[0][0]][0]
         result[node] = result.get(node, 0) + 1
     return result

@@ -1,4 +1,4 @@
-"""All finite poles of the full network, block by block; accepted only where three independent counts agree."""
+"""All finite poles of a view of the network, block by block; accepted only where three independent counts agree."""
 
 from __future__ import annotations
 
@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from polebook.circuit.blocks import blocks
-from polebook.circuit.views import Network
+from polebook.circuit.views import Network, View
 from polebook.solve.aberth import aberth
 from polebook.solve.determinant import determinant, owners, powers
 from polebook.solve.fold import fold
@@ -47,32 +47,34 @@ class Poles:
 
 @dataclass(slots=True)
 class Blocks:
-    """The factors of the determinant by block, with the powers of s that they lack."""
+    """The factors of the determinant of a view by block, with the powers of s that they lack."""
 
+    view: View
     of_node: list[int]
     factor: Ints  # block of each factor
     lacking: Ints  # powers of s by block
 
 
-def split(net: Network) -> Blocks:
+def split(net: Network, view: View = "full") -> Blocks:
     """Sorts the factors of the determinant into blocks."""
     of_node = blocks(net.layout)
     count = max(of_node, default=-1) + 1
     lacking = np.zeros(count, dtype=np.int64)
-    for node, power in powers(net.layout).items():
+    for node, power in powers(net.layout, view).items():
         lacking[of_node[node]] += power
-    return Blocks(of_node, np.array([of_node[node] for node in owners(net.layout)], dtype=np.int64), lacking)
+    factor = np.array([of_node[node] for node in owners(net.layout)], dtype=np.int64)
+    return Blocks(view, of_node, factor, lacking)
 
 
-def poles(net: Network, low: float, high: float, right: int | None) -> Poles:
-    """Every finite pole of the full network.
+def poles(net: Network, low: float, high: float, right: int | None, view: View = "full") -> Poles:
+    """Every finite pole of a view.
 
-    low and high (Hz) span all corners; right is the winding's count of poles with a positive real part, which the
-    poles found must agree with, as must their number with the growth of the determinant and their trace
-    sum 1/(s - p) with tr((G + sC)^-1 C) at points all over the span.
+    low and high (Hz) span all corners; right is the count, by the winding of the same view, of poles with a positive
+    real part, which the poles found must agree with, as must their number with the growth of the determinant and their
+    trace sum 1/(s - p) with tr((G + sC)^-1 C) at points all over the span.
     """
     with np.errstate(all="ignore"):
-        parts = split(net)
+        parts = split(net, view)
         grid = 2 * pi * np.geomspace(low, high, max(8, int(log(high / low) / log(10.0) * 12) + 1))
         growth = _growth(net, parts, low, high)
         zero = np.round(growth[0]).astype(np.int64)
@@ -98,8 +100,8 @@ def _none(why: str) -> Poles:
     return Poles(np.zeros(0, dtype=complex), np.zeros(0, dtype=np.int64), 0, False, why)
 
 
-def _rows(net: Network, s: NDArray[np.complexfloating[Any, Any]]) -> Complex:
-    return determinant(fold(net, s, "full"), s)
+def _rows(net: Network, s: NDArray[np.complexfloating[Any, Any]], view: View) -> Complex:
+    return determinant(fold(net, s, view), s, view)
 
 
 def _growth(net: Network, parts: Blocks, low: float, high: float) -> Floats:
@@ -108,7 +110,7 @@ def _growth(net: Network, parts: Blocks, low: float, high: float) -> Floats:
     On the imaginary axis, where a pole far away counts by the square of its distance only.
     """
     s = (np.array([low, 1.1 * low, high / 1.1, high]) * 2j * pi).astype(np.complex128)
-    sizes = np.log(np.abs(_rows(net, s)))
+    sizes = np.log(np.abs(_rows(net, s, parts.view)))
     each = np.array([sizes[:, 1] - sizes[:, 0], sizes[:, 3] - sizes[:, 2]]) / log(1.1)
     result = np.zeros((2, parts.lacking.size))
     for end in (0, 1):
@@ -121,7 +123,7 @@ def _slopes(net: Network, parts: Blocks, grid: Floats) -> Floats:
 
     By complex step: the factors are real there, and an imaginary part of 1e-20 carries the derivative.
     """
-    rows = _rows(net, grid * (1 + 1e-20j))
+    rows = _rows(net, grid * (1 + 1e-20j), parts.view)
     each = rows.imag / rows.real * 1e20
     slopes = np.zeros((parts.lacking.size, grid.size))
     np.add.at(slopes, parts.factor, each)
@@ -130,7 +132,7 @@ def _slopes(net: Network, parts: Blocks, grid: Floats) -> Floats:
 
 def _slopes_beside(net: Network, parts: Blocks, grid: Floats) -> Floats:
     """d ln|D|/d ln ω on the imaginary axis by block, (blocks, points), by differences: for sizes alone."""
-    sizes = np.log(np.abs(_rows(net, 1j * np.concatenate([grid * 1.01, grid / 1.01]))))
+    sizes = np.log(np.abs(_rows(net, 1j * np.concatenate([grid * 1.01, grid / 1.01]), parts.view)))
     each = (sizes[:, :grid.size] - sizes[:, grid.size:]) / (2 * log(1.01))
     slopes = np.zeros((parts.lacking.size, grid.size))
     np.add.at(slopes, parts.factor, each)
@@ -143,7 +145,7 @@ def _traces(net: Network, parts: Blocks, s: Complex) -> Complex:
     Of the block's whole product: its factors have poles and zeros of their own that cancel.
     """
     h = 1e-4
-    both = _rows(net, np.concatenate([s * (1 + h), s * (1 - h)]))
+    both = _rows(net, np.concatenate([s * (1 + h), s * (1 - h)]), parts.view)
     each = both[:, :s.size] / both[:, s.size:]
     whole = [each[parts.factor == block].prod(axis=0) for block in range(parts.lacking.size)]
     traces: Complex = np.log(np.array(whole)) / (2 * h) + parts.lacking[:, None]
@@ -175,7 +177,7 @@ def _start(slopes: Floats, grid: Floats, count: Ints, spread: float) -> tuple[Co
 def _ratio(net: Network, parts: Blocks, rest: Ints, groups: Ints, p: Complex, q: Complex, which: Ints) -> Complex:
     """D(q)/D(p) of each root's block, poles at 0 taken out."""
     group = groups[which]
-    both = _rows(net, np.concatenate([p, q]))
+    both = _rows(net, np.concatenate([p, q]), parts.view)
     each = both[:, p.size:] / both[:, :p.size]
     each[parts.factor[:, None] != group[None, :]] = 1.0
     result: Complex = each.prod(axis=0) * (q / p) ** rest[group]

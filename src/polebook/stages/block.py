@@ -4,6 +4,9 @@ from __future__ import annotations
 
 from math import pi
 
+from polebook.devices.num import BOLTZMANN
+from polebook.devices.spectrum import T0_K, Noise, Spectrum
+from polebook.formula import Formula
 from polebook.param import Param
 from polebook.stages.base import Kind
 from polebook.stages.opamp import buffer, output_node
@@ -34,6 +37,11 @@ PARAMS = (
     Param("vout", "voltage", "quiescent output voltage (default midway between the rails)", sign="any"),
 )
 
+EN_OF_NF = Formula("parts.en.nf", "en = sqrt(4·k_B·T_0·nf_source·(10^(nf/10) - 1))",
+                   "definition of the noise figure at 290 K (H. T. Friis, Noise figures of radio receivers, Proc. IRE "
+                   "32, 1944; from memory)")
+FORMULAS = (EN_OF_NF,)
+
 KINDS = (Kind("block", "block", (), PARAMS, "a stage known by its data sheet: gain, impedances, poles, noise"),)
 
 
@@ -43,12 +51,31 @@ def open_gain(given: Given) -> Value:
     return gain if load is None or rout is None else gain * (1 + rout / load)
 
 
+def noise(given: Given) -> Noise:
+    """Voltage noise in series with the whole input ("en"), current noise across it ("in"), as far as the file has them.
+
+    A noise figure stands for the voltage noise that makes it with nf_source at 290 K.
+    """
+    found: Noise = {}
+    density, nf, against = given.number("en"), given.number("nf"), given.number("nf_source")
+    corner, current = given.number("en_corner"), given.number("in")
+    if density is not None:
+        found["en"] = Spectrum(density * density, 0.0 if corner is None else corner)
+    elif nf is not None and against is not None:
+        excess = 10.0 ** (nf / 10.0) - 1.0
+        found["en"] = Spectrum(4.0 * BOLTZMANN * T0_K * against * excess, 0.0 if corner is None else corner)
+    if current is not None:
+        corner = given.number("in_corner")
+        found["in"] = Spectrum(current * current, 0.0 if corner is None else corner)
+    return found
+
+
 def stamp(st: Stamper, before: int, given: Given) -> int:
     """input - couple - a; an ideal amplifier, its poles one by one, a buffer behind rout; bridges from a."""
     a = st.series("a", before, "in", [("couple", "C-low", given.number("couple"))])
-    st.resistor("rin", a, GROUND, given.number("rin"))
+    st.resistor("rin", a, GROUND, given.number("rin"), silent=True)
     st.capacitor("cin", a, GROUND, given.number("cin"))
-    x = st.driven("gain", "")
+    x = first = st.driven("gain", "")
     st.amplifier(x, a, GROUND, open_gain(given))
     for name, count, storage in (("pole", given.poles, st.lag), ("lower", given.lower_poles, st.washout)):
         for k in range(1, count + 1):
@@ -63,6 +90,11 @@ def stamp(st: Stamper, before: int, given: Given) -> int:
     st.capacitor("c_bridge", a, o, given.number("c_bridge"), bridge=True)
     st.resistor("r_bridge", a, o, given.number("r_bridge"), bridge=True)
     output_capacitance(st, given, o)
+    sources = noise(given)
+    if "en" in sources:
+        st.noise_voltage("en", first, a, sources["en"])
+    if "in" in sources:
+        st.noise_current("in", a, GROUND, sources["in"])
     return o
 
 

@@ -23,10 +23,10 @@ def stamp(st: Stamper, before: int, given: Given) -> int:
     _, b = control(st, given, before)
     lower = lower_network(st, given)
     middle = st.node("mid", "mid")
-    device(st, given.figures, b, middle, lower, bridging=ACROSS_OUTPUT)
+    device(st, given.figures, given.noise, b, middle, lower, bridging=ACROSS_OUTPUT)
     upper = st.series("inner_upper", GROUND, "mid", [("rx_upper", "R", given.upper.get("rx"))])
     out = st.node("out", "out")
-    device(st, given.upper, upper, out, middle, after="_upper")
+    device(st, given.upper, given.upper_noise, upper, out, middle, after="_upper")
     output_network(st, given, out)
     return out
 

@@ -25,7 +25,7 @@ def stamp(st: Stamper, before: int, given: Given) -> int:
     terminal = st.series("control", a, "in", [("stopper", "R", given.number("stopper"))])
     b = st.series("inner", terminal, "in", [("rx", "R", given.figures.get("rx"))])
     out = st.node("out", "out")
-    device(st, given.figures, b, out, lower)
+    device(st, given.figures, given.noise, b, out, lower)
     output_network(st, given, out)
     return out
 

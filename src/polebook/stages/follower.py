@@ -19,7 +19,7 @@ def stamp(st: Stamper, before: int, given: Given) -> int:
     """As the inverting kinds up to the inner control; the output terminal on its rail, the lower one the output."""
     _, b = control(st, given, before)
     out = st.node("out", "out")
-    device(st, given.figures, b, GROUND, out, bridging=ACROSS_LOWER)
+    device(st, given.figures, given.noise, b, GROUND, out, bridging=ACROSS_LOWER)
     part, value = slot(given, "r_low")
     st.resistor(part, out, GROUND, value)
     output_capacitance(st, given, out)

@@ -22,7 +22,7 @@ def stamp(st: Stamper, before: int, given: Given) -> int:
     terminal, b = control(st, given, before)
     lower = lower_network(st, given)
     out = st.node("out", "out")
-    device(st, given.figures, b, out, lower, bridging=ACROSS_OUTPUT)
+    device(st, given.figures, given.noise, b, out, lower, bridging=ACROSS_OUTPUT)
     st.link(terminal, out, [typed(given, "rf", "R"), ("c_rf", "C-low", given.number("c_rf"))], bridge=True)
     if st.stands(given.number("c_comp")):
         comp = st.series("comp", terminal, "in", [("r_comp", "R", given.number("r_comp"))])

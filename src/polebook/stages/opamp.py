@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from polebook.devices.spectrum import Noise
 from polebook.param import Param
 from polebook.stages.base import Kind, device_param
 from polebook.stages.stamper import GROUND, Figures, Given, Stamper, Value
@@ -49,21 +50,22 @@ def output_node(st: Stamper, rout: Value | None) -> int:
 def buffer(st: Stamper, x: int, o: int, rout: Value | None) -> None:
     """Ties the output node o to an ideal buffer at x, through rout where it stands."""
     if st.stands(rout):
-        st.resistor("rout", x, o, rout)
+        st.resistor("rout", x, o, rout, silent=True)
     else:
         st.amplifier(o, x, GROUND, 1.0)
 
 
-def _amplifier(st: Stamper, figures: Figures, p: int, n: int, o: int) -> None:
-    """The op-amp from its inputs to o: what it loads them with, its poles, a buffer behind rout.
+def _amplifier(st: Stamper, figures: Figures, noise: Noise, p: int, n: int, o: int) -> None:
+    """The op-amp from its inputs to o: what it loads them with, its poles, a buffer behind rout, its noise.
 
-    `gbw` and `f2` of the figures are time constants, in seconds.
+    `gbw` and `f2` of the figures are time constants, in seconds. Its voltage noise stands right ahead of what senses
+    the inputs, behind rin, cin_diff and cin_cm: all of the input capacitance then counts in its gain.
     """
-    st.resistor("rin", p, n, figures.get("rin"))
+    st.resistor("rin", p, n, figures.get("rin"), silent=True)
     st.capacitor("cin_diff", p, n, figures.get("cin_diff"))
     for node in (p, n):
         st.capacitor("cin_cm", node, GROUND, figures.get("cin_cm"))
-    x = st.driven("gbw", "gbw")
+    x = first = st.driven("gbw", "gbw")
     st.amplifier(x, p, n, figures["a0"])
     st.lag("gbw", x, figures["gbw"])
     if st.stands(figures.get("f2")):
@@ -72,6 +74,11 @@ def _amplifier(st: Stamper, figures: Figures, p: int, n: int, o: int) -> None:
         st.lag("f2", second, figures["f2"])
         x = second
     buffer(st, x, o, figures.get("rout"))
+    if "en" in noise:
+        st.noise_voltage("en", first, GROUND, noise["en"])
+    for node in (p, n):
+        if "in" in noise:
+            st.noise_current("in", node, GROUND, noise["in"])
 
 
 def _output(st: Stamper, given: Given, o: int) -> int:
@@ -95,7 +102,7 @@ def stamp_noninverting(st: Stamper, before: int, given: Given) -> int:
     o = output_node(st, given.figures.get("rout"))
     rf = given.number("rf")
     n = st.node("n", "in") if st.stands(rf) else o
-    _amplifier(st, given.figures, p, n, o)
+    _amplifier(st, given.figures, given.noise, p, n, o)
     st.resistor("rf", n, o, rf)
     st.capacitor("cf", n, o, given.number("cf"))
     st.link(n, GROUND, [("rg", "R", given.number("rg")), ("c_rg", "C-low", given.number("c_rg"))])
@@ -106,7 +113,7 @@ def _inverting_core(st: Stamper, given: Given, n: int) -> int:
     """p at ground through r_bias; rf and cf bridge the amplifier from n to o."""
     p = st.series("p", GROUND, "in", [("r_bias", "R", given.number("r_bias"))])
     o = output_node(st, given.figures.get("rout"))
-    _amplifier(st, given.figures, p, n, o)
+    _amplifier(st, given.figures, given.noise, p, n, o)
     st.resistor("rf", n, o, given.number("rf"), bridge=True)
     st.capacitor("cf", n, o, given.number("cf"), bridge=True)
     return _output(st, given, o)

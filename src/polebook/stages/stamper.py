@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import Any, Protocol
+
+from polebook.devices.spectrum import Noise, Spectrum
 
 # A float, a complex number or an array of them: the stamps never look inside.
 Value = Any
@@ -33,6 +35,7 @@ class Given:
 
     number   key of the stage -> SI value, None where absent ("arms.1.series_r", "poles.1" for lists)
     figures  small-signal figures of its card at its operating point; `upper` those of a cascode's upper device
+    noise    its device's noise sources; `upper_noise` those of a cascode's upper device
     """
 
     family: str
@@ -42,6 +45,8 @@ class Given:
     arms: Sequence[ArmLike] = ()
     poles: int = 0
     lower_poles: int = 0
+    noise: Noise = field(default_factory=dict)
+    upper_noise: Noise = field(default_factory=dict)
 
 
 class Stamper(Protocol):
@@ -67,8 +72,12 @@ class Stamper(Protocol):
         Returns the node behind them, `node` itself where none is there.
         """
 
-    def resistor(self, part: str, i: int, j: int, value: Value | None, bridge: bool = False) -> None:
-        """A resistor across two nodes; a bridge runs from the input side i to the output side j."""
+    def resistor(self, part: str, i: int, j: int, value: Value | None, bridge: bool = False,
+                 silent: bool = False) -> None:
+        """A resistor across two nodes; a bridge runs from the input side i to the output side j.
+
+        A silent one is only a figure of a device or data sheet: no thermal noise comes from it.
+        """
 
     def capacitor(self, part: str, i: int, j: int, value: Value | None, bridge: bool = False) -> None:
         """A high-role capacitor across two nodes."""
@@ -87,3 +96,13 @@ class Stamper(Protocol):
 
     def washout(self, part: str, node: int, tau: Value) -> None:
         """Turns a driven node's V into (1 + 1/(s·tau))·V: one high-pass corner."""
+
+    def noise_current(self, part: str, i: int, j: int, spectrum: Spectrum | None) -> None:
+        """A noise current between two nodes, booked to `part`; None where it is there but cannot be told."""
+
+    def noise_voltage(self, part: str, node: int, ahead: int, spectrum: Spectrum | None) -> None:
+        """A noise voltage in the control of a driven node, booked to `part`.
+
+        Where `ahead` is not ground, it stands in series with all else too that the stage has hung across that node
+        and another one: it lies ahead of a whole input, not only of what senses it.
+        """

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from polebook.devices.spectrum import Noise
 from polebook.stages.base import slot_key
 from polebook.stages.stamper import GROUND, Figures, Given, Labelled, Stamper, Value
 
@@ -53,15 +54,15 @@ def output_capacitance(st: Stamper, given: Given, out: int) -> None:
     st.capacitor("c_load", out, GROUND, given.number("c_load"))
 
 
-def device(st: Stamper, figures: Figures, b: int, output: int, lower: int, after: str = "",
+def device(st: Stamper, figures: Figures, noise: Noise, b: int, output: int, lower: int, after: str = "",
            bridging: tuple[str, ...] = ()) -> None:
-    """The small-signal device between the inner control b, output and lower terminals.
+    """The small-signal device between the inner control b, output and lower terminals, and its noise.
 
     `after` is added to every part's name; `bridging` names the capacitances that bridge the stage.
     """
     st.transconductance("gm" + after, output, lower, b, lower, figures.get("gm"))
-    st.resistor("rpi" + after, b, lower, figures.get("rpi"))
-    st.resistor("ro" + after, output, lower, figures.get("ro"))
+    st.resistor("rpi" + after, b, lower, figures.get("rpi"), silent=True)
+    st.resistor("ro" + after, output, lower, figures.get("ro"), silent=True)
     for name in ("cpi", "cgs", "cgk"):
         st.capacitor(name + after, b, lower, figures.get(name), name in bridging)
     for name in ("cmu", "cgd", "cga"):
@@ -70,6 +71,8 @@ def device(st: Stamper, figures: Figures, b: int, output: int, lower: int, after
         st.capacitor(name + after, output, GROUND, figures.get(name))
     for name in ("cds", "cak"):
         st.capacitor(name + after, output, lower, figures.get(name))
+    for name, spectrum in noise.items():
+        st.noise_current(name + after, output if name == "gm" else b, lower, spectrum)
 
 
 ACROSS_OUTPUT = ("cmu", "cgd", "cga")

@@ -74,6 +74,19 @@ def _bjt_rpi(card: _Card) -> Working:
     return card.done(bjt.RPI)
 
 
+def _bjt_ib(card: _Card) -> Working:
+    card.current("ic")
+    if card.has("beta"):
+        card.key("beta")
+    else:
+        rpi = card.sheet.figure("rpi", f"{card.stage}.rpi{card.after}.value")
+        card.sheet.step(f"beta = {_gm(card)}·{rpi}", "", "as gm and rpi have it:")
+    if card.books.value(f"{card.bias}.current_a") < 0.0:
+        card.sheet.result("ib = max(0, ic)/beta", "it is cut off:")
+        return card.sheet.done(bjt.IB)
+    return card.done(bjt.IB)
+
+
 def _bjt_ro(card: _Card) -> Working:
     card.key("early_voltage")
     card.current("ic")
@@ -200,7 +213,7 @@ def _opamp_f2(card: _Card) -> Working:
 _FET = {"gm": _fet_gm, "ro": _fet_ro, "cgd": _fet_cgd, "cgs": _fet_cgs, "cds": _fet_cds}
 _MAKERS = {
     **{("bjt", key): make for key, make in
-       {"gm": _bjt_gm, "rpi": _bjt_rpi, "ro": _bjt_ro, "cmu": _bjt_cmu, "cpi": _bjt_cpi}.items()},
+       {"gm": _bjt_gm, "rpi": _bjt_rpi, "ro": _bjt_ro, "cmu": _bjt_cmu, "cpi": _bjt_cpi, "ib": _bjt_ib}.items()},
     **{(family, key): make for family in ("mosfet", "jfet") for key, make in _FET.items()},
     ("triode", "gm"): _triode_gm, ("triode", "ro"): _triode_ro,
     ("opamp", "gbw"): _opamp_gbw, ("opamp", "f2"): _opamp_f2,

@@ -1,6 +1,6 @@
 """The arithmetic of a working's text: what is printed is what is computed.
 
-    + - · / ^   |x|   ( )   sqrt ln log10 max min   pi   numbers   symbols such as R_1, V_B, tau_Q2.cmu
+    + - · / ^   |x|   ( )   sqrt ln log10 exp cos max min   pi   numbers   symbols such as R_1, V_B, tau_Q2.cmu
 """
 
 from __future__ import annotations
@@ -11,7 +11,7 @@ from collections.abc import Callable, Mapping
 
 _TOKEN = re.compile(r"\s*(?:([0-9]+\.?[0-9]*(?:e[+-]?[0-9]+)?)|([^\W\d][\w.]*)|([-+·/^|(),]))")
 _FUNCTIONS: Mapping[str, Callable[..., float]] = {
-    "sqrt": math.sqrt, "ln": math.log, "log10": math.log10, "max": max, "min": min,
+    "sqrt": math.sqrt, "ln": math.log, "log10": math.log10, "exp": math.exp, "cos": math.cos, "max": max, "min": min,
 }
 
 

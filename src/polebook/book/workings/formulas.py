@@ -5,10 +5,27 @@ from __future__ import annotations
 from collections.abc import Mapping
 from types import MappingProxyType
 
-from polebook.book import account, band, leverage, lines, miller, poles, shares, sites, targets, time_constants
+from polebook.book import (
+    account,
+    band,
+    delay,
+    levels,
+    leverage,
+    lines,
+    miller,
+    noise,
+    poles,
+    pulse,
+    shares,
+    sites,
+    swing,
+    targets,
+    time_constants,
+)
 from polebook.formula import Formula
 
-_MODULES = (account, band, leverage, lines, miller, poles, shares, sites, targets, time_constants)
+_MODULES = (account, band, delay, levels, leverage, lines, miller, noise, poles, pulse, shares, sites, swing, targets,
+            time_constants)
 
 _FILE = (
     Formula("parts.value.file", "as the file gives it", "the chain file"),

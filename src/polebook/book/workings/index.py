@@ -75,7 +75,7 @@ def _rows(document: Mapping[str, Any]) -> Iterator[tuple[str, str, Row, int]]:
     yield from ((row["node"], "levels", row, at) for at, row in enumerate(document["levels"] or []))
 
 
-NULL_SECTIONS = {"poles": "poles", "zeros": "zeros", "rail": "rails", "device": "cards"}
+NULL_SECTIONS = {"poles": "poles", "zeros": "zeros", "device": "cards"}
 """First word of a figure's name -> the section that it is a figure of, where that section may be null."""
 
 

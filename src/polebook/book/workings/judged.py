@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from polebook.book.targets import LESS_IS_BETTER, TOLERANCE_DB
 from polebook.book.workings.formulas import FORMULA
+from polebook.book.workings.levels import swing_target
 from polebook.book.workings.sheet import Books, Sheet, plus
 from polebook.formula import Working
 
@@ -30,7 +31,10 @@ def account(books: Books, sheet: Sheet) -> Working:
     return sheet.done(formula)
 
 
-_GOT = {"lower": "overall.lower_edge_hz", "upper": "overall.upper_edge_hz", "peaking": "overall.peaking_db"}
+_GOT = {"lower": "overall.lower_edge_hz", "upper": "overall.upper_edge_hz", "peaking": "overall.peaking_db",
+        "noise": "overall.noise_density", "current": "overall.supply_current_a", "rise": "overall.rise_time_s"}
+
+_IN_PERCENT = {"overshoot": "overall.overshoot_percent", "sag": "overall.sag_percent"}
 
 
 def target(books: Books, sheet: Sheet) -> Working:
@@ -65,6 +69,10 @@ def _got(books: Books, sheet: Sheet, name: str) -> Working:
         reference = "target.reference" in books.chain.given and books.value("overall.gain_at_reference") is not None
         gain = sheet.figure("gain", "overall.gain_at_reference" if reference else "overall.gain")
         sheet.result(f"got = |{gain}|")
+    elif name == "swing":
+        swing_target(books, sheet)
+    elif name in _IN_PERCENT:
+        sheet.result(f"got = {sheet.figure(name, _IN_PERCENT[name])}/100")
     else:
         sheet.result(f"got = {sheet.figure(name, _GOT[name])}")
     return sheet.done(FORMULA["targets.got"])

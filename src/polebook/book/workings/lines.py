@@ -6,6 +6,7 @@ from polebook.book.miller import leading
 from polebook.book.workings.currents import driven_by_source, out_of
 from polebook.book.workings.formulas import FORMULA
 from polebook.book.workings.gains import closed_form
+from polebook.book.workings.noise import line_share
 from polebook.book.workings.sheet import Books, Sheet, plus
 from polebook.formula import Formula, Working
 from polebook.solve.transfer import adjoint
@@ -178,4 +179,5 @@ def _owns(books: Books, sheet: Sheet, index: int) -> Working:
 _MAKERS = {
     "gain": _gain, "gain_db": _gain_db, "open_gain": _open_gain, "loading": _loading, "transfer_ohm": _transfer,
     "k": _k, "input_ohm": _input, "output_ohm": _output, "owns_upper": _owns, "owns_lower": _owns,
+    "noise_share": line_share,
 }

@@ -85,19 +85,19 @@ def _pole(books: Books, sheet: Sheet) -> Working:
 def _terms(books: Books, sheet: Sheet, name: str, left_out: list[str]) -> list[str]:
     """R·C of every node of a site, each capacitance with its Miller half; parts of no use go to `left_out`."""
     lumped = Lumped(books.solution, books.site_of)
-    landed: dict[int, list[Half]] = {}
+    found_at: dict[int, list[Half]] = {}
     for number, half in lumped.landings():
         if half is None or lumped.names[number] != name or not lumped.hears(number):
             continue
         if half.of_use:
-            landed.setdefault(number, []).append(half)
+            found_at.setdefault(number, []).append(half)
         else:
             left_out.append(books.full_name(books.layout.parts[half.part]))
     terms = []
-    for number, found in landed.items():
+    for number, found in found_at.items():
         ohm = _resistance(books, sheet, number)
         label = books.node_label(number)
-        farads = [_landed(books, sheet, half, label) for half in found]
+        farads = [landed(books, sheet, half, label) for half in found]
         terms.append(f"{ohm}·{sheet.step(f'C_{label} = {plus(farads)}', 'F', f'capacitance at {label}:')}")
     return terms
 
@@ -111,7 +111,7 @@ def _resistance(books: Books, sheet: Sheet, number: int) -> str:
     return sheet.put(f"R_{label}", value, "Ω", f"driving-point resistance of {label}", "midband network")
 
 
-def _landed(books: Books, sheet: Sheet, half: Half, label: str) -> str:
+def landed(books: Books, sheet: Sheet, half: Half, label: str) -> str:
     """How much of a capacitor lands on a node, as a term."""
     name = books.full_name(books.layout.parts[half.part])
     value = sheet.figure(f"C_{name}", f"{name}.value")

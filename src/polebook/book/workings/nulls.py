@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from polebook.book.build import LATER
+from polebook.book.workings import null_levels, null_noise, null_pulse
 from polebook.book.workings.index import Entry
 from polebook.book.workings.sheet import Books
 from polebook.chain.suggest import listed
@@ -21,26 +21,33 @@ def why(books: Books, entry: Entry) -> str:
         return _no_section(books, section)
     if key.startswith("leverage."):
         return _no_leverage(books, key.removeprefix("leverage."))
-    if (section == "overall" and key in LATER) or key == "noise_share" or section in ("levels", "rails"):
-        return VERSION
+    if section == "overall" and key in null_pulse.KEYS:
+        return null_pulse.why(books, key)
     if section in ("lines", "bridges") and row.get("name") in books.left_out:
         return f"{row['name']} is left out: a wire has gain 1 and nothing else"
+    if section == "overall" and key in null_noise.WHOLE:
+        return null_noise.whole(books, key, _unjudged(books))
+    if key == "noise_share":
+        return null_noise.share(books, entry, _unjudged(books))
     if key in _OF_THE_BAND and (found := _no_band(books, section, key)):
         return found
     maker = {"overall": _overall, "lines": _line, "bridges": _bridge, "nodes": _node, "parts": _part, "bias": _bias,
-             "targets": _target, "account": _account}.get(section)
+             "targets": _target, "account": _account, "levels": null_levels.level,
+             "rails": null_levels.rail}.get(section)
     return maker(books, entry) if maker else "it does not apply here"
 
 
 def _no_section(books: Books, section: str) -> str:
     if section == "poles":
         return f"the poles of this chain are not resolved: {books.ledger.poles.why}"
+    if section == "levels":
+        return _unjudged(books).replace("no edges", "no levels")
     return "the zeros of a stage could not be counted" if section == "zeros" else VERSION
 
 
 def _no_leverage(books: Books, figure: str) -> str:
-    if figure == "noise":
-        return VERSION
+    if figure == "noise" and (found := null_noise.nothing(books, _unjudged(books))):
+        return found
     edge = {"lower_edge": "lower", "upper_edge": "upper"}.get(figure)
     if edge and books.value(f"overall.{edge}_edge_hz") is None:
         return _no_edge(books, edge)
@@ -78,6 +85,8 @@ def _no_band(books: Books, section: str, key: str) -> str:
 
 
 def _overall(books: Books, entry: Entry) -> str:
+    if entry.key in null_levels.WHOLE:
+        return null_levels.whole(books, entry.key, _unjudged(books))
     return {
         "unstable": "the winding of the determinant came to no whole number: values lie too far apart",
         "octc_upper_hz": "the open-circuit time constants have no positive sum",

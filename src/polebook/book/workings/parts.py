@@ -8,6 +8,7 @@ from polebook.book.workings.devices import device_value
 from polebook.book.workings.formulas import FORMULA
 from polebook.book.workings.levers import lever
 from polebook.book.workings.lines import voltage
+from polebook.book.workings.noise import of_noise_figure, part_share
 from polebook.book.workings.sheet import Books, Sheet, path_of
 from polebook.formula import Working
 from polebook.quantity import engineering
@@ -20,6 +21,8 @@ def part(books: Books, sheet: Sheet) -> Working:
         return _value(books, sheet)
     if key.startswith("leverage."):
         return lever(books, sheet)
+    if key == "noise_share":
+        return part_share(books, sheet)
     return time_constant(books, sheet) if key == "tau_s" else _owns(books, sheet)
 
 
@@ -67,6 +70,8 @@ def _value(books: Books, sheet: Sheet) -> Working:
         if path in books.chain.given:
             return sheet.done(FORMULA["parts.value.file"])
         return sheet.done(FORMULA["parts.value.default"])
+    if row["type"] == "en" and f"{row['stage']}.nf" in books.chain.numbers:
+        return of_noise_figure(books, sheet)
     return device_value(books, sheet, row["stage"], row["part"])
 
 

@@ -132,6 +132,8 @@ class Sheet:
         stated = path in chain.given
         origin = f"line {place.line}: {path}" if stated and place is not None and place.line else path
         known = DIMENSIONS[dimension].unit if dimension in DIMENSIONS else ""
+        if dimension == "amplitude":
+            known = "V" if chain.source_kind == "voltage" else "A"
         return self.put(symbol, chain.numbers[path], known, text or purpose, origin, "file" if stated else "default")
 
     def step(self, text: str, unit: str = "", about: str = "", result: bool = False) -> str:

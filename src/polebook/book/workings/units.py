@@ -7,9 +7,10 @@ from typing import Any
 
 from polebook.book.workings.index import Entry
 
-_TYPES = {"C": "F", "L": "H", "R": "Ω", "gm": "S", "tau": "s", "I": "A"}
+_TYPES = {"C": "F", "L": "H", "R": "Ω", "gm": "S", "tau": "s", "I": "A", "en": "V/√Hz", "in": "A/√Hz"}
 _TARGETS = {"gain": "gain", "lower": "Hz", "upper": "Hz", "peaking": "dB", "noise": "density", "swing": "V",
             "current": "A", "rise": "s"}
+_NOISE = {"noise_density": ("V/√Hz", "A/√Hz"), "noise_total_input": ("V", "A"), "noise_total_output": ("V", "V")}
 _ENDINGS = {"hz": "Hz", "db": "dB", "ohm": "Ω", "a": "A", "v": "V", "w": "W", "s": "s", "percent": "%"}
 
 ABOUT: Mapping[str, str] = {
@@ -77,7 +78,12 @@ ABOUT: Mapping[str, str] = {
     "bias.lower_v": "d.c. voltage of the lower terminal",
     "bias.output_v": "d.c. voltage of the output terminal",
     "bias.dissipation_w": "heat that the device makes",
-    "rails.current_a": "quiescent current that the rail gives",
+    "rails.current_a": "quiescent current that the rail gives; negative: that it takes",
+    "levels.largest_v": "peak at the node of the largest signal",
+    "levels.smallest_v": "peak at the node of the smallest signal of interest",
+    "levels.noise_v": "noise at the node, rms",
+    "levels.clip_v": "peak at the node at which its stage clips",
+    "levels.headroom_db": "clip level over the largest signal",
     "account.edge_hz": "frequency at which the account is drawn up",
     "account.budget_db": "what may be lost there",
     "account.lost_db": "what the chain loses there",
@@ -102,6 +108,8 @@ _DEVICE = {
     "f2": "time constant of the second pole", "rin": "resistance between the inputs",
     "rout": "output resistance, loop open", "cin_diff": "capacitance between the inputs",
     "cin_cm": "capacitance from each input to ground",
+    "ib": "base current", "ig": "gate leakage",
+    "en": "voltage noise density", "in": "current noise density",
 }
 _LEVERAGE = {"gain": "the midband gain", "lower_edge": "the lower edge", "upper_edge": "the upper edge",
              "noise": "the input noise"}
@@ -132,6 +140,10 @@ def unit(document: Mapping[str, Any], entry: Entry) -> str:
     if key in ("gain", "gain_at_reference", "gain_db", "open_gain"):
         ohms = not volts and (section == "overall" or row.get("name") == "source")
         return ("dBΩ" if ohms else "dB") if key == "gain_db" else "Ω" if ohms else ""
+    if key in _NOISE:
+        return _NOISE[key][not volts]
+    if key == "largest_source":
+        return "V" if volts else "A"
     if section == "bridges" and key in ("value", "at_input", "at_output"):
         return _TYPES[row["type"]]
     if section == "parts" and key == "value":

@@ -7,6 +7,7 @@ from math import exp, log10, tau
 import numpy as np
 
 from polebook.book.account import line_losses
+from polebook.book.workings import levels, noise, pulse
 from polebook.book.workings.formulas import FORMULA
 from polebook.book.workings.sheet import Books, Sheet, plus, times
 from polebook.formula import Working
@@ -179,5 +180,5 @@ _MAKERS = {
     "gain": _gain, "gain_db": _gain_db, "unstable": _unstable, "reference_hz": _reference,
     "gain_at_reference": _at_reference, "lower_edge_hz": _edge, "upper_edge_hz": _edge, "peaking_db": _peaking,
     "octc_upper_hz": _open_circuit, "sctc_lower_hz": _short_circuit, "node_upper_hz": _node_estimate,
-    "shrinkage": _shrinkage,
+    "shrinkage": _shrinkage, **noise.WHOLE, **levels.WHOLE, **pulse.WHOLE,
 }
