@@ -218,9 +218,8 @@ def test_work_that_can_not_be_kept_is_told_and_ends_nothing(kept):
     folder.mkdir()
     with kept.terminal(TMPDIR=str(folder)) as terminal:
         edited(kept, terminal)
-        terminal.until("no recovery")
-        assert "unsaved work can't be kept (a file is in its folder's place): only w saves it now" in " ".join(
-            terminal.screen().split())
+        told = "unsaved work can't be kept (a file is in its folder's place): only w saves it now"
+        terminal.when(lambda text: "no recovery" in text and told in " ".join(text.split()), told)
         terminal.press("+")
         assert "no recovery" in terminal.screen()
         terminal.signal(signal.SIGTERM)

@@ -160,6 +160,7 @@ def test_reports_that_nobody_asked_for_do_nothing(tmp_path):
     with Terminal(app(copied(tmp_path))) as terminal:
         pair = Pair(terminal, tmp_path / "chain.toml")
         pair.press("tab")
+        terminal.quiet(0.3)
         for one in junk:
             terminal.write(one)
         assert terminal.quiet(0.3).count == 0

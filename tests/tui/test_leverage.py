@@ -177,7 +177,9 @@ def test_a_row_keeps_its_part_when_an_edit_ranks_it_elsewhere():
 def test_a_point_after_another_key_than_the_page_s_digit_is_no_value():
     desk = Desk(SIX, seconds=0.05).press("tab", "7", "enter", ".")
     assert (desk.view.lever.sweep.cursor, desk.view.message) == (21, "")
-    assert "reads like a value" in desk.press("7", ".").view.message
+    assert desk.press("7", ".").view.message == ""
+    assert "reads like a value" in desk.press("7", ".", "k").view.message
+    assert "reads like a value" not in desk.press("7", "escape", "k").view.message
 
 
 def test_esc_goes_to_the_ledger():

@@ -280,9 +280,9 @@ def run(state: State, guardian: Guardian | None = None) -> int:
             asyncio.run(app.live())
         except Exception as error:
             app.failed(error)
-    terminal.let_go()
     code = app.return_code or 0
     if guardian is not None:
         crash = None if app.fault is None else guardian.report(app.fault)
         ending.tell(basename(state.session.path), guardian, code, crash)
+    terminal.let_go()
     return code

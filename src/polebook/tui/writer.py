@@ -77,13 +77,13 @@ def when_sent(driver: object, told: Callable[[], None]) -> None:
 
 def let_go() -> None:
     """Ends the output to a terminal that has gone, so that leaving does not stumble over what it can't flush."""
-    out = sys.__stdout__
-    if out is None:
-        return
-    try:
-        out.flush()
-    except OSError:
-        with suppress(OSError, ValueError):
-            nowhere = os.open(os.devnull, os.O_WRONLY)
-            os.dup2(nowhere, out.fileno())
-            os.close(nowhere)
+    for out in (sys.__stdout__, sys.__stderr__):
+        if out is None:
+            continue
+        try:
+            out.flush()
+        except OSError:
+            with suppress(OSError, ValueError):
+                nowhere = os.open(os.devnull, os.O_WRONLY)
+                os.dup2(nowhere, out.fileno())
+                os.close(nowhere)

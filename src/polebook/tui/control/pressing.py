@@ -26,7 +26,7 @@ from polebook.tui.control.typing import one_line
 from polebook.tui.view import Overlay, State
 
 VALUE_S = 1.0  # a letter this soon after a digit belongs to a value
-_IN_VALUES = frozenset("fpnuµmkKMGTRF")  # a point moves a figure or a cursor at most
+_IN_VALUES = frozenset("fpnuµmkKMGTRF")
 
 
 def press(state: State, key: str, character: str | None, now: float) -> Done:
@@ -52,7 +52,9 @@ def press(state: State, key: str, character: str | None, now: float) -> Done:
     action = keys.ACTIONS.get(keys.name_of(key, character))
     if action is None:
         return refuse(state, f"no key does that: {text}", "? shows every key") if text else done(state)
-    return (pages.own(state, action) or _WORK[action])(at(state, digit_at=float("-inf")), now)
+    if text != ".":  # which moves a figure or a cursor at most: 2.2k may still be meant
+        state = at(state, digit_at=float("-inf"))
+    return (pages.own(state, action) or _WORK[action])(state, now)
 
 
 def paste(state: State, text: str, now: float) -> Done:
