@@ -28,6 +28,7 @@ from tests.helpers import DEMOS
 FOLDER = Path(__file__).parent / "screens"
 SIZES = ((80, 24), (140, 45))
 LISTENER, SIX, DIODE = "wire-break-listener", "six-stage", "photodiode-front"
+SOUNDER = "frost-line-sounder"
 
 
 def texts() -> Iterator[tuple[str, str]]:
@@ -135,6 +136,14 @@ def swept(name: str, path: str, *keys: str) -> State:
     return state
 
 
+def aimed(name: str, path: str, targets: dict[str, str], **view: object) -> State:
+    """A chain with more targets than its file has."""
+    session = opened(name)
+    for word, typed in targets.items():
+        session = sessions.set_value(session, f"target.{word}", typed, 0.0)
+    return State(session, key(session, path, **view))
+
+
 def beside() -> State:
     """The listener, edited, while another hand has put another text in its place."""
     state = pinned(LISTENER, "Q1.rc", "2k4")
@@ -193,10 +202,26 @@ CASES: dict[str, Callable[[], State]] = {
     "response-input": lambda: at(DIODE, "U1.rf", page="response", plot=Plot(what="input")),
     "response-plain": lambda: replace(at(SIX, "Q3.rc", page="response", focus="page"), plain=True),
     "response-unstable": lambda: text(CHAINS["unstable, an op-amp that drives a capacitance"], page="response"),
+    "levels": lambda: at(SIX, "Q4.rc", page="levels", focus="page", figure=8),
+    "levels-signal": lambda: at(LISTENER, "Q3.re", page="levels", focus="page", bank="levels", figure=3),
+    "levels-pinned": lambda: pinned(SIX, "Q5.re", "470", page="levels", focus="page", bank="levels"),
+    "levels-plain": lambda: replace(at("shellac-desk", "V2.rk", page="levels", bank="levels"), plain=True),
+    "pulse": lambda: at(SOUNDER, "Q1.rc", page="pulse", focus="page"),
+    "pulse-short": lambda: aimed(SIX, "Q5.rc", {"rise": "100n", "overshoot": "1 %"}, page="pulse"),
+    "pulse-pinned": lambda: pinned(SOUNDER, "Q1.rc", "750", page="pulse", focus="page", row=1),
+    "pulse-sag": lambda: aimed(SIX, "Q5.rc", {"pulse": "10u", "sag": "5 %"}, page="pulse", focus="page", upper=False),
+    "pulse-no-length": lambda: at(LISTENER, "Q1.rc", page="pulse", focus="page", upper=False),
+    "pulse-plain": lambda: replace(at(DIODE, "U1.rf", page="pulse", focus="page"), plain=True),
+    "noise": lambda: at(SIX, "Q1.rc", page="noise", focus="page", row=6),
+    "noise-short": lambda: aimed(SIX, "Q1.rc", {"noise": "1.2n", "noise_from": "5k", "noise_to": "5M"}, page="noise",
+                                 focus="page"),
+    "noise-lines": lambda: pinned(LISTENER, "Q1.rc", "3k", page="noise", noise=Plot(what="output", single=True)),
+    "noise-plain": lambda: replace(at(DIODE, "U1.rf", page="noise", focus="page"), plain=True),
     "leverage": lambda: at(SIX, "Q5.rc", page="leverage", focus="page", lever=Lever(row="Q5.rc")),
     "leverage-lower": lambda: at(LISTENER, "Q2.couple", page="leverage", lever=Lever("lower_edge", "Q2.couple")),
     "leverage-plain": lambda: replace(at(DIODE, "U1.rf", page="leverage", focus="page"), plain=True),
     "sweep": lambda: swept(SIX, "Q5.rc", ".", "."),
+    "leverage-noise": lambda: at(SIX, "Q1.re", page="leverage", focus="page", lever=Lever("noise", "Q1.re")),
     "sweep-short": lambda: swept(LISTENER, "Q2.couple", ",", ",", "v"),
     "sweep-plain": lambda: replace(swept(DIODE, "U1.rf"), plain=True),
     "field": lambda: field("Q2.ce", "4u7"),

@@ -92,12 +92,12 @@ def test_it_fits_whatever_the_levels(encoding: str, width: int) -> None:
 
 def test_rails_are_told_in_words_with_what_they_feed() -> None:
     text = "\n".join(rails(document(), LOOK))
-    assert re.search(r"positive +12\.0 V +gives +5\.00 mA", text)
-    assert re.search(r"negative +-12\.0 V +takes +3\.00 mA", text)
+    assert re.search(r"positive +12\.0 V +gives +5\.00 mA +60\.0 mW", text)
+    assert re.search(r"negative +-12\.0 V +takes +3\.00 mA +36\.0 mW", text)
     assert re.search(r"ground +0 V +not known +–", text)
     assert "positive gives: Q1.rc 4.00 mA, current source at Q2 1.00 mA" in text
     assert "negative takes: U1 itself 3.00 mA" in text
-    assert "V1.rk not known" in text
+    assert "ground takes: V1.rk not known" in text
     assert rails(document(rails=None), LOOK) == []
 
 

@@ -10,8 +10,9 @@ from polebook.problem import ProblemsFound
 from polebook.session import state as sessions
 from polebook.session.state import Session
 from polebook.text.history import History
+from polebook.tui.keys import PAGES
 from polebook.tui.lines import STYLES, Line, width
-from polebook.tui.view import Choice, Field, Lever, Overlay, State, Sweep, View, Writing
+from polebook.tui.view import Choice, Field, Lever, Overlay, Plot, State, Sweep, Times, View, Writing
 from tests.book.verdict_cases import CASES
 from tests.fuzz_files import spoilt
 from tests.helpers import DEMOS
@@ -40,13 +41,16 @@ def random_view(rng: random.Random, session: Session) -> View:
     sheets = sessions.sheets_of(session)
     sheet = rng.choice(("", "", *sheets, "nothing of the kind"))
     view = View(
-        page=rng.choice(("ledger", "nodes", "response", "leverage")), line=rng.randrange(-1, 12),
+        page=rng.choice(tuple(PAGES.values())), line=rng.randrange(-1, 12),
         focus=rng.choice(("sheet", "page")),
         sheet=sheet, key=rng.randrange(-1, 60), figure=rng.randrange(-1, 9), row=rng.randrange(-1, 40),
         upper=rng.random() < 0.6, decibels=rng.random() < 0.6, message=rng.choice(WORDS), bad=rng.random() < 0.3,
+        bank=rng.choice(("plan", "levels")),
     )
     if view.page == "leverage":
         view = replace(view, lever=random_lever(rng, session))
+    if view.page in ("pulse", "noise"):
+        view = replace(view, step=random_times(rng), sag=random_times(rng), noise=random_plot(rng))
     if rng.random() < 0.25:
         return replace(view, writing=random_writing(rng, session))
     if rng.random() < 0.3:
@@ -65,7 +69,8 @@ def random_view(rng: random.Random, session: Session) -> View:
 
 def random_lever(rng: random.Random, session: Session) -> Lever:
     """The leverage page with or without a sweep: of the chain or of another, of any values, some of them computed."""
-    figure, row = rng.choice(("gain", "upper_edge", "lower_edge", "none")), rng.choice(("", "Q1.rc", "device.N.beta"))
+    figure = rng.choice(("gain", "upper_edge", "lower_edge", "noise", "none"))
+    row = rng.choice(("", "Q1.rc", "device.N.beta"))
     chain = session.good.chain if session.good is not None and rng.random() < 0.7 else \
         sessions.new_session("x.toml", rng.choice(FRIENDLY)).chain
     if chain is None or not chain.numbers or rng.random() < 0.3:
@@ -83,7 +88,24 @@ def random_lever(rng: random.Random, session: Session) -> Lever:
 def random_point(rng: random.Random, value: float) -> Point:
     """A point of a sweep, some of its figures missing, some beyond all bounds."""
     gain, lower, upper = (rng.choice((None, 0.0, 1e-300, 1e300, 10 ** rng.uniform(-3, 9))) for _ in range(3))
-    return Point(value, gain if gain is None or rng.random() < 0.7 else -gain, lower, upper, why=rng.choice(WORDS))
+    return Point(value, gain if gain is None or rng.random() < 0.7 else -gain, lower, upper, why=rng.choice(WORDS),
+                 noise=rng.choice((None, 0.0, 1e-300, 1e300, 10 ** rng.uniform(-12, -3))))
+
+
+def random_times(rng: random.Random) -> Times:
+    """Anywhere on a plot over time, and where nobody can be."""
+    def seconds() -> float | None:
+        return rng.choice((None, 10 ** rng.uniform(-12, 3), 0.0, -1.0, float("nan"), float("inf"), 1e300))
+
+    return Times(seconds(), seconds(), seconds())
+
+
+def random_plot(rng: random.Random) -> Plot:
+    """Anywhere on the plot of the noise."""
+    def hz() -> float | None:
+        return rng.choice((None, 10 ** rng.uniform(-9, 14), 1e3, 0.0, -5.0))
+
+    return Plot(hz(), hz(), hz(), rng.choice(("input", "output", "nothing of the kind")), rng.random() < 0.5)
 
 
 def random_writing(rng: random.Random, session: Session) -> Writing:

@@ -94,12 +94,12 @@ def test_the_figure_that_ranks_is_chosen_in_turn_and_keeps_the_row():
     desk.press("down", "down", "down")
     assert desk.view.lever.row == "Q4.rc"
     seen = [desk.press("v").view.lever.figure for _ in AIMS]
-    assert seen == ["gain", "lower_edge", "upper_edge"]
-    assert [desk.press("V").view.lever.figure for _ in AIMS] == ["lower_edge", "gain", "upper_edge"]
+    assert seen == ["noise", "gain", "lower_edge", "upper_edge"]
+    assert [desk.press("V").view.lever.figure for _ in AIMS] == ["lower_edge", "gain", "noise", "upper_edge"]
     assert desk.view.lever.row == "Q4.rc"
-    assert desk.press(".").view.lever.figure == "gain" and desk.press(",").view.lever.figure == "upper_edge"
-    assert desk.press("v").view.message == "ranked by leverage on the gain"
-    assert at_page(SIX, "tab", "v").view.lever.figure == "gain"  # with the sheet focused too
+    assert desk.press(".").view.lever.figure == "noise" and desk.press(",").view.lever.figure == "upper_edge"
+    assert desk.press("v").view.message == "ranked by leverage on the input noise"
+    assert at_page(SIX, "tab", "v").view.lever.figure == "noise"  # with the sheet focused too
 
 
 def test_the_other_end_of_the_band():
@@ -148,7 +148,7 @@ def test_a_row_has_the_working_of_its_leverage():
     desk.press("=")
     assert desk.overlay.title == "working of Q5.cmu.leverage.upper_edge"
     assert "= -0.5998" in " ".join(desk.overlay.text)
-    desk.press("escape", "down", "v", "=")
+    desk.press("escape", "down", "v", "v", "=")
     assert desk.overlay.title == "working of device.P.cob.leverage.gain"
 
 

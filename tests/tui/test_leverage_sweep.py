@@ -7,9 +7,12 @@ from functools import cache
 
 import pytest
 
+from polebook.plan.sweep import Point
 from polebook.session import state as sessions
 from polebook.tui.control.leverage import movers
+from polebook.tui.draw.levers import AIMS
 from polebook.tui.draw.screen import screen
+from polebook.tui.draw.swept_judged import met
 from polebook.tui.sweeps import fresh, snapped
 from tests.book.verdict_cases import CASES
 from tests.helpers import DEMOS
@@ -69,7 +72,7 @@ def test_the_slope_at_todays_value_is_the_leverage():
     assert sweep.values[-1] / sweep.values[0] < 1.4
     moves = next(mover for mover in movers(desk.state) if mover.name == RC).moves
     before, after = sweep.points[19], sweep.points[21]
-    for key, get in (("gain", "gain"), ("lower_edge", "lower_hz"), ("upper_edge", "upper_hz")):
+    for key, get in (("gain", "gain"), ("lower_edge", "lower_hz"), ("upper_edge", "upper_hz"), ("noise", "noise")):
         slope = math.log(getattr(after, get) / getattr(before, get)) / math.log(after.value / before.value)
         assert slope == pytest.approx(moves[key], abs=2e-3)
 
@@ -299,7 +302,8 @@ def test_points_without_a_figure_are_a_gap_with_the_reason_at_the_cursor():
 def test_a_point_without_a_ledger_says_why():
     desk = swept()
     sweep = sweep_of(desk)
-    none = replace(sweep.points[20], gain=None, lower_hz=None, upper_hz=None, why="the bias of Q5 is not solved")
+    none = replace(sweep.points[20], gain=None, lower_hz=None, upper_hz=None, noise=None,
+                   why="the bias of Q5 is not solved")
     sweep = replace(sweep, points=(*sweep.points[:20], none, *sweep.points[21:]))
     desk.state = replace(desk.state, view=replace(desk.view, lever=replace(desk.view.lever, sweep=sweep)))
     assert "2.20 kΩ   no figures: the bias of Q5 is not solved" in desk.screen()
@@ -324,9 +328,42 @@ def test_where_all_is_as_wanted_is_marked_and_told():
 def test_the_limits_of_the_figure_that_ranks_stand_beside_their_lines():
     desk = swept()
     assert " ≥2M┤" in desk.screen() and "≥73.5" not in desk.screen()
-    desk.press("v")
+    desk.press("v", "v")
     assert "≥73.5┤" in desk.screen() or "≤76.5┤" in desk.screen()
     assert "≤5k┤" in desk.press("v").screen()
+
+
+def test_the_noise_is_followed_and_held_against_its_target():
+    desk = swept(SIX, "Q1.re", *["."] * 6, "v")
+    sweep, now = sweep_of(desk), desk.state.session.ledger
+    assert sweep.today.noise == now.noise.density
+    assert sweep.points[20].noise == pytest.approx(now.noise.density, rel=1e-12)
+    told = next(line for line in desk.screen().splitlines() if "noise 1." in line)
+    assert f"noise {sweep.points[26].noise * 1e9:.2f} nV/√Hz" in told
+    assert f"{100 * (sweep.points[26].noise / now.noise.density - 1):+.0f} %" in told
+    session = sessions.set_value(desk.state.session, "target.noise", "1.3n", 0.0)
+    desk.state = replace(desk.state, session=session)
+    short = [point.noise > 1.3e-9 for point in sweep.points]
+    assert any(short) and not all(short)
+    for number in (short.index(True), short.index(False)):
+        desk.press("home", *["."] * number)
+        assert ("√Hz short" in desk.screen()) == short[number]
+    assert "≤1.3n┤" in desk.screen()
+
+
+def test_a_noise_that_is_not_told_is_not_judged_and_an_edge_that_is_not_there_is_met():
+    point = Point(1.0, gain=10.0, lower_hz=None, upper_hz=1e6)
+    judged = {one.key: met({one.key: (0.0, 1.0)}, one, point) for one in AIMS}
+    assert (judged["noise"], judged["lower_edge"], judged["upper_edge"]) == (None, True, False)
+
+
+def test_a_source_that_is_no_part_is_swept_by_what_makes_it():
+    assert sweep_of(to_row(at_page(SIX, "v"), "Q2.ib").press("enter")).path == "device.N.beta"
+    diode = to_row(at_page(DEMOS / "photodiode-front.toml", "v"), "U1.en")
+    assert sweep_of(diode.press("enter")).path == "device.FETIN.en"
+    radar = to_row(at_page(DEMOS / "rain-radar.toml", "v"), "B1.en").press("enter")
+    assert sweep_of(radar).path == "B1.nf" and radar.work().state.session.chain.numbers["B1.nf"] > 0
+    assert {point.noise for point in sweep_of(radar).points} != {sweep_of(radar).today.noise}
 
 
 def test_ranking_and_plot_stand_together_where_there_is_room():

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field
 from math import isfinite
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 from polebook.book import build
 from polebook.book.account import Account
@@ -14,6 +14,10 @@ from polebook.book.lines import Line
 from polebook.book.reach import within_reach
 from polebook.book.sites import Site
 from polebook.problem import ProblemsFound
+
+if TYPE_CHECKING:
+    from polebook.book.levels import Level
+    from polebook.circuit.bias import Operating
 
 Way = Literal["difference", "ratio", "points"]
 SAME = 1e-9  # figures whose difference is less of them than this are alike: it is rounding
@@ -66,6 +70,13 @@ OVERALL: Mapping[str, tuple[Way, Callable[[Ledger], Number]]] = {
     "left_upper_db": ("difference", lambda of: of.upper_account.left_db),
     "lost_lower_db": ("difference", lambda of: of.lower_account.total_db),
     "left_lower_db": ("difference", lambda of: of.lower_account.left_db),
+    "supply_current_a": ("ratio", lambda of: of.supply_current),
+    "supply_power_w": ("ratio", lambda of: of.rails.power),
+    "largest_source": ("ratio", lambda of: of.levels.largest_source if of.levels else None),
+    "swing_v": ("ratio", lambda of: of.levels.swing if of.levels else None),
+    "dynamic_range_db": ("difference", lambda of: build.of_levels(of)["dynamic_range_db"]),
+    "noise_margin_db": ("difference", lambda of: build.of_levels(of)["noise_margin_db"]),
+    "full_power_hz": ("ratio", lambda of: of.levels.full_power_hz if of.levels else None),
 }
 """Figures of the whole chain; gain and account in dB."""
 
@@ -95,6 +106,26 @@ NODES: Mapping[str, tuple[Way, Callable[[Ledger, Site], Number]]] = {
     "left_lower_db": ("difference", lambda of, site: _left(of.lower_account, site)),
 }
 """Figures of a node."""
+
+BIAS: Mapping[str, tuple[Way, Callable[[Operating], Number]]] = {
+    "current_a": ("ratio", lambda point: point.current),
+    "across_v": ("difference", lambda point: point.across),
+    "control_v": ("difference", lambda point: point.control_v),
+    "lower_v": ("difference", lambda point: point.lower_v),
+    "output_v": ("difference", lambda point: point.output_v),
+    "dissipation_w": ("ratio", lambda point: None if point.current is None or point.across is None else
+                      point.current * point.across),
+}
+"""Figures of a device at d.c."""
+
+LEVELS: Mapping[str, tuple[Way, Callable[[Ledger, Level], Number]]] = {
+    "noise_v": ("ratio", lambda of, row: of.noise_at(row.node)),
+    "smallest_v": ("ratio", lambda of, row: row.smallest),
+    "largest_v": ("ratio", lambda of, row: row.largest),
+    "clip_v": ("ratio", lambda of, row: row.clip),
+    "headroom_db": ("difference", lambda of, row: row.headroom_db),
+}
+"""Signals, noise and clip level at a node between the stages."""
 
 
 def _share(of: Ledger, shares: dict[int, float], line: Line) -> Number:
@@ -135,6 +166,20 @@ class Changes:
         way, get = NODES[figure]
         return self._change((f"node {name}", figure), way, lambda of: get(of, _nodes(of)[name]))
 
+    def bias(self, name: str, figure: str) -> Change | None:
+        """A figure of BIAS of the stage `name`, of a cascode's upper device with "_upper" behind it."""
+        way, get = BIAS[figure]
+        return self._change((f"bias {name}", figure), way, lambda of: get(of.solution.circuit.points[name]))
+
+    def level(self, name: str, figure: str) -> Change | None:
+        """A figure of LEVELS of the node at the output of the line `name`."""
+        way, get = LEVELS[figure]
+        return self._change((f"level {name}", figure), way, lambda of: get(of, _levels(of)[name]))
+
+    def rail(self, name: str) -> Change | None:
+        """The current out of a rail, A."""
+        return self._change((f"rail {name}", "current_a"), "ratio", lambda of: of.rails.current(_standing(of, name)))
+
     def all(self) -> Iterator[tuple[str, str, str, Change]]:
         """("overall", "line" or "node"; name; figure; change) of every figure that stands in both ledgers."""
         for figure in OVERALL:
@@ -168,6 +213,19 @@ def _lines(of: Ledger) -> dict[str, Line]:
 def _nodes(of: Ledger) -> dict[str, Site]:
     """By the line whose output it is; where several lines share a node, by the first of them."""
     return {site.stage if site.interstage else site.name: site for site in of.sites}
+
+
+def _levels(of: Ledger) -> dict[str, Level]:
+    """By the first line whose output the node is; none where the chain is not stable."""
+    stages = {site.name: site.stage for site in of.sites}
+    return {stages[row.node]: row for row in of.levels.rows} if of.levels else {}
+
+
+def _standing(of: Ledger, rail: str) -> str:
+    """The name of a rail that stands. Raises KeyError for one that does not."""
+    if rail not in of.rails.standing:
+        raise KeyError(rail)
+    return rail
 
 
 def changes(before: Ledger, after: Ledger) -> Changes:

@@ -42,14 +42,15 @@ def amplifier(chain: Chain, rails: Rails, stage: Stage, vout: float | None) -> A
 def direct(of: Ledger) -> dict[str, Any]:
     """What the pages of the d.c. plan tell beside `bias` and `rails`.
 
-    rails: volts of each; draws: A out of each rail by what carries it; solved: A by stage of a stated current;
-    amplifiers: rows as those of `bias`, of op-amps and blocks
+    rails: volts of each; power_w: what they give in all; draws: A out of each rail by what carries it; solved: A by
+    stage of a stated current; amplifiers: rows as those of `bias`, of op-amps and blocks
     """
     with within_reach(of.chain):
         circuit = of.solution.circuit
         solved = compared(circuit.plan, of.chain.get, dict(circuit.points))
         return {
             "rails": [{"rail": name, "volts": volts} for name, volts in of.rails.standing.items()],
+            "power_w": of.rails.power,
             "draws": [{"rail": draw.rail, "stage": draw.stage, "element": draw.element, "current_a": draw.current}
                       for draw in of.rails.draws],
             "solved": {name: point.solved_current for name, point in solved.items()},

@@ -53,7 +53,7 @@ def _clipping(of: Ledger) -> Iterator[Problem]:
     if levels.unknown:
         yield _caution(
             of.chain, levels.unknown[0], f"how far {listed(levels.unknown)} can swing is not wholly known",
-            "the file states no clip level, no supply or no bias for it",
+            f"the file states no clip level, no supply or no bias for {'it' if len(levels.unknown) == 1 else 'them'}",
             "give clip of a block, the supply, or what sets the bias; the source that passes may be smaller than told")
 
 

@@ -58,6 +58,13 @@ class Rails:
                 total += draw.current
         return total
 
+    @property
+    def power(self) -> float | None:
+        """W that the rails give in all; None without a rail, or where a current is not known."""
+        each = [volts * (self.current(name) or 0.0) for name, volts in self.standing.items()]
+        known = all(self.current(name) is not None for name, volts in self.standing.items() if volts)
+        return sum(each) if each and known else None
+
     def unknown(self, rail: str) -> list[Draw]:
         """The draws of a rail that can't be had."""
         return [draw for draw in self.draws if draw.rail == rail and draw.current is None]

@@ -24,6 +24,7 @@ class Point:
 
     gain is signed, V/V or V/A. `figures` holds those asked for by their full names. A figure that the point does not
     have is None, and `why` says why; `why` also tells where a device has left the region that its law holds for.
+    noise is the input-referred density at the reference frequency, V/√Hz or A/√Hz.
     """
 
     value: float
@@ -32,6 +33,7 @@ class Point:
     upper_hz: float | None = None
     figures: dict[str, float | None] = field(default_factory=dict)
     why: str = ""
+    noise: float | None = None
 
 
 def with_value(chain: Chain, path: str, value: float) -> Chain:
@@ -76,7 +78,8 @@ def point(chain: Chain, value: float, figures: Sequence[Figure] = ()) -> Point:
         if unsolved:
             return Point(value, figures=none, why=UNSOLVED.format(", ".join(unsolved)))
         with within_reach(chain):
-            return Point(value, of.solution.gain, of.lower_hz, of.upper_hz, get(of, figures), _why(of))
+            return Point(value, of.solution.gain, of.lower_hz, of.upper_hz, get(of, figures), _why(of),
+                         of.noise.density if of.noise else None)
     except ProblemsFound as found:
         return Point(value, figures=none, why="; ".join(problem.what for problem in found.problems))
 

@@ -2,16 +2,13 @@
 
 from __future__ import annotations
 
-from math import ceil, floor, log10, sqrt
-
 from polebook.report import figures as show
+from polebook.report import level_bar
 from polebook.report.document import Document, Entry, entries, interstage
 from polebook.report.look import Look
 from polebook.report.sections import NO_BREAK, paragraph, unparted
 from polebook.report.table import Cell, Column, table
 
-UNDER = "x"  # signals that the noise is stronger than
-TICK = 20  # dB between two marks of the diagram's scale
 _DRAWN = {"": "{}", "base": "base of {}", "upper base": "upper base of {}", "source": "current source at {}",
           "iq": "{} itself", "output": "output of {}", "feedback": "feedback of {}"}
 
@@ -61,12 +58,16 @@ def rails(document: Document, look: Look) -> list[str]:
     for rail in listed:
         amperes = rail["current_a"]
         does = "not known" if amperes is None else "gives" if amperes > 0 else "takes" if amperes < 0 else "idle"
+        stands = volts.get(rail["rail"]) or 0.0
         rows.append([rail["rail"], show.eng(volts.get(rail["rail"]), "V"), does,
-                     show.NONE if amperes is None else show.eng(abs(amperes), "A")])
-    lines = table(_columns("rails", "volts", "", "current", words=(0, 2)), rows, look)
+                     show.NONE if amperes is None else show.eng(abs(amperes), "A"),
+                     "" if amperes is None or not stands else show.eng(stands * amperes, "W")])
+    lines = table(_columns("rails", "volts", "", "current", "power", words=(0, 2)), rows, look)
     for rail in listed:
-        way = -1.0 if (rail["current_a"] or 0.0) < 0 else 1.0
-        each = [_draw(draw, way) for draw in direct.get("draws", ()) if draw["rail"] == rail["rail"]]
+        draws = [draw for draw in direct.get("draws", ()) if draw["rail"] == rail["rail"]]
+        known = sum(draw["current_a"] or 0.0 for draw in draws)
+        way = -1.0 if (known or volts.get(rail["rail"]) or -1.0) < 0 else 1.0
+        each = [_draw(draw, way) for draw in draws]
         if each:
             lead = f"{rail['rail']} {'takes' if way < 0 else 'gives'}"
             lines += paragraph(unparted(f"{lead}: {', '.join(each)}"), look, hang=3)
@@ -118,65 +119,20 @@ def levels(document: Document, look: Look) -> list[str]:
 
 
 def diagram(document: Document, look: Look) -> list[str]:
-    """The same as bars on one scale of dB: noise, signal from smallest to largest, headroom, clip level."""
-    rows = [(row["node"], *_marks(row)) for row in entries(document, "levels")]
-    known = [db for _, *marks in rows for db in marks if db is not None]
-    if not known:
+    """The same as bars on one scale of dB: noise floor, signal from smallest to largest, headroom, clip level."""
+    rows = [(row["node"], level_bar.marks(*(row[key] for key in ("noise_v", "smallest_v", "largest_v", "clip_v"))))
+            for row in entries(document, "levels")]
+    lead = max(len("levels"), *(len(name) for name, _ in rows)) + 2 if rows else 0
+    scale = level_bar.scale((marks for _, marks in rows), look.width - 2 - lead)
+    if scale is None:
         return []
-    low, high = TICK * floor(min(known) / TICK), TICK * ceil(max(known) / TICK + 1e-9)
-    lead = max(len("levels"), *(len(name) for name, *_ in rows)) + 2
-    wide = look.width - 2 - lead
-    per = (wide - 1) / (high - low)
-    bars: list[str] = []
-    lines = [" " + look.paint(_scale(low, high, per, wide, lead), "dim")]
-    for name, *marks in rows:
-        places = [None if db is None else round((db - low) * per) for db in marks]
-        bars.append(_bar(places, look))
-        lines.append(f" {name:<{lead}}{bars[-1]}".rstrip())
-    legend: tuple[str, ...] = ("\u00b7 noise to smallest", "\u2588 smallest to largest", "\u2500 headroom", "| clip")
-    if any(UNDER in bar for bar in bars):
-        legend = (*legend, f"{UNDER} under the noise")
-    told = f"{', '.join(sign.replace(' ', NO_BREAK, 1) for sign in legend)}; dB over 1 V peak"
+    bars = [(name, scale.bar(marks)) for name, marks in rows]
+    lines = [" " + look.paint(f"{'dB':<{lead}}{scale.labels()}", "dim")]
+    for name, bar in bars:
+        kept, clip, past = bar.partition(level_bar.CLIP)
+        lines.append(f" {name:<{lead}}{look.text(kept)}{clip}{look.paint(look.text(past), 'bad')}".rstrip())
+    signs = {"noise": level_bar.NOISE, "smallest to largest signal": level_bar.SIGNAL,
+             "under the noise": level_bar.UNDER, "headroom": level_bar.HEADROOM, "clip level": level_bar.CLIP}
+    told = ", ".join(f"{sign}{NO_BREAK}{word}" for word, sign in signs.items() if any(sign in bar for _, bar in bars))
     noisy = any(row["noise_v"] is not None for row in entries(document, "levels"))
-    return [*lines, *paragraph(told + (", noise as a sine of its power" if noisy else ""), look)]
-
-
-def _marks(row: Entry) -> list[float | None]:
-    """Noise, smallest, largest and clip level in dB over 1 V peak."""
-    noise = None if row["noise_v"] is None else sqrt(2.0) * row["noise_v"]
-    return [20.0 * log10(volts) if volts else None
-            for volts in (noise, row["smallest_v"], row["largest_v"], row["clip_v"])]
-
-
-def _scale(low: int, high: int, per: float, wide: int, lead: int) -> str:
-    """Labels of the scale that have room, each over its place."""
-    step = TICK * ceil(7 / (TICK * per))
-    line = [" "] * (wide + lead)
-    line[:2] = "dB"
-    for db in range(low, high + 1, step):
-        label = f"{db}"
-        at = min(lead + round((db - low) * per), wide + lead - len(label))
-        line[at:at + len(label)] = label
-    return "".join(line).rstrip()
-
-
-def _bar(places: list[int | None], look: Look) -> str:
-    """One node's bar; the clip level stands over a signal that goes past it."""
-    noise, smallest, largest, clip = places
-    ends = [place for place in places if place is not None]
-    cells = [" "] * (max(ends, default=-1) + 1)
-
-    def fill(start: int | None, end: int | None, sign: str) -> None:
-        if start is not None and end is not None:
-            for at in range(start, end + 1):
-                cells[at] = look.text(sign)
-
-    fill(largest, clip, "\u2500")  # none where the signal goes past the clip level
-    fill(noise, smallest if smallest is not None else largest, "\u00b7")
-    fill(smallest if smallest is not None else largest, largest if largest is not None else smallest, "\u2588")
-    if noise is not None and smallest is not None and noise > smallest:
-        fill(smallest, noise, UNDER)
-    if clip is not None:
-        cells[clip] = "|"
-        return "".join(cells[:clip + 1]) + look.paint("".join(cells[clip + 1:]), "bad")
-    return "".join(cells)
+    return [*lines, *paragraph(f"{told}; dB over 1 V peak" + (", noise as a sine of its power" if noisy else ""), look)]

@@ -108,9 +108,14 @@ def by_line(document: Document, look: Look) -> list[str]:
         return []
     rows: list[list[Cell | str]] = [
         [line["name"], line["kind"], show.eng(density * sqrt(line["noise_share"]), unit(document)),
-         show.share(line["noise_share"]), look.bar(line["noise_share"], BAR)] for line in listed]
+         show.share(line["noise_share"]), _bar(line["noise_share"], look)] for line in listed]
     names = ("lines", "kind", "at the input", "share of\nthe power", "")
     return table([Column(name, right=at in (2, 3)) for at, name in enumerate(names)], rows, look)
+
+
+def _bar(share: float, look: Look) -> str:
+    """A bar of a share; none of one that rounds to nothing."""
+    return look.bar(share, BAR) if share >= LEAST else ""
 
 
 def curve(document: Document, look: Look) -> list[str]:
@@ -129,8 +134,10 @@ def levers(document: Document, look: Look) -> list[str]:
     if not found:
         return []
     deep = -(-len(found) // 3)
-    cells = [(name, signed(value)) for name, value in found] + [("", "")] * (3 * deep - len(found))
-    rows = [[text for column in range(3) for text in cells[column * deep + at]] for at in range(deep)]
-    columns = [Column(title, right=bool(at % 2)) for at, title in enumerate(("input noise", "%", "", "%", "", "%"))]
+    wide = -(-len(found) // deep)
+    cells = [(name, signed(value)) for name, value in found] + [("", "")] * (wide * deep - len(found))
+    rows = [[text for column in range(wide) for text in cells[column * deep + at]] for at in range(deep)]
+    titles = ("input noise", *["%", ""] * wide)[:2 * wide]
+    columns = [Column(title, right=bool(at % 2)) for at, title in enumerate(titles)]
     what = f"+1 % of {found[0][0]} moves the input noise by {signed(found[0][1])} %"
     return [*table(columns, rows, look), *paragraph(what, look)]

@@ -14,6 +14,7 @@ TALL = 16  # rows that the plot may take
 ROWS = (0.1, 0.25, 0.5, 1.0)  # share of the final value that a row may stand for
 LABEL = 7  # cells of the scale beside the plot
 BAR = 16
+LEAST = 0.0005  # share that rounds to something
 SEEN = 0.005  # % of undershoot that is told
 
 
@@ -153,7 +154,7 @@ def estimates(document: Document, look: Look) -> list[str]:
     for node in pulse["nodes"]:
         share = (node["rise_s"] / total) ** 2
         rows.append([node["name"], show.eng(node["pole_hz"], "Hz"), show.eng(node["rise_s"], "s"), show.share(share),
-                     look.bar(share, BAR)])
+                     look.bar(share, BAR) if share >= LEAST else ""])
     columns = [Column("rise by nodes", right=False), Column("pole"), Column("rise\nalone"),
                Column("of the sum\nof squares"), Column("", right=False)]
     lines = table(columns, rows, look)

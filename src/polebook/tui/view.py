@@ -17,7 +17,7 @@ if TYPE_CHECKING:
     from polebook.session.recovery import Kept
     from polebook.session.watch import Look
 
-Page = Literal["ledger", "nodes", "response", "leverage"]
+Page = Literal["ledger", "nodes", "response", "pulse", "noise", "levels", "leverage"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -76,6 +76,15 @@ class Plot:
 
 
 @dataclass(frozen=True, slots=True)
+class Times:
+    """Where the user is on a plot over time (s). None: as much as the figures ask for, the cursor near their marks."""
+
+    low_s: float | None = None
+    high_s: float | None = None
+    cursor_s: float | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class Sweep:
     """One value of the chain over a range, as far as it has been computed.
 
@@ -99,6 +108,7 @@ class Lever:
     """Where the user is on the leverage page.
 
     figure  by which it ranks;  row  name of the chosen row, "" for the first
+    also    a further figure that a sweep follows, by the key of levers.ALSO; "" for none
     sweep   the last one;  open  the keys are those of its plot
     """
 
@@ -106,6 +116,7 @@ class Lever:
     row: str = ""
     sweep: Sweep | None = None
     open: bool = False
+    also: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -191,7 +202,11 @@ class View:
     top: dict[str, int] = dataclasses.field(default_factory=dict)
     digit_at: float = float("-inf")
     plot: Plot = Plot()
+    step: Times = Times()  # on the step response;  sag: on the pulse that sags
+    sag: Times = Times()
+    noise: Plot = Plot(what="input")  # what: "input" or "output"; single: ranked by lines
     lever: Lever = Lever()
+    bank: Literal["plan", "levels"] = "plan"  # of the levels page
     writing: Writing | None = None  # the text page is open
 
 

@@ -53,15 +53,62 @@ _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
         ("Z in, Z out", "into n0 with the source's impedance away; at the last node with the load away. As: the "
          "resistance and capacitance (or coil) in parallel that it looks like there"),
     ),
+    "pulse": (
+        ("the curve", "the step response with couplings and bypasses shorted, in per cent of its final value; b: a "
+         "pulse as the lower end lets it sag"),
+        ("\u25cf", "where the figures are read: 10 and 90 %, the top, within 1 % and 0.1 % for good; Enter takes the "
+         "cursor there"),
+        ("rise", "from the first time at 10 % to the first at 90 %"),
+        ("0.35/edge", "the rise that one pole at the upper edge would have"),
+        ("by nodes", "the root of the sum of the squares of what each node's pole would take alone"),
+        ("limits", "upright: when the rise has to be at 90 %; dotted at the top: how far it may overshoot; of a pulse "
+         "its end and what has to be left of it"),
+        ("falls by", "the parts that let go of the pulse's height at first, by their time constants; target.pulse is "
+         "its length"),
+        ("b", "at the end of a curve: the pinned baseline"),
+        ("window", ", . move the cursor; z Z closer, further about it; [ ] Home End sideways; Esc the whole again"),
+    ),
+    "noise": (
+        ("n", "the density of the noise, referred to the input: what would stand there to make what comes out; v: as "
+         "it is at the output"),
+        ("its dashes", "what the chosen row makes of it by itself; of the first where a figure is chosen"),
+        ("\u25cf", "the density at the reference frequency: the figure, and what the target is held against"),
+        ("noise figure", "what the chain adds to the noise of the source's resistance at 290 K"),
+        ("total in, out", "over the noise band, whose ends are upright lines where it has any"),
+        ("margin", "the smallest signal's rms over the total at the input"),
+        ("at ..., %", "who makes it at the reference frequency, by share of the power; s: line by line. Under the "
+         "cursor's sign at the cursor's frequency"),
+        ("gm, ib, ig", "a device's main current, its base current, its gate leakage; en, in: an amplifier's own noise"),
+        ("Enter", "to the key of the row: a part's own, the card of a device; of a figure the target or the source"),
+        ("b", "at the end of a curve: the pinned baseline"),
+    ),
+    "levels": (
+        ("b", "from the d.c. plan to the levels and back; where there is room both are in sight"),
+        ("control, lower", "what a meter shows there against ground; base and emitter, gate and source, grid and "
+         "cathode. Output: collector, drain, anode; of a cascode's lower device where the upper one stands on it"),
+        ("across, heat", "d.c. voltage across the device, and what it dissipates; of p_max: of its card's rating"),
+        ("given, solved", "where the current comes from; network: what the resistors would make of a given one; ! "
+         "past a rating, or given and solved far apart"),
+        ("from, into", "what the selected line draws from each rail and passes into it"),
+        ("the diagram", "a bar a node on one scale of dB over 1 V peak: noise floor in dots (as a sine of its power), "
+         "the signal from smallest to largest, room up to the clip level; x what of it lies under the noise"),
+        ("clip, room", "peak at which the stage before the node clips and by what; dB from the largest signal to it"),
+        ("clips first", "the stage that ends first as the source grows, and the largest source that passes it"),
+        ("dynamic range", "that source over the input noise; noise margin: the smallest source over it"),
+        ("full power to", "highest frequency at which the slowest stage still follows the largest signal"),
+    ),
     "leverage": (
         ("1 % more of", "parts, figures of cards and stated currents, that first which moves the ranking figure most"),
-        ("gain, lower, upper", "per cent that each moves by; where a part sets the bias, what that does is in it"),
+        ("gain ... noise", "per cent that each moves by; where a part sets the bias, what that does is in it"),
         ("role", "the end of the band at which the part acts; card: it moves every stage that uses the card"),
-        ("a sweep", "Enter puts the part through a decade either way: gain and edges over today's, which the dot "
-         "marks; the slope there is the leverage"),
-        ("its limits", "≥ ≤ at the left: target of the figure that ranks; = on the axis: gain and edges are as wanted"),
+        ("a sweep", "Enter puts the part through a decade either way: gain, edges and input noise over today's, which "
+         "the dot marks; the slope there is the leverage"),
+        ("its limits", "≥ ≤ at the left: target of the figure that ranks; = on the axis: all that has a target is as "
+         "wanted"),
         ("its cursor", ", . move it; Enter sets the part to the value there, the nearest of its preferred series; "
          "z Z [ ] sweep another range"),
+        ("one more figure", "s: rise time, the largest source that passes, full power, supply current, in the place of "
+         "a figure that does not rank; then none again"),
     ),
 }
 

@@ -126,6 +126,9 @@ def _working(state: State) -> Done:
 
 
 def _single(state: State) -> Done:
+    """One more figure that the sweep follows; of the ranking there is nothing to single out."""
+    if state.view.lever.open and state.view.lever.sweep is not None:
+        return swept.follow(state, state.view.lever.sweep)
     return refuse(state, "single lines are curves of the response", "3 is its page")
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 
-from polebook.tui.control import leverage, response
+from polebook.tui.control import levels, leverage, noise, pulse, response
 from polebook.tui.control.base import Done, Work, at, done, to_path
 from polebook.tui.control.figures import parts_of
 from polebook.tui.view import Page, State
@@ -18,11 +18,13 @@ class Ways:
     rows  how many rows `up` and `down` go through; None: they choose the line
     act   Enter with the page focused
     own   action -> what it does here instead, with the page focused; those of PLOT whatever has the focus
+    always  actions of `own` that need no focus either
     """
 
     rows: Callable[[State], int] | None
     act: Callable[[State], Done]
     own: Mapping[str, Work] = field(default_factory=dict)
+    always: frozenset[str] = frozenset()
 
 
 def _to_sheet(state: State) -> Done:
@@ -42,6 +44,9 @@ PAGES: Mapping[Page, Ways] = {
     "ledger": Ways(None, _to_sheet),
     "nodes": Ways(lambda state: len(parts_of(state)), _to_part),
     "response": Ways(None, response.act, response.OWN),
+    "pulse": Ways(pulse.rows, pulse.act, pulse.OWN, frozenset({"band"})),
+    "noise": Ways(noise.rows, noise.act, noise.OWN),
+    "levels": Ways(None, levels.act, levels.OWN, frozenset({"band"})),
     "leverage": Ways(leverage.rows, _to_sheet, leverage.OWN),
 }
 
@@ -53,4 +58,5 @@ def ways(state: State) -> Ways:
 
 def own(state: State, action: str) -> Work | None:
     """What an action does on the page in sight, where that is not what it does elsewhere."""
-    return ways(state).own.get(action) if action in PLOT or state.view.focus == "page" else None
+    found = ways(state)
+    return found.own.get(action) if action in PLOT | found.always or state.view.focus == "page" else None

@@ -14,7 +14,7 @@ from polebook.session.state import set_value
 from polebook.tui.control import jobs
 from polebook.tui.control.base import Done, at, attempt, done, refuse, say
 from polebook.tui.control.makers import maker
-from polebook.tui.draw.levers import Mover
+from polebook.tui.draw.levers import ALSO, Mover
 from polebook.tui.sweeps import at_cursor, fresh, snapped
 from polebook.tui.view import Job, State, Sweep, Takes
 
@@ -56,6 +56,19 @@ def act(state: State, sweep: Sweep, now: float) -> Done:
     if after.session is state.session and not after.view.bad:
         return say(after, f"{said(sweep.path)} is {text} already")
     return after, outcome
+
+
+def follow(state: State, sweep: Sweep) -> Done:
+    """The next further figure, or none: the sweep made again where its points have not got it."""
+    keys = ["", *(one.key for one in ALSO)]
+    now = state.view.lever.also
+    also = keys[(keys.index(now) + 1) % len(keys)] if now in keys else keys[0]
+    state = at(state, lever=replace(state.view.lever, also=also))
+    told = next((f"{one.word} too" for one in ALSO if one.key == also), "gain, edges and noise again")
+    if all(one.name in point.figures for one in ALSO if one.key == also for point in (sweep.today, *sweep.points)):
+        return say(state, told)
+    after, outcome = _again(state, sweep, sweep.values, sweep.cursor)
+    return (after, outcome) if after.view.bad else say(after, told)
 
 
 def move(state: State, sweep: Sweep, by: int) -> Done:
@@ -128,7 +141,8 @@ def _again(state: State, sweep: Sweep, values: tuple[float, ...], cursor: int | 
 def _run(state: State, row: str, path: str, values: tuple[float, ...], told: str = "",
          cursor: int | None = None) -> Done:
     """A sweep begun; the cursor on the value nearest to today's where it is not said."""
-    from polebook.plan.sweep import Point  # deferred: nothing else of the app needs it, 4 ms of the first paint
+    from polebook.plan.named import Figure  # deferred: nothing else of the app needs these, 4 ms of the first paint
+    from polebook.plan.sweep import Point
     from polebook.plan.sweep import sweep as sweeping
 
     if (ledger := state.session.ledger) is None:
@@ -136,13 +150,17 @@ def _run(state: State, row: str, path: str, values: tuple[float, ...], told: str
     chain = ledger.chain
     try:
         with within_reach(chain):
-            today = Point(chain.numbers[path], ledger.solution.gain, ledger.lower_hz, ledger.upper_hz)
+            also = [one for one in ALSO if one.key == state.view.lever.also]
+            today = Point(chain.numbers[path], ledger.solution.gain, ledger.lower_hz, ledger.upper_hz,
+                          {one.name: one.today(ledger) for one in also},
+                          noise=ledger.noise.density if ledger.noise else None)
     except ProblemsFound as found:
         return refuse(state, found.problems[0].what, found.problems[0].fix)
     if cursor is None:
         cursor = _nearest(values, today.value)
     sweep = Sweep(row, path, chain, today, values, cursor=cursor)
-    state = jobs.begin(state, Job(f"sweep of {said(path)}", "leverage", sweeping(chain, path, values), _TAKES,
+    figures = [Figure(one.name, one.unit, "overall") for one in also]
+    state = jobs.begin(state, Job(f"sweep of {said(path)}", "leverage", sweeping(chain, path, values, figures), _TAKES,
                              total=len(values)))
     return say(at(state, lever=replace(state.view.lever, sweep=sweep, open=True)), told)
 

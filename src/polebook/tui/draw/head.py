@@ -92,7 +92,7 @@ def _bias(scene: Scene) -> list[Piece]:
     family = scene.chain.cards[stage.device].family if stage.device in scene.chain.cards else ""
     if point.current is not None:
         told = f"{CURRENT_KEYS.get(family, 'id')} {show.eng(point.current, 'A')} {point.origin or ''}".rstrip()
-        solved = _solved(scene.figures).get(stage.name) if point.origin == "given" else None
+        solved = by_network(scene.figures).get(stage.name) if point.origin == "given" else None
         if solved is not None:
             told += f" ({show.eng(solved)} solved)"
         apart = solved is not None and point.current and abs(solved / point.current - 1.0) > APART
@@ -108,7 +108,7 @@ def _bias(scene: Scene) -> list[Piece]:
 
 
 @lru_cache(maxsize=2)
-def _solved(of: Ledger) -> dict[str, float]:
+def by_network(of: Ledger) -> dict[str, float]:
     """The current that the network would give each stage whose current is stated; costs a bias solution each."""
     circuit = of.solution.circuit
     points: dict[str, Operating] = compared(circuit.plan, of.chain.get, dict(circuit.points))

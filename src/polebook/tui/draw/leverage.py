@@ -53,7 +53,7 @@ def ranking(scene: Scene, room: int, rows: int, focus: str) -> list[Line]:
     figure = aim(scene.view.lever.figure)
     most = max((abs(mover.on(figure.key) or 0.0) for mover in movers[:1]), default=0.0)
     lit = scene.view.focus == "page"
-    half = min(max((room - 56) // 2, LEAST_HALF), MOST_HALF)
+    half = min(max((room - 69) // 2, LEAST_HALF), MOST_HALF)
     body = []
     for number, mover in enumerate(movers[first:first + size], start=first):
         own = mover.sheet == scene.sheet

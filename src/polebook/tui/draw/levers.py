@@ -33,6 +33,7 @@ class Aim:
 
     key     among the leverages, and in the names that `working` takes
     target  key of [target] that it is judged by
+    name    the ledger's, of a figure that a sweep has to be asked for; unit  of one that is none of AIMS
     """
 
     key: str
@@ -41,19 +42,48 @@ class Aim:
     target: str
     today: Callable[[Ledger], float | None]
     swept: Callable[[Point], float | None]
+    name: str = ""
+    unit: str = ""
 
 
 AIMS: tuple[Aim, ...] = (
     Aim("gain", "gain", "gain", "gain", lambda of: of.solution.gain, lambda point: point.gain),
     Aim("lower_edge", "lower edge", "lower", "lower", lambda of: of.lower_hz, lambda point: point.lower_hz),
     Aim("upper_edge", "upper edge", "upper", "upper", lambda of: of.upper_hz, lambda point: point.upper_hz),
+    Aim("noise", "input noise", "noise", "noise", lambda of: of.noise.density if of.noise else None,
+        lambda point: point.noise),
 )
 """In the order of the columns. One more is one row more here."""
 
 
+def _also(key: str, word: str, short: str, target: str, unit: str, today: Callable[[Ledger], float | None]) -> Aim:
+    name = f"overall.{key}"
+    return Aim(key, word, short, target, today, lambda point: point.figures.get(name), name, unit)
+
+
+ALSO: tuple[Aim, ...] = (
+    _also("rise_time_s", "rise time", "rise", "rise", "s", lambda of: of.pulse.rise_time_s),
+    _also("largest_source", "largest source that passes", "passes", "", "",
+          lambda of: of.levels.largest_source if of.levels else None),
+    _also("full_power_hz", "full-power bandwidth", "full power", "", "Hz",
+          lambda of: of.levels.full_power_hz if of.levels else None),
+    _also("supply_current_a", "supply current", "supply", "current", "A", lambda of: of.supply_current),
+)
+"""Figures without a leverage that a sweep can follow besides, one at a time. One more is one row more here."""
+
+
+def followed(scene: Scene) -> tuple[Aim, ...]:
+    """What a sweep follows: AIMS, and in the place of the last that does not rank the further figure, where one is."""
+    also = next((one for one in ALSO if one.key == scene.view.lever.also), None)
+    if also is None:
+        return AIMS
+    least = next(one for one in reversed(AIMS) if one is not aim(scene.view.lever.figure))
+    return (*(one for one in AIMS if one is not least), also)
+
+
 def aim(key: str) -> Aim:
-    """The figure of that key; the last where there is none of it."""
-    return next((one for one in AIMS if one.key == key), AIMS[-1])
+    """The figure of that key; the upper edge where there is none of it."""
+    return next((one for one in AIMS if one.key == key), AIMS[2])
 
 
 @dataclass(frozen=True, slots=True)
@@ -114,6 +144,15 @@ def _movers(of: Ledger) -> Iterator[Mover]:
         yield Mover(".".join(owner), ".".join(owner), part.stage, _key(path) if path else "device", path,
                     circuit.network.values[index], UNIT_OF_TYPE.get(part.type, ""), part.role, True,
                     lever.parts.get(owner, lever.elements[index]))
+    from polebook.book.noise_rows import parts as sources  # deferred: the first paint needs none of it
+
+    for row in sources(of):
+        owner = row["stage"], row["part"]
+        listed.add(owner)
+        path = _path(*owner) if _path(*owner) in of.chain.numbers else ""
+        if _any(row["leverage"]):
+            yield Mover(".".join(owner), ".".join(owner), owner[0], _key(path) if path else "device", path,
+                        row["value"], UNIT_OF_TYPE[row["type"]], "", True, row["leverage"])
     for (stage, key), (value, moves) in lever.currents.items():
         yield Mover(f"{stage}.{key}", f"{stage}.{key}", stage, key, f"{stage}.{key}", value, "A", "", True, moves)
     for (stage, key), moves in lever.parts.items():

@@ -19,6 +19,7 @@ from polebook.tui.lines import Line, Span, width
 
 MOST_LINES = 3
 LEAST_ABOUT = 34
+_SECTIONS = {"bias": "bias", "rail": "rails", "target": "targets"}
 _SERIES = {"resistance": "resistor", "capacitance": "capacitor", "inductance": "inductor"}
 
 
@@ -71,8 +72,9 @@ def _figure(scene: Scene, room: int) -> Line:
     owner, lever, key = name.partition(".leverage.")
     owner, key = (owner, f"leverage.{key}") if lever else (name.rpartition(".")[0], name.rpartition(".")[2])
     section = "parts" if "." in owner else "nodes" if owner in scene.sites else owner if owner == "overall" else "lines"
-    told = scene.pen.text(f"{name}: {about(section, key)}")
-    return (Span(f" {told if cells(told) <= room - 2 else scene.pen.cut(scene.pen.text(name), room - 2)}", "dim"),)
+    also = {"parts": _SECTIONS.get(owner.partition(".")[0], ""), "nodes": "levels"}.get(section, "")
+    told = scene.pen.text(f"{name}: {about(section, key) or about(also, key)}")
+    return (Span(f" {scene.pen.clause(told, room - 2)}", "dim"),)
 
 
 def neighbours(scene: Scene, row: KeyRow) -> tuple[str, str] | None:

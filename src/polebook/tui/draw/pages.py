@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
-from polebook.tui.draw import ledger, leverage, nodes, response
+from polebook.tui.draw import ledger, levels, leverage, nodes, noise, pulse, response
 from polebook.tui.draw.scene import Scene
 from polebook.tui.keys import Hint
 from polebook.tui.lines import Line
@@ -43,6 +43,10 @@ PAGES: Mapping[Page, Drawn] = {
     "nodes": Drawn(nodes.page, nodes.figures, lambda scene: 11, 8,
                    lambda scene, rows: min(len(nodes.ranked(scene)) + 7, rows)),
     "response": Drawn(response.page, response.figures, lambda scene: 14, 12, lambda scene, rows: rows, 2),
+    "pulse": Drawn(pulse.page, pulse.figures, lambda scene: 14, 12, lambda scene, rows: rows, 2, pulse.hints),
+    "noise": Drawn(noise.page, noise.figures, lambda scene: 14, 12, lambda scene, rows: rows, 2, noise.hints),
+    "levels": Drawn(levels.page, levels.figures, levels.want, 12,
+                    lambda scene, rows: levels.rows_for_all(scene) if rows >= levels.BOTH else levels.want(scene), 2),
     "leverage": Drawn(leverage.page, leverage.figures, lambda scene: 12, 11, lambda scene, rows: rows,
                       hints=leverage.hints),
 }

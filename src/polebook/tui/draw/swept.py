@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from polebook.chain.said import said
 from polebook.report import figures as show
-from polebook.tui.draw.levers import AIMS, Aim, aim, unit_of
+from polebook.tui.draw.levers import Aim, aim, followed, unit_of
 from polebook.tui.draw.plot.paint import painted
 from polebook.tui.draw.progress import progress
 from polebook.tui.draw.scene import Scene
@@ -22,6 +22,7 @@ if TYPE_CHECKING:
     from polebook.plan.sweep import Point
 
 HEAD_ROWS = 2
+MOST_TOLD = 3  # figures at the cursor where there is no room for all
 LEAST_ROWS = HEAD_ROWS + 8
 
 
@@ -38,7 +39,7 @@ def hints(scene: Scene, sweep: Sweep) -> tuple[Hint, ...]:
     key = sweep.path.rpartition(".")[2]
     enter = scene.pen.text(f"set {key} to {text}") if text and fresh(scene.state, sweep) else "sweep again"
     return (("Enter", enter), (", .", "cursor"), ("z Z", "narrower, wider"), ("Esc", "stop" if running else "ranking"),
-            ("[ ]", "range"), ("?", "help"))
+            ("s", "one more figure"), ("[ ]", "range"), ("?", "help"))
 
 
 def _running(scene: Scene) -> bool:
@@ -77,10 +78,14 @@ def _readout(scene: Scene, sweep: Sweep, room: int) -> Line:
         word = "not computed yet" if _running(scene) else "not computed"
         return _pieces([value, (Span(f"   {word}", "dim"),)], room)
     point = sweep.points[at]
-    if all(one.swept(point) is None for one in AIMS):
+    every = followed(scene)
+    if all(one.swept(point) is None for one in every):
         return _pieces([value, (Span(f"   no figures: {pen.text(point.why)}", "warn"),)], room)
-    for changed in (AIMS, (aim(scene.view.lever.figure),), ()):
-        told = [value, *(_told(scene, sweep, point, one, one in changed) for one in AIMS)]
+    ranks = aim(scene.view.lever.figure)
+    first = {ranks, *sorted((one for one in every if one is not ranks), key=lambda one: not one.name)[:MOST_TOLD - 1]}
+    few = [one for one in every if one in first]
+    for shown, changed in ((every, every), (every, (ranks,)), (few, every), (few, (ranks,)), (few, ())):
+        told = [value, *(_told(scene, sweep, point, one, one in changed) for one in shown)]
         if sum(map(width, told)) <= room:
             break
     return _pieces(told, room)

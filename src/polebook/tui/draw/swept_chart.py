@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from polebook.tui.draw.levers import AIMS, Aim, aim
+from polebook.tui.draw.levers import Aim, aim, followed
 from polebook.tui.draw.plot.axis import Array, Axis, Ticks, decades, short, step_of
 from polebook.tui.draw.plot.chart import Chart, Curve, Level, Mark, Spot, Upright
 from polebook.tui.draw.plot.paint import AXIS_ROWS, columns
@@ -24,20 +24,21 @@ FURTHEST = 1e4  # a ratio that is drawn, and its inverse
 NEAR = 2.0  # beyond the curves up to here limits are drawn
 LEAST_SPAN = 1.5  # of the ratios: less is told as nothing
 _MANTISSAS = ((1, 2, 5), (1, 3), (1,))
-_DOTS = ("solid", "dotted", "dashed", "sparse")  # of the curves, in the order of AIMS
+_DOTS = ("solid", "dotted", "dashed", "sparse")  # of the curves, in the order of what is followed
 
 
 def chart(scene: Scene, sweep: Sweep, room: int, rows: int) -> Chart:
     """The curves, today's value, and the limits of the figure that ranks; as much as is computed."""
     limits, chosen, now = limits_of(scene), aim(scene.view.lever.figure), abs(value_now(scene, sweep))
+    shown = followed(scene)
     x = np.abs(np.array([point.value for point in sweep.points], dtype=float))
-    ratios = {one: _ratios(one, sweep.points, today_of(scene, sweep, one)) for one in AIMS}
+    ratios = {one: _ratios(one, sweep.points, today_of(scene, sweep, one)) for one in shown}
     base = abs(today_of(scene, sweep, chosen) or 0.0)
     levels = [limit / base for limit in limits.get(chosen.key, ()) if base and 0.0 < limit < inf]
     low, high = _ends([ratio for each in ratios.values() for ratio in each], levels)
     first, last = abs(sweep.values[0]), abs(sweep.values[-1])
     wanted = tuple((level, _limit(scene, chosen, level * base, limits)) for level in levels if low <= level <= high)
-    chosen_last = sorted(zip(AIMS, _DOTS, strict=False), key=lambda pair: pair[0] is chosen)
+    chosen_last = sorted(zip(shown, _DOTS, strict=False), key=lambda pair: pair[0] is chosen)
     drawn = Chart(
         Axis(first, last, True, _values(first, last, room - 12, sweep.values[0] < 0)),
         Axis(low, high, True, (*_ticks(low, high, rows - AXIS_ROWS), *wanted)),

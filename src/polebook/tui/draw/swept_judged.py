@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 from polebook.book.targets import LESS_IS_BETTER, TOLERANCE_DB
 from polebook.report import figures as show
-from polebook.tui.draw.levers import AIMS, Aim
+from polebook.tui.draw.levers import AIMS, ALSO, Aim, followed
 from polebook.tui.draw.scene import Scene
 from polebook.tui.sweeps import fresh
 from polebook.tui.view import Sweep
@@ -35,7 +35,7 @@ def value_now(scene: Scene, sweep: Sweep) -> float:
 def limits_of(scene: Scene) -> Limits:
     """Of the figures that have a target. A gain that is judged elsewhere than at midband has none here."""
     chain, found = scene.chain, dict[str, tuple[float, float]]()
-    for one in AIMS:
+    for one in followed(scene):
         want = chain.get(f"target.{one.target}") if f"target.{one.target}" in chain.given else None
         if want is None or (one.key == "gain" and "target.reference" in chain.given):
             continue
@@ -56,21 +56,26 @@ def met(limits: Limits, one: Aim, point: Point) -> bool | None:
         return None
     value = one.swept(point)
     if value is None:
-        return None if point.gain is None or point.why else True
+        return None if point.gain is None or point.why or one.key == "noise" or one.name else True
     low, high = limits[one.key]
     return low <= abs(value) <= high
 
 
 def fine(limits: Limits, point: Point) -> bool:
     """Whether all that has a target is as wanted at a point."""
-    return all(met(limits, one, point) for one in AIMS if one.key in limits)
+    return all(met(limits, one, point) for one in (*AIMS, *ALSO) if one.key in limits)
 
 
 def text_of(scene: Scene, one: Aim, value: float | None) -> str:
     """A figure with its unit: a gain in dB or as a ratio, as the ledger shows it."""
+    volts = scene.chain.source_kind == "voltage"
+    if one.name:
+        return show.eng(value, one.unit or ("V" if volts else "A"))
+    if one.key == "noise":
+        return show.eng(value, "V/√Hz" if volts else "A/√Hz")
     if one.key != "gain":
         return show.eng(value, "Hz")
-    unit = "V/V" if scene.chain.source_kind == "voltage" else "V/A"
+    unit = "V/V" if volts else "V/A"
     if scene.view.decibels:
         return show.gain(value, unit)
     return show.ratio(value) if unit == "V/V" else show.eng(value, "Ω")
