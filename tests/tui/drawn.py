@@ -10,12 +10,14 @@ from polebook.problem import ProblemsFound
 from polebook.session import state as sessions
 from polebook.session.state import Session
 from polebook.text.history import History
+from polebook.tui.keys import PAGES
 from polebook.tui.lines import STYLES, Line, width
 from polebook.tui.view import Choice, Field, Lever, Overlay, State, Sweep, View, Writing
 from tests.book.verdict_cases import CASES
 from tests.fuzz_files import spoilt
 from tests.helpers import DEMOS
 from tests.session.random_edits import attempt, random_edit
+from tests.tui.spread_told import random_spread
 
 WORDS = ("", "Q1", "4k7", "a b c", "üΩ漢字 wide", "\x1b[31mred", "x" * 200, "two\nlines\n\n", "\u202eback", "e\u0301")
 PURPOSES = ("help", "working", "cautions", "find", "add", "kind", "card", "cards", "sheets", "leave", "new", "changed",
@@ -40,13 +42,15 @@ def random_view(rng: random.Random, session: Session) -> View:
     sheets = sessions.sheets_of(session)
     sheet = rng.choice(("", "", *sheets, "nothing of the kind"))
     view = View(
-        page=rng.choice(("ledger", "nodes", "response", "leverage")), line=rng.randrange(-1, 12),
+        page=rng.choice(tuple(PAGES.values())), line=rng.randrange(-1, 12),
         focus=rng.choice(("sheet", "page")),
         sheet=sheet, key=rng.randrange(-1, 60), figure=rng.randrange(-1, 9), row=rng.randrange(-1, 40),
         upper=rng.random() < 0.6, decibels=rng.random() < 0.6, message=rng.choice(WORDS), bad=rng.random() < 0.3,
     )
     if view.page == "leverage":
         view = replace(view, lever=random_lever(rng, session))
+    if view.page == "spread":
+        view = replace(view, spread=random_spread(rng, session.chain, WORDS))
     if rng.random() < 0.25:
         return replace(view, writing=random_writing(rng, session))
     if rng.random() < 0.3:

@@ -49,10 +49,10 @@ def test_pages_by_digit_only_with_the_page_focused(desk):
 
 
 def test_pages_by_page_keys_from_either_focus(desk):
-    seen = [desk.press("pagedown").view.page for _ in range(4)]
-    assert seen == ["nodes", "response", "leverage", "leverage"]
-    seen = [desk.press("tab", "pageup").view.page for _ in range(4)]
-    assert seen == ["response", "nodes", "ledger", "ledger"]
+    seen = [desk.press("pagedown").view.page for _ in range(5)]
+    assert seen == ["nodes", "response", "leverage", "spread", "spread"]
+    seen = [desk.press("tab", "pageup").view.page for _ in range(5)]
+    assert seen == ["leverage", "response", "nodes", "ledger", "ledger"]
 
 
 def test_rows_of_the_ledger_are_its_lines(desk):

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from textwrap import wrap
 from types import MappingProxyType
 
-PAGES = {"1": "ledger", "2": "nodes", "3": "response", "7": "leverage"}
+PAGES = {"1": "ledger", "2": "nodes", "3": "response", "7": "leverage", "8": "spread"}
 """Digit -> page, of the pages that there are."""
 
 
@@ -34,7 +34,7 @@ class Key:
 MOVING, VALUES, STAGES, FILE, LOOKING = "Moving", "Values", "Stages", "The file", "Looking closer"
 
 KEYS: tuple[Key, ...] = (
-    Key(tuple(PAGES), ("page",), tuple(PAGES), "page", "with the page focused: " + ", ".join(
+    Key(tuple(PAGES), ("page",), ("1", "…", max(PAGES)), "page", "with the page focused: " + ", ".join(
         f"{digit} {name}" for digit, name in PAGES.items()), MOVING),
     Key(("pageup", "pagedown"), ("page before", "page after"), ("PgUp", "PgDn"), "page", "page before, after", MOVING),
     Key(("left", "right"), ("line before", "line after"), ("←", "→"), "line", "line before, after (source … load)",
@@ -44,11 +44,14 @@ KEYS: tuple[Key, ...] = (
     Key((",", "."), ("figure before", "figure after"), (",", "."), "figure",
         "with the page focused: figure before, after in the row; cursor of a plot", MOVING),
     Key(("z", "Z"), ("zoom in", "zoom out"), ("z", "Z"), "zoom", "zoom a plot in, out", MOVING),
-    Key(("[", "]"), ("pan left", "pan right"), ("[", "]"), "pan", "pan a plot left, right", MOVING),
+    Key(("[", "]"), ("pan left", "pan right"), ("[", "]"), "pan",
+        "pan a plot left, right; spread: another seed", MOVING),
     Key(("v", "V"), ("next curve", "curve before"), ("v", "V"), "curves",
-        "what the page shows: next, before (response: gain, delay, impedances; leverage: the figure that ranks)",
+        "what the page shows: next, before (response: gain, delay, impedances; leverage: the figure that ranks; "
+        "spread: figures)",
         MOVING),
-    Key(("s",), ("single lines",), ("s",), "single lines", "the curve of the selected line, on and off", MOVING),
+    Key(("s",), ("single lines",), ("s",), "single lines",
+        "the curve of the selected line, on and off; spread: run it, again", MOVING),
     Key(("tab", "shift+tab"), ("focus",), ("Tab",), "sheet, page", "sheet, page; in a field: accept and next key",
         MOVING),
     Key(("escape",), ("back",), ("Esc",), "back", "leave the field, close, back to the ledger", MOVING),
@@ -56,7 +59,8 @@ KEYS: tuple[Key, ...] = (
     Key(("enter",), ("act",), ("Enter",), "edit", "edit the focused value; accept; act on the row", VALUES),
     Key(("+", "-"), ("step up", "step down"), ("+", "-"), "step",
         "next value of the series up, down; other values by 5 %", VALUES),
-    Key(("*", "/"), ("decade up", "decade down"), ("*", "/"), "decade", "a decade up, down", VALUES),
+    Key(("*", "/"), ("decade up", "decade down"), ("*", "/"), "decade",
+        "a decade up, down; spread, page focused: builds", VALUES),
     Key(("delete", "backspace"), ("take out",), ("Del",), "take out",
         "take the key out of the file: its default counts", VALUES),
     Key(("t",), ("sheets",), ("t",), "more sheets",
@@ -170,10 +174,11 @@ _OVERLAYS = {"help": _IN_TEXT, "working": _IN_TEXT, "cautions": _IN_ROWS, "leave
              "changed": _IN_CHANGED, "recovered": _IN_CHANGED, "difference": _IN_DIFFERENCE}
 _SHEET = ("Enter", "+ -", "Tab", "=", "u U", "w", "?")
 _ON_PAGE = {
-    "ledger": ("1 2 3 7", "Enter", ", .", "Tab", "=", "?"),
-    "nodes": ("1 2 3 7", "Enter", ", .", "Tab", "=", "?"),
-    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", "1 2 3 7", "Tab", "?"),
-    "leverage": ("Enter", "v V", "b", "=", "1 2 3 7", "Tab", "?"),
+    "ledger": ("1 … 8", "Enter", ", .", "Tab", "=", "?"),
+    "nodes": ("1 … 8", "Enter", ", .", "Tab", "=", "?"),
+    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", "1 … 8", "Tab", "?"),
+    "leverage": ("Enter", "v V", "b", "=", "1 … 8", "Tab", "?"),
+    "spread": ("Enter", "s", "v V", "* /", "[ ]", "1 … 8", "Tab", "?"),
 }
 
 
@@ -201,13 +206,15 @@ def writing_hints(faults: bool, finding: bool) -> tuple[Hint, ...]:
 
 _WORDS = {("sheet", "Tab"): "page", ("page", "Tab"): "sheet", ("page", "Enter"): "to its key",
           ("response", ", ."): "cursor", ("response", "Enter"): "next corner", ("response", "s"): "own curve",
-          ("leverage", "Enter"): "sweep it", ("leverage", "v V"): "rank by"}
+          ("leverage", "Enter"): "sweep it", ("leverage", "v V"): "rank by",
+          ("spread", "s"): "run again", ("spread", "v V"): "figure",
+          ("spread", "* /"): "builds", ("spread", "[ ]"): "seed"}
 
 
 def table() -> list[str]:
     """The table of keys of the README, as lines of Markdown."""
     def cell(keys: Iterable[str]) -> str:
-        return " ".join(f"`{one}`" for one in keys)
+        return " ".join(one if one == "…" else f"`{one}`" for one in keys)
 
     return ["| key | does |", "| --- | --- |", *(f"| {cell(key.shown)} | {key.does} |" for key in KEYS)]
 

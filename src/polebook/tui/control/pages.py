@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 
-from polebook.tui.control import leverage, response
+from polebook.tui.control import leverage, response, spread
 from polebook.tui.control.base import Done, Work, at, done, to_path
 from polebook.tui.control.figures import parts_of
 from polebook.tui.view import Page, State
@@ -43,6 +43,7 @@ PAGES: Mapping[Page, Ways] = {
     "nodes": Ways(lambda state: len(parts_of(state)), _to_part),
     "response": Ways(None, response.act, response.OWN),
     "leverage": Ways(leverage.rows, _to_sheet, leverage.OWN),
+    "spread": Ways(spread.rows, spread.act, spread.OWN),
 }
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
-from polebook.tui.draw import ledger, leverage, nodes, response
+from polebook.tui.draw import ledger, leverage, nodes, response, spread
 from polebook.tui.draw.scene import Scene
 from polebook.tui.keys import Hint
 from polebook.tui.lines import Line
@@ -45,6 +45,8 @@ PAGES: Mapping[Page, Drawn] = {
     "response": Drawn(response.page, response.figures, lambda scene: 14, 12, lambda scene, rows: rows, 2),
     "leverage": Drawn(leverage.page, leverage.figures, lambda scene: 12, 11, lambda scene, rows: rows,
                       hints=leverage.hints),
+    "spread": Drawn(spread.page, spread.figures, lambda scene: spread.WANT, 12, lambda scene, rows: rows, 2,
+                    spread.hints),
 }
 
 
