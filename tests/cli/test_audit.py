@@ -70,10 +70,10 @@ def test_a_file_without_targets_exits_0_and_says_so(capsys, aimless):
 
 
 def test_a_target_that_is_not_judged_counts_as_missed(capsys, tmp_path):
-    file = variant(tmp_path, "unjudged.toml", ('upper   = "1M"', 'upper   = "100k"\nyield = "95 %"'))
+    file = variant(tmp_path, "unjudged.toml", ('upper   = "1M"', 'upper   = "100k"\nsag = "5 %"'))
     code, out, _ = told(capsys, file)
     assert code == 1
-    (line,) = [line for line in out.splitlines() if line.startswith(" yield")]
+    (line,) = [line for line in out.splitlines() if line.startswith(" sag")]
     assert "not judged" in line
     assert line.split("not judged")[1].strip()
     assert out.splitlines()[-1] == " 0 of 5 missed, 1 not judged"

@@ -21,14 +21,16 @@ from polebook.text.files import Identity
 from polebook.tui.control import asked, jobs, press, recovered, watching
 from polebook.tui.draw.screen import screen
 from polebook.tui.lines import plain_text
-from polebook.tui.view import Care, Choice, Field, Lever, Overlay, Plot, State, View
+from polebook.tui.view import Care, Choice, Field, Lever, Overlay, Plot, Spread, State, View
 from tests.book.verdict_cases import CASES as CHAINS
 from tests.helpers import DEMOS
+from tests.tui.spread_told import run_of
 
 FOLDER = Path(__file__).parent / "screens"
 SIZES = ((80, 24), (140, 45))
 LISTENER, SIX, DIODE = "wire-break-listener", "six-stage", "photodiode-front"
 SOUNDER = "frost-line-sounder"
+PROBE = "leaf-probe"
 
 
 def texts() -> Iterator[tuple[str, str]]:
@@ -144,6 +146,24 @@ def aimed(name: str, path: str, targets: dict[str, str], **view: object) -> Stat
     return State(session, key(session, path, **view))
 
 
+def built(name: str, *keys: str, **view: object) -> State:
+    """The page of a spread of 2000 builds, and keys pressed on it."""
+    state = at(name, "Q1.rc", page="spread", focus="page", **view)
+    run = run_of(state.session.chain, state.session.history.text)
+    state = replace(state, view=replace(state.view, spread=Spread(2000, run=run)))
+    for key in keys:
+        state = press(state, key, key if len(key) == 1 else None, 0.0)[0]
+    return state
+
+
+def begun(name: str) -> State:
+    """A spread that runs, with something of it told, after an edit."""
+    state = press(built(name, "+"), "s", "s", 0.0)[0]
+    if state.job is None:
+        raise LookupError("nothing runs")
+    return replace(state, job=replace(state.job, done=1200, total=8000))
+
+
 def beside() -> State:
     """The listener, edited, while another hand has put another text in its place."""
     state = pinned(LISTENER, "Q1.rc", "2k4")
@@ -224,6 +244,13 @@ CASES: dict[str, Callable[[], State]] = {
     "leverage-noise": lambda: at(SIX, "Q1.re", page="leverage", focus="page", lever=Lever("noise", "Q1.re")),
     "sweep-short": lambda: swept(LISTENER, "Q2.couple", ",", ",", "v"),
     "sweep-plain": lambda: replace(swept(DIODE, "U1.rf"), plain=True),
+    "spread-empty": lambda: at(SIX, "Q1.rc", page="spread", focus="page"),
+    "spread": lambda: built(PROBE),
+    "spread-row": lambda: built(PROBE, "v", "down", "down"),
+    "spread-next": lambda: built(PROBE, "*", "]", "V"),
+    "spread-begun": lambda: begun(PROBE),
+    "spread-table": lambda: built(SIX, "V"),
+    "spread-plain": lambda: replace(built(LISTENER), plain=True),
     "field": lambda: field("Q2.ce", "4u7"),
     "field-refused": lambda: field("Q2.ce", "4 kohm", REFUSED),
     "sheet-target": lambda: at(LISTENER, "target.upper"),

@@ -94,6 +94,20 @@ def test_a_save_replaces_the_whole_file(tmp_path: Path) -> None:
     assert [entry.name for entry in tmp_path.iterdir()] == ["a.toml"]
 
 
+def test_a_text_in_pieces_is_saved_whole_or_not_at_all(tmp_path: Path) -> None:
+    path = tmp_path / "a.csv"
+    files.save(path, (f"{number}\n" for number in range(3)))
+    assert path.read_text() == "0\n1\n2\n"
+
+    def broken() -> Iterator[str]:
+        yield "new\n"
+        raise KeyboardInterrupt
+
+    with pytest.raises(KeyboardInterrupt):
+        files.save(path, broken())
+    assert path.read_text() == "0\n1\n2\n" and [entry.name for entry in tmp_path.iterdir()] == ["a.csv"]
+
+
 def test_a_new_file_gets_the_usual_mode(tmp_path: Path) -> None:
     (tmp_path / "usual").write_text("")
     files.save(tmp_path / "a.toml", "x")

@@ -49,10 +49,10 @@ def test_pages_by_digit_only_with_the_page_focused(desk):
 
 
 def test_pages_by_page_keys_from_either_focus(desk):
-    seen = [desk.press("pagedown").view.page for _ in range(7)]
-    assert seen == ["nodes", "response", "pulse", "noise", "levels", "leverage", "leverage"]
-    seen = [desk.press("tab", "pageup").view.page for _ in range(7)]
-    assert seen == ["levels", "noise", "pulse", "response", "nodes", "ledger", "ledger"]
+    seen = [desk.press("pagedown").view.page for _ in range(8)]
+    assert seen == ["nodes", "response", "pulse", "noise", "levels", "leverage", "spread", "spread"]
+    seen = [desk.press("tab", "pageup").view.page for _ in range(8)]
+    assert seen == ["leverage", "levels", "noise", "pulse", "response", "nodes", "ledger", "ledger"]
 
 
 def test_rows_of_the_ledger_are_its_lines(desk):

@@ -23,7 +23,7 @@ class Room:
 
     def _piece(self, state, piece):
         self.pieces.append(piece)
-        return replace(state, view=replace(state.view, row=piece))
+        return replace(state, view=replace(state.view, row=piece or 0))
 
     def _ended(self, state, whole):
         self.ends.append(whole)
@@ -189,3 +189,11 @@ async def test_our_own_fault_in_it_ends_the_app_as_one_in_a_key_does():
             await post(pilot, "right")
             for _ in range(4):
                 await settled(pilot)
+
+
+def test_without_a_piece_yet_the_keys_have_their_turn(state):
+    room = Room()
+    state = jobs.begin(state, room.job(iter([(1, 3, 0), (1, 3, None), (2, 3, 1)])))
+    state = jobs.advance(state, lambda: False)
+    assert room.pieces == [0, None] and state.job is not None
+    assert jobs.advance(state, lambda: False).job is None

@@ -79,9 +79,9 @@ def test_what_is_no_name_at_all(nothing):
     assert problem(nothing).fix
 
 
-def test_what_a_later_version_computes_says_so():
+def test_what_only_many_chains_can_tell_names_who_builds_them():
     told = of(BLOCK.format(more="").replace('noise = "5n"', 'yield = "95 %"'), "target.yield.got").why
-    assert told == "this version does not compute it"
+    assert told == "run polebook spread"
 
 
 def test_names_are_unique_and_the_same_as_the_workings():

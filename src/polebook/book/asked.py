@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
 from types import MappingProxyType
 from typing import TYPE_CHECKING
 
@@ -14,6 +15,18 @@ if TYPE_CHECKING:
 
 Answer = tuple[float | None, str]
 """(what was got, why the target can't be judged, "" where it can)."""
+
+
+@dataclass(frozen=True, slots=True)
+class Built:
+    """The yield of built chains, which no ledger computes: whoever builds them hands it in.
+
+    share  of the chains that meet the other targets, None where it is not known, and why;  cause  what holds it down
+    """
+
+    share: float | None = None
+    why: str = "run polebook spread"
+    cause: str = ""
 
 
 def _swing(of: Ledger, want: float) -> Answer:
@@ -75,7 +88,13 @@ def _sag(of: Ledger, _: float) -> Answer:
     return (None, of.sag.why) if of.sag.percent is None else (of.sag.percent * 0.01, "")
 
 
+def _yield(of: Ledger, _: float) -> Answer:
+    """Share of built chains, as it was handed in."""
+    return of.built.share, of.built.why
+
+
 ASKED: Mapping[str, Callable[[Ledger, float], Answer]] = MappingProxyType({
     "noise": _noise, "swing": _swing, "current": _current, "overshoot": _overshoot, "rise": _rise, "sag": _sag,
+    "yield": _yield,
 })
 """Target -> its answer."""

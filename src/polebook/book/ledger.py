@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 
 from polebook.book import account as accounts
 from polebook.book.account import Account
-from polebook.book.asked import ASKED
+from polebook.book.asked import ASKED, Built
 from polebook.book.cautions import cautions
 from polebook.book.lines import Line, lines
 from polebook.book.miller import Bridge, bridges
@@ -34,10 +34,14 @@ if TYPE_CHECKING:
 
 
 class Ledger:
-    """All figures of a chain. A ledger computes what is asked, once."""
+    """All figures of a chain. A ledger computes what is asked, once.
+
+    built  the yield, to be handed in before targets are asked for: many chains tell it, not this one
+    """
 
     def __init__(self, chain: Chain) -> None:
         self.chain = chain
+        self.built = Built()
         self.solution = Solution(chain)
 
     @property

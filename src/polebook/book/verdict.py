@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import TYPE_CHECKING, Protocol
 
-from polebook.book import verdict_gain, verdict_levels, verdict_noise, verdict_peak, verdict_pulse
+from polebook.book import verdict_gain, verdict_levels, verdict_noise, verdict_peak, verdict_pulse, verdict_yield
 from polebook.book.verdict_edge import limit, name_of
 from polebook.book.verdict_lever import gain_lever
 from polebook.book.verdict_unstable import unstable
@@ -41,7 +41,7 @@ class Teller(Protocol):
 
 BEYOND: Mapping[str, Teller] = {
     "noise": verdict_noise, "swing": verdict_levels, "current": verdict_levels,
-    "rise": verdict_pulse, "overshoot": verdict_pulse, "sag": verdict_pulse,
+    "rise": verdict_pulse, "overshoot": verdict_pulse, "sag": verdict_pulse, "yield": verdict_yield,
 }
 
 

@@ -18,6 +18,7 @@ COMMANDS = {
     "audit": "does each chain reach its targets?",
     "working": "how a figure came about: formula, numbers put in, source",
     "sweep": "put one value through a range: gain, edges, any figure",
+    "spread": "ten thousand built chains: percentiles, yield, what costs most of it",
     "start": "write a new chain that computes at once",
     "set": "change one value in a chain file",
     "unset": "take one key out of a chain file",

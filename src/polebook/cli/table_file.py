@@ -19,11 +19,13 @@ class _Options(Protocol):
     ) -> object: ...
 
 
-def csv_option(options: _Options) -> None:
-    """--csv alone is the standard output; with a name, a file of that name."""
+_PAGE = "as CSV, units in its heading, at full precision; with a name ending in .csv into that file"
+
+
+def csv_option(options: _Options, told: str = _PAGE) -> None:
+    """--csv alone is the standard output; with a name, a file of that name. `told` is its line of help."""
     options.add_argument(
-        "--csv", metavar="OUT.csv", nargs="?", const=STANDARD, type=_table_name,
-        help="as CSV, units in its heading, at full precision; with a name ending in .csv into that file",
+        "--csv", metavar="OUT.csv", nargs="?", const=STANDARD, type=_table_name, help=told,
     )
 
 

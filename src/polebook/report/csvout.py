@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
+from itertools import chain, islice
 from math import isfinite
 
 from polebook.problem import printable
@@ -15,11 +16,16 @@ _FORMULA = ("=", "+", "-", "@")  # a spreadsheet takes a text that begins so for
 
 def csv_text(heading: Sequence[str], rows: Iterable[Sequence[Value]]) -> str:
     """One table, RFC 4180 but for plain line feeds."""
-    out = io.StringIO()
-    writer = csv.writer(out, lineterminator="\n")
-    writer.writerow([_cell(title) for title in heading])
-    writer.writerows([_cell(value) for value in row] for row in rows)
-    return out.getvalue()
+    return "".join(csv_pieces(heading, rows))
+
+
+def csv_pieces(heading: Sequence[str], rows: Iterable[Sequence[Value]], size: int = 1000) -> Iterator[str]:
+    """The same piece by piece, `size` rows at a time, for a table that is too long to be held as one text."""
+    left: Iterator[Sequence[Value]] = chain((heading,), rows)
+    while piece := list(islice(left, size)):
+        out = io.StringIO()
+        csv.writer(out, lineterminator="\n").writerows([_cell(value) for value in row] for row in piece)
+        yield out.getvalue()
 
 
 def titled(name: str, unit: str = "") -> str:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import errno
 import os
 import stat
+from collections.abc import Iterable
 from contextlib import suppress
 from dataclasses import dataclass
 
@@ -89,9 +90,10 @@ def _identity(status: os.stat_result) -> Identity:
     return Identity(status.st_dev, status.st_ino, status.st_size, status.st_mtime_ns)
 
 
-def save(path: str | os.PathLike[str], text: str) -> None:
+def save(path: str | os.PathLike[str], text: str | Iterable[str]) -> None:
     """Puts `text` in the place of the file at `path`, all of it or nothing. Raises ProblemsFound, the file untouched.
 
+    A long text may come in pieces, each made when the one before is written.
     A new file is written beside the old one, flushed to the disk and renamed over it, so no reader and no power cut
     meets half a file. Mode and, where allowed, owner stay; of a symbolic link the target is replaced.
     """
@@ -102,7 +104,7 @@ def save(path: str | os.PathLike[str], text: str) -> None:
         status = _existing(name, target)
         folder, base = os.path.split(target)
         temporary = os.path.join(folder, f".{base[:100]}.{os.urandom(6).hex()}.new")
-        _write(temporary, text.encode("utf-8"), status)
+        _write(temporary, (text,) if isinstance(text, str) else text, status)
         os.replace(temporary, target)
         temporary = ""
     except (OSError, ValueError) as error:  # ValueError: a NUL in the name, a lone surrogate in the text
@@ -190,10 +192,11 @@ def _decoded(name: str, data: bytes) -> str:
         raise ProblemsFound([problem], data.decode("utf-8", "replace")) from None
 
 
-def _write(temporary: str, data: bytes, status: os.stat_result | None) -> None:
+def _write(temporary: str, pieces: Iterable[str], status: os.stat_result | None) -> None:
     handle = os.open(temporary, os.O_WRONLY | os.O_CREAT | os.O_EXCL | _NO_BLOCK, 0o666 if status is None else 0o600)
     try:
-        _write_all(handle, data)
+        for piece in pieces:
+            _write_all(handle, piece.encode("utf-8"))
         if status is not None:
             _take_over(handle, status)
         os.fsync(handle)

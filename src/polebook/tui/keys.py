@@ -7,7 +7,8 @@ from dataclasses import dataclass
 from textwrap import wrap
 from types import MappingProxyType
 
-PAGES = {"1": "ledger", "2": "nodes", "3": "response", "4": "pulse", "5": "noise", "6": "levels", "7": "leverage"}
+PAGES = {"1": "ledger", "2": "nodes", "3": "response", "4": "pulse", "5": "noise", "6": "levels", "7": "leverage",
+         "8": "spread"}
 """Digit -> page, of the pages that there are."""
 
 
@@ -44,14 +45,15 @@ KEYS: tuple[Key, ...] = (
     Key((",", "."), ("figure before", "figure after"), (",", "."), "figure",
         "with the page focused: figure before, after in the row; cursor of a plot", MOVING),
     Key(("z", "Z"), ("zoom in", "zoom out"), ("z", "Z"), "zoom", "zoom a plot in, out", MOVING),
-    Key(("[", "]"), ("pan left", "pan right"), ("[", "]"), "pan", "pan a plot left, right", MOVING),
+    Key(("[", "]"), ("pan left", "pan right"), ("[", "]"), "pan",
+        "pan a plot left, right; spread: another seed", MOVING),
     Key(("v", "V"), ("next curve", "curve before"), ("v", "V"), "curves",
         "what the page shows: next, before (response: gain, delay, impedances; pulse: step, sag; noise: at the input, "
-        "the output; leverage: the figure that ranks)",
+        "the output; leverage: the figure that ranks; spread: figures)",
         MOVING),
     Key(("s",), ("single lines",), ("s",), "single lines",
         "the curve of the selected line, on and off; noise: ranked line by line, part by part; of a sweep: one more "
-        "figure", MOVING),
+        "figure; spread: run it, again", MOVING),
     Key(("tab", "shift+tab"), ("focus",), ("Tab",), "sheet, page", "sheet, page; in a field: accept and next key",
         MOVING),
     Key(("escape",), ("back",), ("Esc",), "back", "leave the field, close, back to the ledger", MOVING),
@@ -59,7 +61,8 @@ KEYS: tuple[Key, ...] = (
     Key(("enter",), ("act",), ("Enter",), "edit", "edit the focused value; accept; act on the row", VALUES),
     Key(("+", "-"), ("step up", "step down"), ("+", "-"), "step",
         "next value of the series up, down; other values by 5 %", VALUES),
-    Key(("*", "/"), ("decade up", "decade down"), ("*", "/"), "decade", "a decade up, down", VALUES),
+    Key(("*", "/"), ("decade up", "decade down"), ("*", "/"), "decade",
+        "a decade up, down; spread, page focused: builds", VALUES),
     Key(("delete", "backspace"), ("take out",), ("Del",), "take out",
         "take the key out of the file: its default counts", VALUES),
     Key(("t",), ("sheets",), ("t",), "more sheets",
@@ -173,13 +176,14 @@ _OVERLAYS = {"help": _IN_TEXT, "working": _IN_TEXT, "cautions": _IN_ROWS, "leave
              "changed": _IN_CHANGED, "recovered": _IN_CHANGED, "difference": _IN_DIFFERENCE}
 _SHEET = ("Enter", "+ -", "Tab", "=", "u U", "w", "?")
 _ON_PAGE = {
-    "ledger": ("1 … 7", "Enter", ", .", "Tab", "=", "?"),
-    "nodes": ("1 … 7", "Enter", ", .", "Tab", "=", "?"),
-    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", "1 … 7", "Tab", "?"),
-    "pulse": (", .", "z Z", "↑ ↓", "Enter", "b", "=", "[ ]", "1 … 7", "Tab", "?"),
-    "levels": (", .", "Enter", "b", "=", "1 … 7", "Tab", "?"),
-    "noise": (", .", "↑ ↓", "Enter", "s", "v V", "=", "z Z", "[ ]", "1 … 7", "Tab", "?"),
-    "leverage": ("Enter", "v V", "b", "=", "1 … 7", "Tab", "?"),
+    "ledger": ("1 … 8", "Enter", ", .", "Tab", "=", "?"),
+    "nodes": ("1 … 8", "Enter", ", .", "Tab", "=", "?"),
+    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", "1 … 8", "Tab", "?"),
+    "pulse": (", .", "z Z", "↑ ↓", "Enter", "b", "=", "[ ]", "1 … 8", "Tab", "?"),
+    "levels": (", .", "Enter", "b", "=", "1 … 8", "Tab", "?"),
+    "noise": (", .", "↑ ↓", "Enter", "s", "v V", "=", "z Z", "[ ]", "1 … 8", "Tab", "?"),
+    "leverage": ("Enter", "v V", "b", "=", "1 … 8", "Tab", "?"),
+    "spread": ("Enter", "s", "v V", "* /", "[ ]", "1 … 8", "Tab", "?"),
 }
 
 
@@ -211,7 +215,9 @@ _WORDS = {("sheet", "Tab"): "page", ("page", "Tab"): "sheet", ("page", "Enter"):
           ("pulse", "b"): "step, sag",
           ("levels", "b"): "other bank",
           ("noise", ", ."): "cursor", ("noise", "v V"): "in, out", ("noise", "s"): "by line",
-          ("leverage", "Enter"): "sweep it", ("leverage", "v V"): "rank by"}
+          ("leverage", "Enter"): "sweep it", ("leverage", "v V"): "rank by",
+          ("spread", "s"): "run again", ("spread", "v V"): "figure",
+          ("spread", "* /"): "builds", ("spread", "[ ]"): "seed"}
 
 
 def table() -> list[str]:

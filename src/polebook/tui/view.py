@@ -16,8 +16,9 @@ if TYPE_CHECKING:
     from polebook.plan.sweep import Point
     from polebook.session.recovery import Kept
     from polebook.session.watch import Look
+    from polebook.tui.spreads import Run
 
-Page = Literal["ledger", "nodes", "response", "pulse", "noise", "levels", "leverage"]
+Page = Literal["ledger", "nodes", "response", "pulse", "noise", "levels", "leverage", "spread"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -120,6 +121,24 @@ class Lever:
 
 
 @dataclass(frozen=True, slots=True)
+class Spread:
+    """Where the user is on the spread page.
+
+    builds, seed  of the next run;  asked  builds of the one that is at work
+    figure  that is looked at, spreads.TABLE for all side by side;  row  name of the chosen one, "" for the first
+    run     what is shown;  before  the last one of another text
+    """
+
+    builds: int = 10_000
+    seed: int = 1
+    asked: int = 0
+    figure: str = ""
+    row: str = ""
+    run: Run | None = None
+    before: Run | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class Writing:
     """The file as text while it is being edited: its own undo, the cursor in it, and what it comes to.
 
@@ -207,6 +226,7 @@ class View:
     noise: Plot = Plot(what="input")  # what: "input" or "output"; single: ranked by lines
     lever: Lever = Lever()
     bank: Literal["plan", "levels"] = "plan"  # of the levels page
+    spread: Spread = Spread()
     writing: Writing | None = None  # the text page is open
 
 

@@ -71,6 +71,10 @@ def _got(books: Books, sheet: Sheet, name: str) -> Working:
         sheet.result(f"got = |{gain}|")
     elif name == "swing":
         swing_target(books, sheet)
+    elif name == "yield":
+        share = sheet.put("yield", books.ledger.built.share or 0.0, "", "share of built chains that meet the others",
+                          "the spread")
+        sheet.result(f"got = {share}")
     elif name in _IN_PERCENT:
         sheet.result(f"got = {sheet.figure(name, _IN_PERCENT[name])}/100")
     else:

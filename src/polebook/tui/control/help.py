@@ -110,6 +110,19 @@ _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
         ("one more figure", "s: rise time, the largest source that passes, full power, supply current, in the place of "
          "a figure that does not rank; then none again"),
     ),
+    "spread": (
+        ("builds", "the file's chain again and again, every part, figure of a card and rail drawn within its "
+         "tolerance, the bias of each solved anew; s builds them, * / ten times as many or a tenth, "
+         "[ ] with another seed"),
+        ("yield", "share of the builds that meet every target, and where it may lie (95 % sure); was: before the edit, "
+         "by the same draws"),
+        ("the bars", "how many builds have which value, the middle 99.8 % of them; upright: what the target allows"),
+        ("\u25cf \u00d7", "the chain as its file has it; the worst corner of the tolerances, solved"),
+        ("0.1 % ... 99.9 %", "so many of the builds lie below; then the standard deviation"),
+        ("halved, none", "yield in % that half of this tolerance would bring, or none; ~ by slopes, else solved again"),
+        ("worst, of it", "the end at which the worst corner has it; its share of what the figure varies, by leverage"),
+        ("v", "another figure, at last the table of all; Enter goes to the key of the row"),
+    ),
 }
 
 

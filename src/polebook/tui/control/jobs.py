@@ -22,6 +22,7 @@ def begin(state: State, job: Job) -> State:
 def advance(state: State, enough: Callable[[], bool]) -> State:
     """The state after pieces of its job, one at least, until `enough`; without the job where it has ended.
 
+    None for a piece says that there is none yet, of work done elsewhere: then it is enough.
     A piece with a fault ends it: the fault is told, and what was done before it stays.
     """
     while (job := state.job) is not None:
@@ -32,7 +33,7 @@ def advance(state: State, enough: Callable[[], bool]) -> State:
         except ProblemsFound as found:
             return at(_ended(state, job, whole=False), message=f"{job.name}: {reason(found)}", bad=True)
         state = job.takes.piece(replace(state, job=replace(job, done=done, total=total)), piece)
-        if enough():
+        if piece is None or enough():
             break
     return state
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
-from polebook.tui.draw import ledger, levels, leverage, nodes, noise, pulse, response
+from polebook.tui.draw import ledger, levels, leverage, nodes, noise, pulse, response, spread
 from polebook.tui.draw.scene import Scene
 from polebook.tui.keys import Hint
 from polebook.tui.lines import Line
@@ -49,6 +49,8 @@ PAGES: Mapping[Page, Drawn] = {
                     lambda scene, rows: levels.rows_for_all(scene) if rows >= levels.BOTH else levels.want(scene), 2),
     "leverage": Drawn(leverage.page, leverage.figures, lambda scene: 12, 11, lambda scene, rows: rows,
                       hints=leverage.hints),
+    "spread": Drawn(spread.page, spread.figures, lambda scene: spread.WANT, 12, lambda scene, rows: rows, 2,
+                    spread.hints),
 }
 
 

@@ -1,0 +1,144 @@
+"""A second process that computes blocks of builds, and the end of the line in the first one.
+
+Threads will not do: the operations on arrays are so short that two threads wait for each other most of the time. A
+helper is started as a program of its own, not as a copy of this one, so that it does not matter what threads,
+terminal or main module there are here. It reads what it is to do from its standard input and ends with that.
+"""
+
+from __future__ import annotations
+
+import os
+import pickle
+import signal
+import subprocess
+import sys
+from collections.abc import Callable, Mapping
+from contextlib import suppress
+from dataclasses import dataclass, replace
+from queue import SimpleQueue
+from threading import Thread
+from typing import IO, Any, TypeAlias
+
+from polebook.chain.model import Chain
+from polebook.plan.spread.block import Engine, Piece
+from polebook.plan.spread.draws import Drawn, drawn
+from polebook.plan.spread.figures import Figure, figures
+from polebook.plan.spread.nominal import Nominal, nominal
+
+PROGRAM = "from polebook.plan.spread.helper import serve; serve()"
+
+
+@dataclass(frozen=True, slots=True)
+class Task:
+    """Builds `first` onward in the spread number `run`; `tighter` is a draw whose reach is multiplied by a number."""
+
+    run: int
+    first: int
+    tighter: tuple[str, float] | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class Setting:
+    """What all tasks of a spread share."""
+
+    chain: Chain
+    temperature: tuple[float, float] | None
+    names: tuple[str, ...]
+    seed: int
+    size: int
+
+    def portable(self) -> Setting:
+        """The same with plain dicts, which can be sent."""
+        chain = self.chain
+        plain: dict[str, Mapping[str, Any]] = {name: dict(getattr(chain, name))
+                                               for name in ("cards", "numbers", "places", "preferred")}
+        return replace(self, chain=replace(chain, **plain))  # type: ignore[arg-type]
+
+
+class Bench:
+    """Where tasks of one setting are done. Raises ProblemsFound where the chain has no ledger."""
+
+    def __init__(self, setting: Setting) -> None:
+        self.setting = setting
+        self.drawn: Drawn = drawn(setting.chain, setting.temperature)
+        self.figures: tuple[Figure, ...] = figures(setting.chain, setting.names)
+        self.nominal: Nominal = nominal(self.drawn)
+        self.engine = Engine(self.nominal, setting.size)
+
+    def do(self, task: Task, stop: Callable[[], bool] = lambda: False) -> Piece:
+        """The builds of a task. Raises Stopped."""
+        draws = self.drawn if task.tighter is None else self.drawn.tighter(*task.tighter)
+        return self.engine.run(draws, self.setting.seed, task.first, self.figures, stop)
+
+
+def serve() -> None:
+    """Says that it is there, then takes settings and tasks from standard input, and answers each task."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)  # ctrl-c is for the one who asked
+    source, target = sys.stdin.buffer, sys.stdout.buffer
+    sys.stdout = sys.stderr
+    bench: Bench | None = None
+    _send(target, "there")
+    while True:
+        try:
+            given = pickle.load(source)
+        except EOFError:
+            return
+        if isinstance(given, Setting):
+            bench = Bench(given)
+        elif bench is not None:
+            _send(target, (given, bench.do(given)))
+
+
+def _send(target: IO[bytes], what: object) -> None:
+    pickle.dump(what, target, pickle.HIGHEST_PROTOCOL)
+    target.flush()
+
+
+class Helper:
+    """A helper process. `answers` takes (helper, what, task, piece): it is "there", a task is "done", it has "gone"."""
+
+    def __init__(self, answers: Answers) -> None:
+        path = os.pathsep.join(part or os.getcwd() for part in sys.path)
+        self.there = False
+        self.tasks: list[Task] = []
+        self._answers = answers
+        self._process = subprocess.Popen([sys.executable, "-c", PROGRAM], stdin=subprocess.PIPE, stdout=subprocess.PIPE,
+                                         stderr=subprocess.DEVNULL, env={**os.environ, "PYTHONPATH": path})
+        self._listener = Thread(target=self._listen, daemon=True)
+        self._listener.start()
+
+    def set(self, setting: Setting) -> None:
+        """What the tasks from now on are of."""
+        self._give(setting.portable())
+
+    def do(self, task: Task) -> None:
+        """Hands over a task."""
+        self.tasks.append(task)
+        self._give(task)
+
+    def end(self) -> None:
+        """Ends the process, whatever it does."""
+        self._process.kill()
+        self._process.wait()
+        self._listener.join()
+        for pipe in (self._process.stdin, self._process.stdout):
+            if pipe is not None:
+                with suppress(OSError):
+                    pipe.close()
+
+    def _give(self, what: object) -> None:
+        assert self._process.stdin is not None
+        with suppress(OSError):  # it has gone: its listener says so
+            _send(self._process.stdin, what)
+
+    def _listen(self) -> None:
+        assert self._process.stdout is not None
+        try:
+            self._answers.put((self, pickle.load(self._process.stdout), None, None))
+            while True:
+                self._answers.put((self, "done", *pickle.load(self._process.stdout)))
+        except (EOFError, OSError, ValueError, pickle.UnpicklingError):
+            self._answers.put((self, "gone", None, None))
+
+
+Answers: TypeAlias = "SimpleQueue[tuple[Helper, str, Task | None, Piece | None]]"

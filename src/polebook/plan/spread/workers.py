@@ -1,0 +1,128 @@
+"""Blocks of builds, handed back in their order: computed here, and by helpers where the work is worth them."""
+
+
+from __future__ import annotations
+
+import os
+from collections import deque
+from collections.abc import Callable, Iterator
+from queue import Empty, SimpleQueue
+
+from polebook.plan.spread.block import Piece, Stopped
+from polebook.plan.spread.helper import Answers, Bench, Helper, Setting, Task
+
+LONG = 120_000  # builds times segments from which a helper, which takes 0.3 s to start, is worth it
+AHEAD = 2  # tasks that a helper has at a time
+WAIT_S = 0.05  # between two looks at `stop`
+
+
+def cores() -> int:
+    """How many cores this process may use."""
+    return len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
+
+
+def block_size(builds: int, most: int, workers: int) -> int:
+    """Builds a block: none above `most`, and as many blocks for each worker."""
+    blocks = -(-builds // most)
+    blocks = -(-blocks // workers) * workers
+    return -(-builds // blocks)
+
+
+class Crew:
+    """Helpers of this process. One that is kept from spread to spread has them at hand; to be closed."""
+
+    def __init__(self) -> None:
+        self.answers: Answers = SimpleQueue()
+        self.helpers: list[Helper] = []
+        self.runs = 0
+
+    def grow(self, count: int) -> None:
+        """Has `count` helpers, as far as there is room for them."""
+        while len(self.helpers) < count:
+            try:
+                self.helpers.append(Helper(self.answers))
+            except OSError:
+                return
+
+    def lose(self, helper: Helper) -> None:
+        """Takes leave of one that has gone."""
+        helper.end()
+        self.helpers.remove(helper)
+
+    def close(self) -> None:
+        """Ends them all."""
+        while self.helpers:
+            self.helpers.pop().end()
+
+    def __enter__(self) -> Crew:
+        return self
+
+    def __exit__(self, *_: object) -> None:
+        self.close()
+
+
+class Workers:
+    """This process and `count` helpers of a crew, at one setting. Raises ProblemsFound for a chain without ledger."""
+
+    def __init__(self, setting: Setting, crew: Crew, count: int) -> None:
+        self.setting, self._crew = setting, crew
+        self._todo: deque[Task] = deque()
+        self._ready: dict[int, Piece] = {}
+        crew.runs += 1
+        crew.grow(count)
+        self._mine = crew.helpers[:count]
+        for helper in self._mine:
+            helper.tasks.clear()
+            if helper.there:
+                helper.set(setting)
+        self.bench = Bench(setting)  # while the helpers set up theirs
+
+    def pieces(self, tighter: tuple[str, float] | None, builds: int, stop: Callable[[], bool]) -> Iterator[Piece]:
+        """Blocks from build 0 on until `builds` are there, in order; ends early once `stop` says so.
+
+        tighter  as in `Task`
+        """
+        size = self.setting.size
+        self._todo = deque(Task(self._crew.runs, first, tighter) for first in range(0, builds, size))
+        self._ready = {}
+        for first in range(0, builds, size):
+            while first not in self._ready:
+                if stop():
+                    return
+                self._hear(wait=not self._todo)
+                if first not in self._ready and self._todo:
+                    task = self._todo.popleft()
+                    try:
+                        self._ready[task.first] = self.bench.do(task, stop)
+                    except Stopped:
+                        return
+            yield self._ready.pop(first)
+
+    def _hear(self, wait: bool) -> None:
+        """Takes what the helpers have answered and gives them more to do; with `wait` there is nothing else to do."""
+        self._hand_out()
+        while True:
+            try:
+                heard = self._crew.answers.get(timeout=WAIT_S) if wait else self._crew.answers.get_nowait()
+            except Empty:
+                return
+            wait = False
+            helper, what, task, piece = heard
+            if what == "gone":
+                self._todo.extendleft(reversed(helper.tasks))
+                helper.tasks.clear()
+                self._crew.lose(helper)
+                self._mine = [one for one in self._mine if one is not helper]
+            elif what == "there":
+                helper.there = True
+                if helper in self._mine:
+                    helper.set(self.setting)
+            elif task is not None and piece is not None and task in helper.tasks:  # else it is of a spread called off
+                helper.tasks.remove(task)
+                self._ready[task.first] = piece
+            self._hand_out()
+
+    def _hand_out(self) -> None:
+        for helper in self._mine:
+            while helper.there and self._todo and len(helper.tasks) < AHEAD:
+                helper.do(self._todo.popleft())
