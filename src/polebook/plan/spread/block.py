@@ -17,7 +17,7 @@ from polebook.plan.spread.figures import Figure
 from polebook.plan.spread.nominal import Nominal
 from polebook.plan.spread.normal import Array
 from polebook.plan.spread.outside import outside
-from polebook.plan.spread.response import LEAP, Runs, crossings, peaking, runs, summit
+from polebook.plan.spread.response import LEAP, Beside, Runs, crossings, peaking, runs, summit
 from polebook.plan.spread.stability import Turning, Turns, Whole
 from polebook.plan.spread.states import GOOD, NO_BAND, NO_GAIN, UNSOLVED, UNSTABLE
 from polebook.solve.edges import DECIBEL, HALF_POWER
@@ -41,14 +41,18 @@ class Stopped(Exception):
 
 @dataclass(frozen=True, slots=True)
 class Piece:
-    """Builds `first` onward. columns: figure -> (builds,), NaN for none; state (builds,); outside: builds by stage in
-    which its device has left the region of its law; alone: builds that the ledger itself had to judge."""
+    """Builds from `first` on. columns: figure -> (builds,), NaN for none; state (builds,); outside: how many by stage
+    in which its device has left the region of its law; alone: how many only the ledger itself could judge."""
 
     first: int
     columns: Mapping[str, Array]
     state: NDArray[np.int8]
-    outside: Mapping[str, Flags]
+    outside: Mapping[str, int]
     alone: int
+
+    @property
+    def builds(self) -> int:
+        return int(self.state.size)
 
 
 class Engine:
@@ -76,22 +80,23 @@ class Engine:
         batch.fill(self.nominal.circuit.network.values)
         return batch
 
-    def run(self, drawn: Drawn, seed: int, first: int, figures: Sequence[Figure],
+    def run(self, drawn: Drawn, seed: int, first: int, count: int, figures: Sequence[Figure],
             stop: Callable[[], bool] = lambda: False) -> Piece:
-        """Builds `first` to `first + size`. Raises Stopped."""
+        """Builds `first` to `first + count`, no more than `size`. Raises Stopped."""
         with np.errstate(all="ignore"):
-            return Block(self, drawn, drawn.built(seed, first, self.size)).piece(first, figures, stop)
+            return Block(self, drawn, drawn.built(seed, first, self.size), stop).piece(first, count, figures)
 
 
 class Block:
     """One block on an engine. Arrays of all builds, (builds,); figures are NaN where a build has none."""
 
-    def __init__(self, engine: Engine, drawn: Drawn, numbers: Mapping[str, Array]) -> None:
-        self.engine, self.drawn, self.numbers = engine, drawn, numbers
+    def __init__(self, engine: Engine, drawn: Drawn, numbers: Mapping[str, Array], stop: Callable[[], bool]) -> None:
+        self.engine, self.drawn, self.numbers, self._stop = engine, drawn, numbers, stop
         self.values, self._points = built(engine.nominal.circuit, numbers)
         self.gain: Array = engine.midband.look(self.values).copy()
         self._level: Array = np.log(np.abs(self.gain))
         self.state = np.full(engine.size, GOOD, dtype=np.int8)
+        self._seen: list[Beside] = []
         engine.batch.fill(self.values)
         self._judge()
 
@@ -134,6 +139,8 @@ class Block:
         turns, turning = engine.turns, engine.turning
         turns.begin()
         for k, hz in enumerate(of.hz.tolist()):
+            if self._stop():
+                raise Stopped
             engine.batch.look(hz)
             turns.at(hz, engine.batch.products, of.products[k])
             np.abs(engine.batch.transfer, out=engine.loss[k])
@@ -147,12 +154,18 @@ class Block:
         return turns.right(of.right, self._angles, asked)
 
     def _angles(self, builds: Whole, hz: Array) -> Array:
-        """Angles of the factors of the builds' determinants over the nominal one's at hz."""
+        """Angles of the factors of the builds' determinants over the nominal one's at hz.
+
+        They are asked for where a pole may lie near the axis: what it does to the response is kept in `_seen`.
+        """
         few, nominal = self.engine.few, self.engine.few_nominal
         result = np.zeros((len(few.products), builds.size))
         for at in range(0, builds.size, FEW):
             count = self._look_at_few(builds[at:at + FEW], hz[at:at + FEW])
             nominal.look(_padded(hz[at:at + FEW]))
+            some = builds[at:at + FEW]
+            loss = np.log(np.abs(few.transfer[:count])) - self._level[some]
+            self._seen.append(Beside(some, np.log(hz[at:at + FEW]), loss))
             for row, product, reference in zip(result, few.products, nominal.products, strict=True):
                 row[at:at + count] = np.angle(product / reference)[:count]
         return result
@@ -206,16 +219,18 @@ class Block:
     @cached_property
     def peaking_db(self) -> Array:
         found = np.full(self.engine.size, np.nan)
-        found[self._told], told = peaking(self.loss_at, self._x, self.engine.loss, self._told)
+        every = [Beside(*(np.zeros(0, kind) for kind in (int, float, float))), *self._seen]
+        beside = Beside(*(np.concatenate([getattr(one, name) for one in every]) for name in ("builds", "x", "y")))
+        found[self._told], told = peaking(self.loss_at, self._x, self.engine.loss, beside, self._told)
         self._odd[self._told[~told]] = True
         return found
 
-    def piece(self, first: int, figures: Sequence[Figure], stop: Callable[[], bool]) -> Piece:
-        """The figures of all builds, those of odd ones by the ledger."""
+    def piece(self, first: int, count: int, figures: Sequence[Figure]) -> Piece:
+        """The figures of the first builds, those of odd ones by the ledger."""
         columns = {figure.name: figure.block(self) for figure in figures}
-        odd = np.nonzero(self._odd)[0].tolist()
+        odd = np.nonzero(self._odd[:count])[0].tolist()
         for build in odd:
-            if stop():
+            if self._stop():
                 raise Stopped
             numbers = {path: float(values[build]) for path, values in self.numbers.items()}
             self.state[build], of = alone(with_numbers(self.chain, numbers))
@@ -225,7 +240,8 @@ class Block:
         none = (self.state != GOOD) & (self.state != NO_BAND)
         for column in columns.values():
             column[none] = np.nan
-        return Piece(first, columns, self.state, self._outside(), len(odd))
+        return Piece(first, {name: column[:count] for name, column in columns.items()}, self.state[:count],
+                     {stage: int(left[:count].sum()) for stage, left in self._outside().items()}, len(odd))
 
     def _outside(self) -> dict[str, Flags]:
         def get(path: str) -> Value | None:

@@ -82,7 +82,7 @@ class Sample:
         """By leverage; of a figure without one, by the straight line through the builds."""
         if figure.name in slopes:
             return slopes[figure.name][draw.name]
-        column = columns[figure.name]
+        column = np.log(columns[figure.name]) if figure.ratio else columns[figure.name]
         there = ~np.isnan(column)
         if there.sum() < 3:
             return 0.0

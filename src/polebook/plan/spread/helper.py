@@ -30,10 +30,11 @@ PROGRAM = "from polebook.plan.spread.helper import serve; serve()"
 
 @dataclass(frozen=True, slots=True)
 class Task:
-    """Builds `first` onward in the spread number `run`; `tighter` is a draw whose reach is multiplied by a number."""
+    """`count` builds from `first` on in the spread number `run`; `tighter` is a draw whose reach is multiplied."""
 
     run: int
     first: int
+    count: int
     tighter: tuple[str, float] | None = None
 
 
@@ -68,7 +69,7 @@ class Bench:
     def do(self, task: Task, stop: Callable[[], bool] = lambda: False) -> Piece:
         """The builds of a task. Raises Stopped."""
         draws = self.drawn if task.tighter is None else self.drawn.tighter(*task.tighter)
-        return self.engine.run(draws, self.setting.seed, task.first, self.figures, stop)
+        return self.engine.run(draws, self.setting.seed, task.first, task.count, self.figures, stop)
 
 
 def serve() -> None:

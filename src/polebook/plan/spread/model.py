@@ -35,7 +35,7 @@ class Request:
 
     temperature  lowest and highest of the surroundings in °C, all between alike; None: the file's
     figures      names of `figures.FIGURES`, () for all that the chain has
-    costs        whether to find what each tolerance costs
+    corners      whether to solve the worst-case corners;  costs: whether to find what each tolerance costs
     workers      processes, 0 for as many as the work is worth;  block: builds at a time, at most. Neither moves a
                  figure.
     """
@@ -45,6 +45,7 @@ class Request:
     seed: int = SEED
     temperature: tuple[float, float] | None = None
     figures: tuple[str, ...] = ()
+    corners: bool = True
     costs: bool = True
     workers: int = 0
     block: int = 4096

@@ -24,6 +24,7 @@ if TYPE_CHECKING:
 
 LEAP = 1.5  # rad that a build's transfer over the nominal one turns between two points where a zero lies near the axis
 BUMPS = 4  # of one build that are climbed
+PINNED = 0.2  # neper that a pole may rise over what was seen within half a radian of it (-ln cos 0.5 = 0.13)
 
 
 @dataclass(slots=True)
@@ -137,11 +138,58 @@ def summit(f: Function, x: Array, y: Array, builds: Whole, least: float) -> tupl
     return best, ~(reach.max(axis=0) > np.maximum(best, least))
 
 
-def peaking(f: Function, x: Array, loss: Array, builds: Whole) -> tuple[Array, Flags]:
+@dataclass(slots=True)
+class Beside:
+    """Responses of some builds beside poles near the axis, where the grid may be too coarse: builds, ln f, neper."""
+
+    builds: Whole
+    x: Array
+    y: Array
+
+
+def peaking(f: Function, x: Array, loss: Array, beside: Beside, builds: Whole) -> tuple[Array, Flags]:
     """(dB by which each build's response rises over its midband gain, whether every bump that may be it was climbed).
 
     loss (frequencies, builds of the block) is ln|H|/|gain|; f gives it. As in solve.edges, what rises less than 1e-9
     neper is level.
     """
     best, told = summit(f, x, loss, builds, FLAT)
+    if beside.builds.size:
+        place = np.full(loss.shape[1], -1)
+        place[builds] = np.arange(builds.size)
+        _climb(f, x, loss, _highest(beside, x, place), best, told, builds)
     return np.maximum(0.0, best * DECIBEL), told
+
+
+def _highest(beside: Beside, x: Array, place: Whole) -> Beside:
+    """Of each build that has a place and each interval of the grid the highest response, the highest first."""
+    interval = np.searchsorted(x, beside.x)
+    order = np.argsort(-beside.y)
+    order = order[place[beside.builds[order]] >= 0]
+    _, once = np.unique(beside.builds[order] * (x.size + 1) + interval[order], return_index=True)
+    order = order[np.sort(once)]
+    return Beside(place[beside.builds[order]], beside.x[order], beside.y[order])
+
+
+def _climb(f: Function, x: Array, loss: Array, beside: Beside, best: Array, told: Flags, builds: Whole) -> None:
+    """Climbs from what was seen beside poles, and tells of what it could not: `best` and `told` are changed."""
+    at, start, height = beside.builds, beside.x, beside.y
+    for turn in range(BUMPS + 1):
+        left = height + PINNED > np.maximum(best[at], FLAT)
+        at, start, height = at[left], start[left], height[left]
+        if not at.size:
+            return
+        if turn == BUMPS:
+            told[at] = False
+            return
+        _, once = np.unique(at, return_index=True)  # each build's highest, one at a time
+        who, above = at[once], np.clip(np.searchsorted(x, start[once]), 1, x.size - 1)
+        three = np.array([x[above - 1], start[once], x[above]])
+        heights = np.array([loss[above - 1, builds[who]], height[once], loss[above, builds[who]]])
+        bump = (heights[1] >= heights[0]) & (heights[1] >= heights[2]) & (three[0] < three[1]) & (three[1] < three[2])
+        told[who[~bump]] = False
+        climbed = maxima(f, builds[who[bump]], three[:, bump], heights[:, bump])
+        best[who[bump]] = np.maximum(best[who[bump]], climbed)
+        rest = np.ones(at.size, dtype=bool)
+        rest[once] = False
+        at, start, height = at[rest], start[rest], height[rest]

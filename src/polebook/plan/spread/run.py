@@ -25,6 +25,7 @@ from polebook.problem import Problem
 Step = tuple[int, int, Result]
 AGAIN = 3  # draws whose cost is not only estimated but solved
 AGAIN_BUILDS = 20_000  # at most, each time
+AT_A_TIME, AT_LEAST = 32_000, 1024  # builds times lines in a block, for a block to take some tenth of a second
 
 
 def spread(request: Request, stop: Callable[[], bool] = lambda: False, crew: Crew | None = None) -> Iterator[Step]:
@@ -51,9 +52,9 @@ class _Run:
         self.targets = judged(request.chain, self.figures)
         self.again = min(request.builds, AGAIN_BUILDS) if request.costs and self.targets else 0
         self.total = request.builds + AGAIN * self.again
-        work = self.total * (len(request.chain.stages) + 2)
-        count = request.workers or (cores() if work >= LONG else 1)
-        size = block_size(request.builds, request.block, count)
+        lines = len(request.chain.stages) + 2
+        count = request.workers or (cores() if self.total * lines >= LONG else 1)
+        size = block_size(request.builds, min(request.block, max(AT_LEAST, AT_A_TIME // lines)), count)
         setting = Setting(request.chain, request.temperature, request.figures, request.seed, size)
         self.workers = Workers(setting, crew, count - 1)
         self.drawn: Drawn = self.workers.bench.drawn
@@ -62,19 +63,18 @@ class _Run:
         self.slopes: dict[str, Slopes] = slopes(self.nominal.ledger, self.drawn, self.at, self.figures)
 
     def steps(self) -> Iterator[Step]:
-        builds, size = self.request.builds, self.workers.setting.size
+        builds = self.request.builds
         result = self._empty()
         columns = {figure.name: np.full(builds, np.nan) for figure in self.figures}
         state = np.zeros(builds, dtype=np.int8)
         outside: dict[str, int] = {}
         for piece in self.workers.pieces(None, builds, self.stop):
-            done = min(builds, piece.first + size)
-            count = done - piece.first
+            done = piece.first + piece.builds
             for name, column in piece.columns.items():
-                columns[name][piece.first:done] = column[:count]
-            state[piece.first:done] = piece.state[:count]
-            for stage, left in piece.outside.items():
-                outside[stage] = outside.get(stage, 0) + int(left[:count].sum())
+                columns[name][piece.first:done] = column
+            state[piece.first:done] = piece.state
+            for stage, count in piece.outside.items():
+                outside[stage] = outside.get(stage, 0) + count
             result = replace(result, done=done, columns={name: column[:done] for name, column in columns.items()},
                              state=state[:done], outside=dict(outside), alone=result.alone + piece.alone)
             yield done, self.total, result
@@ -114,7 +114,7 @@ class _Run:
         yield total, total, replace(result, complete=True)
 
     def _corners(self, result: Result) -> Iterator[Corner]:
-        for figure in self.figures:
+        for figure in self.figures if self.request.corners else ():
             value = result.nominal[figure.name]
             if value is not None and figure.name in self.slopes and self.drawn.draws:
                 for side in SIDES.get(figure.target, ()):
@@ -125,10 +125,8 @@ class _Run:
         chain, again = self.request.chain, self.again
         met, done = 0, 0
         for piece in self.workers.pieces((cost.draw.name, HALF), again, self.stop):
-            count = min(again - piece.first, self.workers.setting.size)
-            columns = {name: column[:count] for name, column in piece.columns.items()}
-            met += int(all_met(chain, self.targets, columns, piece.state[:count]).sum())
-            done += count
+            met += int(all_met(chain, self.targets, piece.columns, piece.state).sum())
+            done += piece.builds
         if done < again:
             return None
         first = {name: column[:again] for name, column in result.columns.items()}

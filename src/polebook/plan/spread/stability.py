@@ -6,8 +6,8 @@ as many poles in all). The ratio turns little, so a coarse grid will do. It is t
 where one of them turns by more than a radian between two frequencies, the builds for which it does are looked at in
 between, by halves, until it does no more. A pole near the axis is not stepped over: the build's determinant then leaps
 by nearly pi from one frequency to the next, the nominal one turns by little there (see `grid`). What still leaps over
-a hair's breadth has a pole or a zero on the axis itself (a lossless trap), and only all factors together have a
-direction there: half a turn is a pole on the axis, which counts as those to the left of it do (solve.winding).
+a hair's breadth has a pole or a zero on the axis itself (a lossless trap), of the build or of the nominal chain; it has
+no direction. Both chains have the same of them, which count as those to the left of the axis do (solve.winding).
 """
 
 from __future__ import annotations
@@ -131,8 +131,6 @@ class Turns:
             np.add.at(self._sum, builds[~far], step[:, ~far].sum(axis=0))
             if not far.any():
                 return
-            builds, lows, highs, left, right = builds[far], lows[far], highs[far], left[:, far], right[:, far]
             if (highs - lows <= 4.0 * NARROW * highs).all():
-                break
-        together = turn(np.zeros(builds.size), (right - left).sum(axis=0))
-        np.add.at(self._sum, builds, np.where(np.abs(together) > np.pi / 2, np.pi, 0.0))
+                return  # what leaps still counts as no turn, see above
+            builds, lows, highs, left, right = builds[far], lows[far], highs[far], left[:, far], right[:, far]

@@ -4,6 +4,7 @@
 from __future__ import annotations
 
 import os
+import sys
 from collections import deque
 from collections.abc import Callable, Iterator
 from queue import Empty, SimpleQueue
@@ -38,7 +39,7 @@ class Crew:
 
     def grow(self, count: int) -> None:
         """Has `count` helpers, as far as there is room for them."""
-        while len(self.helpers) < count:
+        while len(self.helpers) < count and sys.executable:
             try:
                 self.helpers.append(Helper(self.answers))
             except OSError:
@@ -83,9 +84,10 @@ class Workers:
         tighter  as in `Task`
         """
         size = self.setting.size
-        self._todo = deque(Task(self._crew.runs, first, tighter) for first in range(0, builds, size))
+        starts = range(0, builds, size)
+        self._todo = deque(Task(self._crew.runs, first, min(size, builds - first), tighter) for first in starts)
         self._ready = {}
-        for first in range(0, builds, size):
+        for first in starts:
             while first not in self._ready:
                 if stop():
                     return
