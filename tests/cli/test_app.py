@@ -15,6 +15,8 @@ def test_without_a_terminal_a_file_alone_prints_its_ledger():
 
 def test_plain_is_ascii_without_a_terminal_too():
     done = program(LISTENER, "--plain", PYTHONIOENCODING="utf-8")
+    before = program("--plain", LISTENER, PYTHONIOENCODING="utf-8")
+    assert (before.returncode, before.stdout) == (done.returncode, done.stdout)
     assert done.returncode == 0
     assert done.stdout.isascii()
 

@@ -8,6 +8,7 @@ from collections.abc import Sequence
 from importlib import import_module
 
 from polebook import __version__
+from polebook.cli.app import PLAIN, asked_for
 from polebook.cli.command import FAULT, INTERRUPTED, NO_READER, Command, Usage
 from polebook.cli.out import Out, OutputLost, standard
 from polebook.problem import Problem, ProblemsFound
@@ -98,6 +99,8 @@ def _command(argv: list[str], out: Out) -> tuple[str, list[str]]:
         return first, argv[1:]
     if first == "--":
         return _file(argv[1:], argv)
+    if first == PLAIN and len(argv) > 1:  # --plain FILE means what FILE --plain does
+        return _file(argv, argv)
     if first.startswith("-"):
         raise Usage(f'polebook: no option "{first}" stands before a command', "polebook --help lists the commands")
     if _names_a_file(first):
@@ -111,8 +114,6 @@ def _command(argv: list[str], out: Out) -> tuple[str, list[str]]:
 
 def _file(words: list[str], argv: list[str]) -> tuple[str, list[str]]:
     """The app for a file alone; with options of `show` it is shown."""
-    from polebook.cli.app import asked_for
-
     return ("app" if asked_for(words) else "show"), argv
 
 
