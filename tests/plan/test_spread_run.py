@@ -285,9 +285,9 @@ def test_an_estimated_cost_is_near_the_solved_one():
 
 
 def test_a_target_that_no_build_is_judged_by_is_named():
-    of = parsed(TWO, target='noise = "5n"\nupper = "100k"\nyield = "90 %"')
+    of = parsed(TWO, target='swing = "1"\nupper = "100k"\nyield = "90 %"')
     told = run(of, 50).yields()
-    assert told.unjudged == ("noise",)
+    assert told.unjudged == ("swing",)
     assert set(told.shares) == {"all", "upper"}
     assert run(parsed(TWO), 50).yields().shares == {}
     assert run(parsed(TWO), 50, costs=True).costs == ()
@@ -323,10 +323,10 @@ def test_a_bias_that_is_not_solved_leaves_its_build_without_figures(monkeypatch)
     solve = blocks.built
 
     def partly(of, numbers):
-        parts, points = solve(of, numbers)
+        parts, spectra, points = solve(of, numbers)
         count = next(iter(numbers.values())).size
         flags = np.arange(count) % 10 != 3
-        return parts, {**points, "Q2": replace(points["Q2"], converged=points["Q2"].converged & flags)}
+        return parts, spectra, {**points, "Q2": replace(points["Q2"], converged=points["Q2"].converged & flags)}
 
     monkeypatch.setattr(blocks, "built", partly)
     result = run(chain("six-stage"), 100, workers=1)

@@ -50,7 +50,7 @@ def yields(answer: Document, look: Look) -> list[str]:
     """Share of the builds that meet each target, and all, with its interval; what was wanted of it."""
     shares = answer["yield"]
     if not shares:
-        return paragraph("no target that builds are judged by is set: gain, lower, upper, peaking", look)
+        return paragraph("no target that builds are judged by is set: gain, lower, upper, peaking, noise", look)
     wanted, whole = answer["wanted"], shares["all"]
     verdict: Cell | str = ""
     if wanted is not None:
@@ -133,7 +133,7 @@ def again(answer: Document, look: Look) -> list[str]:
 
 def _deviation(value: float | None, unit: str) -> str:
     """Three digits, also of few hundredths of a dB."""
-    if value is None or unit == "Hz" or value >= 0.995:
+    if value is None or unit not in ("dB", "dBΩ") or value >= 0.995:
         return show.bare(value, unit)
     return f"{value:.3f}"
 

@@ -23,10 +23,10 @@ SEEN_DB = 0.005
 STEP = 10  # builds go by factors of it
 TABLE = "table"  # in the place of a figure's name: all figures side by side
 ALL = "all"  # in the place of a target's name: every one of them
-JUDGED = ("gain", "lower", "upper", "peaking")
+JUDGED = ("gain", "lower", "upper", "peaking", "noise")
 """Targets that a spread judges."""
 WORDS = {"gain_db": "gain", "gain_at_reference_db": "gain at ref", "lower_edge_hz": "lower edge",
-         "upper_edge_hz": "upper edge", "peaking_db": "peaking"}
+         "upper_edge_hz": "upper edge", "peaking_db": "peaking", "noise_density": "noise"}
 _SEGMENT_S, _BEGIN_S = 2.5e-6, 0.5  # for a segment of a chain, and to begin: measured once, elsewhere a first guess
 
 

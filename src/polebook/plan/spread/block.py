@@ -13,7 +13,9 @@ from polebook.chain.model import Chain
 from polebook.plan.spread.alone import alone, with_numbers
 from polebook.plan.spread.batch import Batch, Midband
 from polebook.plan.spread.built import built
+from polebook.plan.spread.draws import TEMPERATURE
 from polebook.plan.spread.figures import Figure
+from polebook.plan.spread.noise import density
 from polebook.plan.spread.nominal import Nominal
 from polebook.plan.spread.normal import Array
 from polebook.plan.spread.outside import outside
@@ -92,7 +94,7 @@ class Block:
 
     def __init__(self, engine: Engine, drawn: Drawn, numbers: Mapping[str, Array], stop: Callable[[], bool]) -> None:
         self.engine, self.drawn, self.numbers, self._stop = engine, drawn, numbers, stop
-        self.values, self._points = built(engine.nominal.circuit, numbers)
+        self.values, self._spectra, self._points = built(engine.nominal.circuit, numbers)
         self.gain: Array = engine.midband.look(self.values).copy()
         self._level: Array = np.log(np.abs(self.gain))
         self.state = np.full(engine.size, GOOD, dtype=np.int8)
@@ -200,6 +202,15 @@ class Block:
         """|H| at one frequency, dB."""
         self.engine.batch.look(hz)
         return np.log(np.abs(self.engine.batch.transfer)) * DECIBEL
+
+    @property
+    def noise_density(self) -> Array:
+        """Input-referred, at the reference frequency: V/√Hz or A/√Hz."""
+        of, solution = self.engine.nominal, self.engine.nominal.ledger.solution
+        stated = self.chain.get(TEMPERATURE)
+        celsius = self.numbers.get(TEMPERATURE, 25.0 if stated is None else stated)
+        return density(of.circuit, self.values, self._spectra, celsius, of.reference_hz, abs(solution.gain),
+                       self.engine.size)
 
     @cached_property
     def lower_hz(self) -> Array:

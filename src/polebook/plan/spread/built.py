@@ -8,13 +8,14 @@ from polebook.circuit import bias, terminals
 from polebook.circuit.bias import Operating
 from polebook.circuit.build import Circuit, given_of
 from polebook.circuit.recorder import Collector
+from polebook.devices.spectrum import Spectrum
 from polebook.plan.spread.normal import Array
 from polebook.stages.registry import KINDS, STAMPS
 from polebook.stages.stamper import Value
 
 
-def built(of: Circuit, numbers: Mapping[str, Array]) -> tuple[list[Value], dict[str, Operating]]:
-    """As `circuit.build.values`, with the operating points that it rests on; what nothing spreads stays a float."""
+def built(of: Circuit, numbers: Mapping[str, Array]) -> tuple[list[Value], list[Spectrum], dict[str, Operating]]:
+    """As `circuit.build.values_and_noise`, with the operating points behind it; what nothing spreads is a float."""
 
     def get(path: str) -> Value | None:
         return numbers[path] if path in numbers else of.chain.numbers.get(path)
@@ -26,4 +27,4 @@ def built(of: Circuit, numbers: Mapping[str, Array]) -> tuple[list[Value], dict[
         if not stage.left_out:
             STAMPS[KINDS[stage.kind].topology](stamper, 0, given_of(of.chain, stage, get, points)[0])
     terminals.load(stamper, 0, get)
-    return stamper.values, points
+    return stamper.values, stamper.spectra, points

@@ -13,7 +13,8 @@ from polebook.plan.spread.figures import Figure
 from polebook.plan.spread.linear import Slopes, slopes
 from polebook.plan.spread.states import GOOD
 
-SIDES: Mapping[str, tuple[str, ...]] = {"gain": ("low", "high"), "lower": ("high",), "upper": ("low",)}
+SIDES: Mapping[str, tuple[str, ...]] = {"gain": ("low", "high"), "lower": ("high",), "upper": ("low",),
+                                          "noise": ("high",)}
 """Target -> on which side of it a figure is bad."""
 ROUNDS = 6
 

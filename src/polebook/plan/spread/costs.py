@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
 HALF = 0.5
+MOST_NEPER = 300.0  # a slope through few builds may point anywhere
 MOST = 100_000  # builds that an estimate is made from
 
 
@@ -72,7 +73,8 @@ class Sample:
             for figure in self.targets.values():
                 change = slope[figure.name] * (each - 1.0) * u
                 column = columns[figure.name]
-                moved[figure.name] = column * np.exp(change) if figure.ratio else column + change
+                moved[figure.name] = column * np.exp(np.clip(change, -MOST_NEPER, MOST_NEPER)) if figure.ratio \
+                    else column + change
             found.append(int(all_met(self.chain, self.targets, moved, self.state[:self.size]).sum()))
         return found
 

@@ -61,9 +61,9 @@ class Bench:
 
     def __init__(self, setting: Setting) -> None:
         self.setting = setting
-        self.drawn: Drawn = drawn(setting.chain, setting.temperature)
         self.figures: tuple[Figure, ...] = figures(setting.chain, setting.names)
-        self.nominal: Nominal = nominal(self.drawn)
+        self.nominal: Nominal = nominal(drawn(setting.chain, setting.temperature))
+        self.drawn: Drawn = self.nominal.drawn
         self.engine = Engine(self.nominal, setting.size)
 
     def do(self, task: Task, stop: Callable[[], bool] = lambda: False) -> Piece:

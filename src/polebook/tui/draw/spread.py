@@ -23,7 +23,7 @@ LEAST_RANKING, MOST_RANKING = 6, 16
 MOST_CHART = 14
 _OVERALL = {"gain_db": "overall.gain_db", "gain_at_reference_db": "overall.gain_at_reference",
             "lower_edge_hz": "overall.lower_edge_hz", "upper_edge_hz": "overall.upper_edge_hz",
-            "peaking_db": "overall.peaking_db"}
+            "peaking_db": "overall.peaking_db", "noise_density": "overall.noise_density"}
 
 
 def figures(scene: Scene) -> tuple[str, ...]:

@@ -75,7 +75,8 @@ def yields(scene: Scene, run: Run, room: int) -> Line:
     of = run.told
     whole = of.yields.get(ALL)
     if whole is None:
-        return (Span(" no yield: ", "dim"), Span("no target that a spread judges; t sets gain, lower, upper, peaking"))
+        return (Span(" no yield: ", "dim"),
+                Span("no target that a spread judges; t sets gain, lower, upper, peaking, noise"))
     before = compared(scene.view.spread)
     was = before.yields.get(ALL) if before is not None else None
     told: list[Line] = [(Span(" yield "), Span(percent(whole.share), "head"),
