@@ -5,7 +5,7 @@ from textual import events
 
 from polebook.tui import keys
 from polebook.tui.app import PolebookApp
-from polebook.tui.control import opening
+from polebook.tui.control import jobs, opening
 from polebook.tui.draw.screen import screen
 from polebook.tui.lines import plain_text
 from tests.tui.desk import LISTENER, SIX, copied
@@ -125,6 +125,9 @@ async def test_every_key_posted_at_every_place(place, tmp_path):
                 app.post_message(event(name))
         await settled(pilot)
         assert app.is_running
+        app.state = jobs.stopped(app.state)  # what runs goes on between one look and the next
+        app.face.show()
+        await settled(pilot)
         assert painted(app) == drawn(app)
 
 
