@@ -99,7 +99,7 @@ def test_a_helper_that_cannot_be_started_is_done_without(monkeypatch):
     def refuse(*_, **__):
         raise OSError("no more processes")
 
-    monkeypatch.setattr("polebook.plan.spread.helper.subprocess.Popen", refuse)
+    monkeypatch.setattr("polebook.plan.process.subprocess.Popen", refuse)
     assert run(chain("six-stage"), 300, workers=2, block=100).complete
 
 

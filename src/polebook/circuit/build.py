@@ -77,11 +77,16 @@ def values(of: Circuit, override: Mapping[str, Value]) -> list[Value]:
 
     The parts are those of the layout, in its order; a value that makes a part vanish needs a new circuit.
     """
-    return values_and_noise(of, override)[0]
+    return built(of, override)[0]
 
 
 def values_and_noise(of: Circuit, override: Mapping[str, Value]) -> tuple[list[Value], list[Spectrum]]:
     """`values`, and the noise sources that are no resistors, in the order of the recorder's `noises`."""
+    return built(of, override)[:2]
+
+
+def built(of: Circuit, override: Mapping[str, Value]) -> tuple[list[Value], list[Spectrum], dict[str, Operating]]:
+    """`values_and_noise`, and the operating points behind them; what no array moves stays a float."""
     numbers = of.chain.numbers
 
     def get(path: str) -> Value | None:
@@ -96,7 +101,7 @@ def values_and_noise(of: Circuit, override: Mapping[str, Value]) -> tuple[list[V
             given, _ = given_of(of.chain, stage, get, points)
             STAMPS[KINDS[stage.kind].topology](stamper, 0, given)
     terminals.load(stamper, 0, get)
-    return collector.values, collector.spectra
+    return collector.values, collector.spectra, points
 
 
 def with_values(of: Circuit, override: Mapping[str, Value]) -> Network:

@@ -3,19 +3,13 @@
 from __future__ import annotations
 
 import atexit
-import os
-import pickle
-import subprocess
-import sys
 from collections.abc import Iterator
 from contextlib import suppress
-from dataclasses import fields, replace
 from queue import Empty, SimpleQueue
-from threading import Thread
-from types import MappingProxyType
 from typing import TYPE_CHECKING, Any
 
 from polebook.chain.model import Chain
+from polebook.plan.process import Process, portable
 from polebook.problem import Problem, ProblemsFound
 
 if TYPE_CHECKING:
@@ -29,49 +23,34 @@ _idle: list[Apart] = []  # one at the most: a program that is there answers half
 _living: set[Apart] = set()
 
 
-class Apart:
+class Apart(Process):
     """Such a process, with nothing to do yet. Raises OSError where there is no room for one."""
 
     def __init__(self) -> None:
-        path = os.pathsep.join(part or os.getcwd() for part in sys.path)
-        self._heard: SimpleQueue[tuple[str, Any]] = SimpleQueue()
-        self._process = subprocess.Popen([sys.executable, "-c", PROGRAM], stdin=subprocess.PIPE, stdout=subprocess.PIPE,
-                                         stderr=subprocess.DEVNULL, env={**os.environ, "PYTHONPATH": path})
-        self._listener = Thread(target=self._listen, name="spread", daemon=True)
-        self._listener.start()
+        self._news: SimpleQueue[tuple[str, Any]] = SimpleQueue()
+        super().__init__(PROGRAM)
         _living.add(self)
 
     def ask(self, chain: Chain, builds: int, seed: int) -> None:
         """Has it begin."""
-        assert self._process.stdin is not None
-        with suppress(OSError):  # it has gone: its listener says so
-            pickle.dump((_portable(chain), builds, seed), self._process.stdin, pickle.HIGHEST_PROTOCOL)
-            self._process.stdin.flush()
+        self.give((portable(chain), builds, seed))
 
-    def heard(self) -> tuple[str, Any] | None:
+    def heard(self, what: Any) -> None:
+        self._news.put(what)
+
+    def gone(self) -> None:
+        self._news.put(("gone", None))
+
+    def news(self) -> tuple[str, Any] | None:
         """What it says next: ("step", ...), ("end", None), ("problems", ...), ("fault", ...), ("gone", None)."""
         with suppress(Empty):
-            return self._heard.get(timeout=WAIT_S)
+            return self._news.get(timeout=WAIT_S)
         return None
 
     def end(self) -> None:
         """Ends the process, whatever it does."""
         _living.discard(self)
-        self._process.kill()
-        self._process.wait()
-        self._listener.join()
-        for pipe in (self._process.stdin, self._process.stdout):
-            if pipe is not None:
-                with suppress(OSError):
-                    pipe.close()
-
-    def _listen(self) -> None:
-        assert self._process.stdout is not None
-        try:
-            while True:
-                self._heard.put(pickle.load(self._process.stdout))
-        except (EOFError, OSError, ValueError, pickle.UnpicklingError):
-            self._heard.put(("gone", None))
+        super().end()
 
 
 def spread(chain: Chain, builds: int, seed: int) -> Iterator[Step]:
@@ -88,11 +67,11 @@ def spread(chain: Chain, builds: int, seed: int) -> Iterator[Step]:
     try:
         worker.ask(chain, builds, seed)
         while not free:
-            heard = worker.heard()
-            if heard is None:
+            news = worker.news()
+            if news is None:
                 yield last
                 continue
-            kind, what = heard
+            kind, what = news
             free = kind in ("end", "problems")
             if kind == "problems":
                 raise ProblemsFound(what)
@@ -119,10 +98,3 @@ def end_all() -> None:
 
 
 atexit.register(end_all)
-
-
-def _portable(chain: Chain) -> Chain:
-    """The same with plain dicts, which can be sent."""
-    views: dict[str, Any] = {one.name: getattr(chain, one.name) for one in fields(chain)}
-    plain: dict[str, Any] = {key: dict(view) for key, view in views.items() if isinstance(view, MappingProxyType)}
-    return replace(chain, **plain)

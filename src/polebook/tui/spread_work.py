@@ -12,11 +12,12 @@ from math import log10
 from queue import SimpleQueue
 from threading import Thread
 from time import perf_counter
-from typing import IO, Any
+from typing import IO
 
 from polebook.book.reach import within_reach
 from polebook.book.targets import LESS_IS_BETTER, TOLERANCE_DB
 from polebook.chain.model import Chain
+from polebook.plan.process import send
 from polebook.plan.spread.draws import Draw
 from polebook.plan.spread.figures import Figure as Kind
 from polebook.plan.spread.model import Request, Result
@@ -147,16 +148,11 @@ def _answer(target: IO[bytes], chain: Chain, builds: int, seed: int, crew: Crew)
     try:
         worth = builds * (len(chain.stages) + 2) >= LONG
         for step in steps(chain, builds, seed, crew, max(cores() - 1, 1) if worth else 1):  # a core is for the keys
-            _send(target, "step", step)
-        _send(target, "end", None)
+            send(target, ("step", step))
+        send(target, ("end", None))
     except ProblemsFound as found:
-        _send(target, "problems", found.problems)
+        send(target, ("problems", found.problems))
     except OSError:
         raise
     except Exception:
-        _send(target, "fault", traceback.format_exc())
-
-
-def _send(target: IO[bytes], kind: str, what: Any) -> None:
-    pickle.dump((kind, what), target, pickle.HIGHEST_PROTOCOL)
-    target.flush()
+        send(target, ("fault", traceback.format_exc()))

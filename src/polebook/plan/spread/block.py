@@ -10,9 +10,9 @@ from typing import TYPE_CHECKING, TypeVar
 import numpy as np
 
 from polebook.chain.model import Chain
+from polebook.circuit.build import built
 from polebook.plan.spread.alone import alone, with_numbers
 from polebook.plan.spread.batch import Batch, Midband
-from polebook.plan.spread.built import built
 from polebook.plan.spread.draws import TEMPERATURE
 from polebook.plan.spread.figures import Figure
 from polebook.plan.spread.noise import density

@@ -7,19 +7,16 @@ terminal or main module there are here. It reads what it is to do from its stand
 
 from __future__ import annotations
 
-import os
 import pickle
 import signal
-import subprocess
 import sys
-from collections.abc import Callable, Mapping
-from contextlib import suppress
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 from queue import SimpleQueue
-from threading import Thread
-from typing import IO, Any, TypeAlias
+from typing import Any, TypeAlias
 
 from polebook.chain.model import Chain
+from polebook.plan.process import Process, portable, send
 from polebook.plan.spread.block import Engine, Piece
 from polebook.plan.spread.draws import Drawn, drawn
 from polebook.plan.spread.figures import Figure, figures
@@ -50,10 +47,7 @@ class Setting:
 
     def portable(self) -> Setting:
         """The same with plain dicts, which can be sent."""
-        chain = self.chain
-        plain: dict[str, Mapping[str, Any]] = {name: dict(getattr(chain, name))
-                                               for name in ("cards", "numbers", "places", "preferred")}
-        return replace(self, chain=replace(chain, **plain))  # type: ignore[arg-type]
+        return replace(self, chain=portable(self.chain))
 
 
 class Bench:
@@ -78,7 +72,7 @@ def serve() -> None:
     source, target = sys.stdin.buffer, sys.stdout.buffer
     sys.stdout = sys.stderr
     bench: Bench | None = None
-    _send(target, "there")
+    send(target, "there")
     while True:
         try:
             given = pickle.load(source)
@@ -87,59 +81,33 @@ def serve() -> None:
         if isinstance(given, Setting):
             bench = Bench(given)
         elif bench is not None:
-            _send(target, (given, bench.do(given)))
+            send(target, (given, bench.do(given)))
 
 
-def _send(target: IO[bytes], what: object) -> None:
-    pickle.dump(what, target, pickle.HIGHEST_PROTOCOL)
-    target.flush()
-
-
-class Helper:
+class Helper(Process):
     """A helper process. `answers` takes (helper, what, task, piece): it is "there", a task is "done", it has "gone"."""
 
     def __init__(self, answers: Answers) -> None:
-        path = os.pathsep.join(part or os.getcwd() for part in sys.path)
         self.there = False
         self.tasks: list[Task] = []
         self._answers = answers
-        self._process = subprocess.Popen([sys.executable, "-c", PROGRAM], stdin=subprocess.PIPE, stdout=subprocess.PIPE,
-                                         stderr=subprocess.DEVNULL, env={**os.environ, "PYTHONPATH": path})
-        self._listener = Thread(target=self._listen, daemon=True)
-        self._listener.start()
+        super().__init__(PROGRAM)
 
     def set(self, setting: Setting) -> None:
         """What the tasks from now on are of."""
-        self._give(setting.portable())
+        self.give(setting.portable())
 
     def do(self, task: Task) -> None:
         """Hands over a task."""
         self.tasks.append(task)
-        self._give(task)
+        self.give(task)
 
-    def end(self) -> None:
-        """Ends the process, whatever it does."""
-        self._process.kill()
-        self._process.wait()
-        self._listener.join()
-        for pipe in (self._process.stdin, self._process.stdout):
-            if pipe is not None:
-                with suppress(OSError):
-                    pipe.close()
+    def heard(self, what: Any) -> None:
+        """It is there, or a task is done."""
+        self._answers.put((self, what, None, None) if isinstance(what, str) else (self, "done", *what))
 
-    def _give(self, what: object) -> None:
-        assert self._process.stdin is not None
-        with suppress(OSError):  # it has gone: its listener says so
-            _send(self._process.stdin, what)
-
-    def _listen(self) -> None:
-        assert self._process.stdout is not None
-        try:
-            self._answers.put((self, pickle.load(self._process.stdout), None, None))
-            while True:
-                self._answers.put((self, "done", *pickle.load(self._process.stdout)))
-        except (EOFError, OSError, ValueError, pickle.UnpicklingError):
-            self._answers.put((self, "gone", None, None))
+    def gone(self) -> None:
+        self._answers.put((self, "gone", None, None))
 
 
 Answers: TypeAlias = "SimpleQueue[tuple[Helper, str, Task | None, Piece | None]]"
