@@ -6,42 +6,10 @@ import time
 import pytest
 
 from polebook.tui import keys
-from tests.terminal.probe import BYTES, Terminal, app
-from tests.tui.desk import Desk, copied
+from tests.terminal.probe import Terminal, app
 from tests.tui.places import PLACES
 
 LEAVES = {"leave", "suspend", "write"}
-
-
-class Pair:
-    """The program in its terminal and the same user without one, who press the same keys and must see the same."""
-
-    def __init__(self, terminal, desk, screen=None):
-        self.terminal, self.desk = terminal, desk if isinstance(desk, Desk) else Desk(desk, seconds=0.01)
-        self.screen = screen or self.desk.screen
-        terminal.shows(self.screen())
-
-    def press(self, *names):
-        self.terminal.write("".join(BYTES.get(name, name) for name in names).encode())
-        self.desk.press(*names)
-        self.terminal.shows(self.screen())
-        return self
-
-
-@pytest.fixture
-def path(tmp_path):
-    return copied(tmp_path)
-
-
-@pytest.fixture
-def terminal(path):
-    with Terminal(app(path)) as terminal:
-        yield terminal
-
-
-@pytest.fixture
-def pair(terminal, path):
-    return Pair(terminal, path)
 
 
 def test_a_planning_story_from_opening_to_saving(pair, path):

@@ -9,8 +9,8 @@ import pytest
 
 from polebook.tui import setting, styles
 from polebook.tui.lines import Span, line
+from tests.terminal.pair import Pair
 from tests.terminal.probe import ROOT, Terminal, app
-from tests.terminal.test_keys import Pair
 from tests.tui.desk import LISTENER, Desk, copied
 from tests.tui.places import PLACES
 

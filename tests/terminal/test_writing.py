@@ -1,27 +1,9 @@
 """The text page as bytes: a story of mistakes mended, type-ahead, pastes, and what a letter costs."""
 
-import pytest
 
 from polebook.session import state as sessions
 from tests.terminal.probe import BYTES, Terminal, app
-from tests.terminal.test_keys import Pair
 from tests.tui.desk import LISTENER, Desk, copied
-
-
-@pytest.fixture
-def path(tmp_path):
-    return copied(tmp_path)
-
-
-@pytest.fixture
-def terminal(path):
-    with Terminal(app(path)) as terminal:
-        yield terminal
-
-
-@pytest.fixture
-def pair(terminal, path):
-    return Pair(terminal, path)
 
 
 def test_a_story_of_a_mistake_and_its_mending(pair, path):

@@ -29,6 +29,16 @@ Work = Callable[[State, float], Done]
 """What a key does at a time in seconds."""
 
 
+def still(work: Callable[[State], Done]) -> Work:
+    """Work that does not ask the time."""
+    return lambda state, now: work(state)
+
+
+def stepping(work: Callable[[State, int], Done], step: int) -> Work:
+    """Work that goes a step one way or the other."""
+    return lambda state, now: work(state, step)
+
+
 def at(state: State, **changed: Any) -> State:
     """The state with the user elsewhere: fields of `View`."""
     return replace(state, view=replace(state.view, **changed))

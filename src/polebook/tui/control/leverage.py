@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from typing import Any
 
@@ -10,7 +10,7 @@ from polebook.book.reach import within_reach
 from polebook.problem import ProblemsFound
 from polebook.session.state import sheets_of
 from polebook.tui.control import jobs, swept, working
-from polebook.tui.control.base import Done, Work, at, done, focused, line, lines, refuse, say, to_sheet
+from polebook.tui.control.base import Done, Work, at, done, focused, line, lines, refuse, say, stepping, still, to_sheet
 from polebook.tui.draw.levers import AIMS, Mover, aim, chosen, ranked
 from polebook.tui.draw.scene import Scene
 from polebook.tui.view import State
@@ -132,30 +132,22 @@ def _single(state: State) -> Done:
     return refuse(state, "single lines are curves of the response", "3 is its page")
 
 
-def _still(work: Callable[[State], Done]) -> Work:
-    return lambda state, now: work(state)
-
-
-def _by(work: Callable[[State, int], Done], by: int) -> Work:
-    return lambda state, now: work(state, by)
-
-
 OWN: Mapping[str, Work] = {
     "act": _act,
-    "row before": _by(_row, -1),
-    "row after": _by(_row, 1),
-    "line before": _by(_step_line, -1),
-    "line after": _by(_step_line, 1),
+    "row before": stepping(_row, -1),
+    "row after": stepping(_row, 1),
+    "line before": stepping(_step_line, -1),
+    "line after": stepping(_step_line, 1),
     "first line": lambda state, now: _end(state, False),
     "last line": lambda state, now: _end(state, True),
-    "figure before": _by(_along, -1),
-    "figure after": _by(_along, 1),
-    "next curve": _by(_figure, 1),
-    "curve before": _by(_figure, -1),
-    "band": _still(_band),
-    "back": _still(_back),
-    "working": _still(_working),
-    "single lines": _still(_single),
+    "figure before": stepping(_along, -1),
+    "figure after": stepping(_along, 1),
+    "next curve": stepping(_figure, 1),
+    "curve before": stepping(_figure, -1),
+    "band": still(_band),
+    "back": still(_back),
+    "working": still(_working),
+    "single lines": still(_single),
     "zoom in": lambda state, now: swept.zoom(state, 0.5),
     "zoom out": lambda state, now: swept.zoom(state, 2.0),
     "pan left": lambda state, now: swept.pan(state, -0.25),

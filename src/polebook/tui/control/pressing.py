@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
 from dataclasses import replace
 
 from polebook.session.state import pin, unpin
@@ -21,7 +21,7 @@ from polebook.tui.control import (
     working,
     writing,
 )
-from polebook.tui.control.base import Done, Outcome, Work, at, done, refuse, say
+from polebook.tui.control.base import Done, Outcome, Work, at, done, refuse, say, stepping, still
 from polebook.tui.control.typing import one_line
 from polebook.tui.view import Overlay, State
 
@@ -119,32 +119,23 @@ def _help(state: State, now: float) -> Done:
     return done(at(state, overlay=help.overlay(state)))
 
 
-def _still(work: Callable[[State], Done]) -> Work:
-    """Work that does not ask the time."""
-    return lambda state, now: work(state)
-
-
-def _by(work: Callable[[State, int], Done], by: int) -> Work:
-    return lambda state, now: work(state, by)
-
-
 _EVERYWHERE = {"ctrl+z": Outcome.SUSPEND, "ctrl+l": Outcome.REPAINT}
 _LAST = 10**6
 
 _WORK: Mapping[str, Work] = {
     "page": lambda state, now: done(state),  # with the page focused a digit is one; with the sheet a value
-    "page before": _by(moving.turn, -1),
-    "page after": _by(moving.turn, 1),
-    "line before": _by(moving.step_line, -1),
-    "line after": _by(moving.step_line, 1),
-    "first line": _by(moving.select, 0),
-    "last line": _by(moving.select, _LAST),
-    "row before": _by(moving.step_row, -1),
-    "row after": _by(moving.step_row, 1),
-    "figure before": _by(moving.step_figure, -1),
-    "figure after": _by(moving.step_figure, 1),
-    "focus": _still(moving.focus),
-    "back": _still(moving.back),
+    "page before": stepping(moving.turn, -1),
+    "page after": stepping(moving.turn, 1),
+    "line before": stepping(moving.step_line, -1),
+    "line after": stepping(moving.step_line, 1),
+    "first line": stepping(moving.select, 0),
+    "last line": stepping(moving.select, _LAST),
+    "row before": stepping(moving.step_row, -1),
+    "row after": stepping(moving.step_row, 1),
+    "figure before": stepping(moving.step_figure, -1),
+    "figure after": stepping(moving.step_figure, 1),
+    "focus": still(moving.focus),
+    "back": still(moving.back),
     "find": _find,
     "act": _act,
     "step up": lambda state, now: fields.stepped(state, 1, now),
@@ -153,28 +144,28 @@ _WORK: Mapping[str, Work] = {
     "decade down": lambda state, now: fields.stepped(state, -10, now),
     "take out": fields.take_out,
     "sheets": _sheets,
-    "add": _still(stages.add),
+    "add": still(stages.add),
     "copy": stages.copy,
     "remove": stages.remove,
     "move back": lambda state, now: stages.move(state, -1, now),
     "move on": lambda state, now: stages.move(state, 1, now),
-    "rename": _still(stages.rename),
-    "kind": _still(stages.kind),
+    "rename": still(stages.rename),
+    "kind": still(stages.kind),
     "leave out": stages.leave_out,
-    "note": _still(notes.edit),
-    "text": _still(writing.edit),
-    **dict.fromkeys(sorted(pages.PLOT), _still(moving.no_plot)),
+    "note": still(notes.edit),
+    "text": still(writing.edit),
+    **dict.fromkeys(sorted(pages.PLOT), still(moving.no_plot)),
     "undo": stages.back,
     "redo": stages.forth,
-    "write": _still(leaving.write),
-    "leave": _still(leaving.leave),
+    "write": still(leaving.write),
+    "leave": still(leaving.leave),
     "suspend": lambda state, now: (state, Outcome.SUSPEND),
     "repaint": lambda state, now: (state, Outcome.REPAINT),
     "pin": _pin,
-    "working": _still(working.show),
+    "working": still(working.show),
     "decibels": _decibels,
     "band": _band,
-    "cautions": _still(cautions.show),
+    "cautions": still(cautions.show),
     "help": _help,
 }
 if set(_WORK) != set(keys.ACTIONS.values()):

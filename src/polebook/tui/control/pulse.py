@@ -8,7 +8,8 @@ from dataclasses import replace
 from polebook.book.ledger import Ledger
 from polebook.book.reach import within_reach
 from polebook.problem import ProblemsFound
-from polebook.tui.control.base import Done, Work, at, done, refuse, say, to_path
+from polebook.tui.control.base import Done, Work, at, done, refuse, say, still, to_path
+from polebook.tui.control.plots import window_keys
 from polebook.tui.draw import pulse_sight as sight
 from polebook.tui.draw.plot.axis import short
 from polebook.tui.draw.pulse import place, reach
@@ -114,31 +115,12 @@ def _back(state: State) -> Done:
     return done(_to(state, replace(before, low_s=None, high_s=None)))
 
 
-def _by(work: Callable[[State, int], Done], by: int) -> Work:
-    return lambda state, now: work(state, by)
-
-
-def _moving(move: Move, by: int) -> Work:
-    return lambda state, now: _moved(state, move, by)
-
-
-def _still(work: Callable[[State], Done]) -> Work:
-    return lambda state, now: work(state)
-
-
 OWN: Mapping[str, Work] = {
-    "figure before": _moving(sight.moved, -1),
-    "figure after": _moving(sight.moved, 1),
-    "zoom in": _by(_zoomed, 1),
-    "zoom out": _by(_zoomed, -1),
-    "pan left": _moving(sight.panned, -1),
-    "pan right": _moving(sight.panned, 1),
-    "first line": _moving(sight.to_end, -1),
-    "last line": _moving(sight.to_end, 1),
-    "next curve": _still(_ends),
-    "curve before": _still(_ends),
-    "band": _still(_ends),
-    "single lines": _still(_single),
-    "back": _still(_back),
+    **window_keys(_moved, _zoomed, sight.moved, sight.panned, sight.to_end),
+    "next curve": still(_ends),
+    "curve before": still(_ends),
+    "band": still(_ends),
+    "single lines": still(_single),
+    "back": still(_back),
 }
 """Action -> what it does on this page."""

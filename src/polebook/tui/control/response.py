@@ -10,7 +10,8 @@ from polebook.book.ledger import Ledger
 from polebook.book.reach import within_reach
 from polebook.book.response import begin_hz, whole_band
 from polebook.problem import ProblemsFound
-from polebook.tui.control.base import Done, Work, at, done, line, refuse, say
+from polebook.tui.control.base import Done, Work, at, done, line, refuse, say, stepping
+from polebook.tui.control.plots import window_keys
 from polebook.tui.draw.plot import sight
 from polebook.tui.draw.plot.sight import Window
 from polebook.tui.draw.response import WHAT
@@ -114,25 +115,10 @@ def _back(state: State, now: float) -> Done:
     return done(at(state, plot=sight.automatic(plot, whole, sight.cursor(plot, whole, begin_hz(of)))))
 
 
-def _by(work: Callable[[State, int], Done], by: int) -> Work:
-    return lambda state, now: work(state, by)
-
-
-def _moving(move: Move, by: int) -> Work:
-    return lambda state, now: _moved(state, move, by)
-
-
 OWN: Mapping[str, Work] = {
-    "figure before": _moving(sight.moved, -1),
-    "figure after": _moving(sight.moved, 1),
-    "zoom in": _by(_zoomed, 1),
-    "zoom out": _by(_zoomed, -1),
-    "pan left": _moving(sight.panned, -1),
-    "pan right": _moving(sight.panned, 1),
-    "first line": _moving(sight.to_end, -1),
-    "last line": _moving(sight.to_end, 1),
-    "next curve": _by(_shown, 1),
-    "curve before": _by(_shown, -1),
+    **window_keys(_moved, _zoomed, sight.moved, sight.panned, sight.to_end),
+    "next curve": stepping(_shown, 1),
+    "curve before": stepping(_shown, -1),
     "single lines": _single,
     "back": _back,
 }

@@ -11,7 +11,7 @@ from polebook.chain.said import said
 from polebook.session.state import keys_of, sheets_of
 from polebook.tui import spread_apart
 from polebook.tui.control import jobs
-from polebook.tui.control.base import Done, Work, at, done, refuse, say, to_path, told
+from polebook.tui.control.base import Done, Work, at, done, refuse, say, stepping, still, to_path, told
 from polebook.tui.spreads import (
     ALL,
     LEAST_BUILDS,
@@ -189,27 +189,19 @@ def _nothing_here(state: State, now: float) -> Done:
     return refuse(state, "a histogram has no zoom", "v shows another figure, * and / change the number of builds")
 
 
-def _still(work: Callable[[State], Done]) -> Work:
-    return lambda state, now: work(state)
-
-
-def _by(work: Callable[[State, int], Done], by: int) -> Work:
-    return lambda state, now: work(state, by)
-
-
 OWN: Mapping[str, Work] = {
-    "single lines": _still(begin),
-    "row before": _by(_row, -1),
-    "row after": _by(_row, 1),
-    "figure before": _by(_figure, -1),
-    "figure after": _by(_figure, 1),
-    "next curve": _by(_figure, 1),
-    "curve before": _by(_figure, -1),
-    "band": _still(_band),
+    "single lines": still(begin),
+    "row before": stepping(_row, -1),
+    "row after": stepping(_row, 1),
+    "figure before": stepping(_figure, -1),
+    "figure after": stepping(_figure, 1),
+    "next curve": stepping(_figure, 1),
+    "curve before": stepping(_figure, -1),
+    "band": still(_band),
     "decade up": lambda state, now: _builds(state, True),
     "decade down": lambda state, now: _builds(state, False),
-    "pan left": _by(_seed, -1),
-    "pan right": _by(_seed, 1),
+    "pan left": stepping(_seed, -1),
+    "pan right": stepping(_seed, 1),
     "zoom in": _nothing_here,
     "zoom out": _nothing_here,
 }
