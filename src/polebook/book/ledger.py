@@ -31,18 +31,26 @@ if TYPE_CHECKING:
     from polebook.book.poles import Resolved, Root
     from polebook.book.pulse import Pulse, Sag
     from polebook.circuit.bias_rails import Rails
+    from polebook.circuit.build import Circuit
 
 
 class Ledger:
     """All figures of a chain. A ledger computes what is asked, once.
 
-    built  the yield, to be handed in before targets are asked for: many chains tell it, not this one
+    built  the yield as it was handed in: many chains tell it, not this one
     """
 
-    def __init__(self, chain: Chain) -> None:
+    def __init__(self, chain: Chain, made: Circuit | None = None) -> None:
+        """`made` is the chain's circuit where it is at hand."""
         self.chain = chain
         self.built = Built()
-        self.solution = Solution(chain)
+        self.solution = Solution(chain, made)
+
+    def hand(self, built: Built) -> None:
+        """Takes the yield in; what was judged without it is judged anew."""
+        self.built = built
+        for judged in ("targets", "verdict"):
+            self.__dict__.pop(judged, None)
 
     @property
     def unstable(self) -> bool:

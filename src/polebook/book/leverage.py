@@ -64,10 +64,10 @@ class Leverage:
 
 def leverage(of: Solution, lower_hz: float | None, upper_hz: float | None, noise: Noise | None = None) -> Leverage:
     """Leverage of everything that the file states a value for; edges in Hz."""
-    partial = {"gain": _of_gain(of), "lower_edge": None, "upper_edge": None}
+    partial = {"gain": of_gain(of), "lower_edge": None, "upper_edge": None}
     for name, edge in (("lower_edge", lower_hz), ("upper_edge", upper_hz)):
         if edge is not None:
-            partial[name] = _of_edge(of, edge, partial["gain"] or {})
+            partial[name] = of_edge(of, edge, partial["gain"] or {})
     slopes = slopes_of(noise) if noise is not None else None
     partial["noise"] = None if slopes is None else slopes.elements
     result = Leverage(slopes, {index: {name: None if each is None else each.get(index, 0.0)
@@ -76,7 +76,7 @@ def leverage(of: Solution, lower_hz: float | None, upper_hz: float | None, noise
         at = owned.stage, owned.part
         result.sources[at] = result.sources.get(at, 0.0) + lever
     keys = list(_keys(of.chain))
-    rows = _through_bias(of, partial, slopes, [key[3] for key in keys])
+    rows = through_bias(of, partial, slopes, [key[3] for key in keys])
     for (kind, owner, name, path), row in zip(keys, rows, strict=True):
         if kind == "part":
             result.parts[owner, name] = row
@@ -87,7 +87,7 @@ def leverage(of: Solution, lower_hz: float | None, upper_hz: float | None, noise
     return result
 
 
-def _of_gain(of: Solution) -> dict[int, float]:
+def of_gain(of: Solution) -> dict[int, float]:
     """d ln|gain|/d ln X of every element, by part number."""
     folded, output = of.midband, of.circuit.layout.after[-1]
     adj = adjoint(folded, output)
@@ -97,7 +97,7 @@ def _of_gain(of: Solution) -> dict[int, float]:
     return found | {index: float(x / of.volts[output]) for index, x in each.items()}
 
 
-def _of_edge(of: Solution, hz: float, of_gain: dict[int, float]) -> dict[int, float] | None:
+def of_edge(of: Solution, hz: float, of_gain: dict[int, float]) -> dict[int, float] | None:
     """d ln f/d ln X of an edge at hz; None where the response is level there."""
     net = of.circuit.network
     slopes = {index: d.real for index, d in derivatives(net, hz, resistive=True).by_part.items()}
@@ -132,8 +132,8 @@ def _keys(chain: Chain) -> Iterator[tuple[str, str, str, str]]:
                 yield "card", card, path.rpartition(".")[2], path
 
 
-def _through_bias(of: Solution, partial: dict[str, dict[int, float] | None], slopes: Slopes | None,
-                  paths: list[str]) -> list[Row]:
+def through_bias(of: Solution, partial: dict[str, dict[int, float] | None], slopes: Slopes | None,
+                 paths: list[str]) -> list[Row]:
     """Leverage of each path: d(figure)/d(element) times d(element)/d(path), summed over the elements.
 
     On the noise, what the path does to its sources comes to it.

@@ -30,10 +30,11 @@ MOST_NEPER = 690.0  # a product of gains beyond e^690 has no double
 class Solution:
     """The solved chain. Raises ProblemsFound on the first look where its midband network has no solution."""
 
-    def __init__(self, chain: Chain) -> None:
+    def __init__(self, chain: Chain, made: Circuit | None = None) -> None:
+        """`made` is the chain's circuit where it is at hand."""
         self.chain = chain
         with within_reach(chain):
-            self.circuit: Circuit = circuit(chain)
+            self.circuit: Circuit = circuit(chain) if made is None else made
             self.midband: Folded = self._fold_midband()
 
     @cached_property

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from polebook.chain.model import Chain, Stage
 from polebook.circuit import bias, terminals
@@ -107,6 +107,15 @@ def built(of: Circuit, override: Mapping[str, Value]) -> tuple[list[Value], list
 def with_values(of: Circuit, override: Mapping[str, Value]) -> Network:
     """The network with some numbers of the file replaced."""
     return network(of.layout, values(of, override))
+
+
+def moved(of: Circuit, chain: Chain) -> Circuit:
+    """The circuit of `chain`, which has the parts of `of` at other values, on the topology that is laid out.
+
+    The noise sources of the layout stay as they are.
+    """
+    points = bias.solve(of.plan, chain.numbers.get)
+    return Circuit(chain, of.plan, of.layout, points, network(of.layout, values(replace(of, chain=chain), {})))
 
 
 def _problem(chain: Chain, plan: bias.Plan, stage: Stage, lack: Lack) -> Problem:

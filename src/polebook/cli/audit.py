@@ -78,9 +78,11 @@ def _built(ledger: Ledger, file: str, out: Out) -> dict[str, Any] | None:
             if (now_s := monotonic()) > next_s:
                 next_s = now_s + REPAINT_S
                 out.progress(f" {file}: {done} of {total} built (ctrl-c stops)")
-        ledger.built, row = yielded.answer(result)
+        built, row = yielded.answer(result)
+        ledger.hand(built)
     except ProblemsFound:  # the chain itself has figures: only its yield is lost
-        ledger.built, row = Built(None, "its builds can't be computed"), None
+        ledger.hand(Built(None, "its builds can't be computed"))
+        row = None
     finally:
         out.progress("")
     return row

@@ -19,7 +19,11 @@ COMMANDS = {
     "audit": "does each chain reach its targets?",
     "working": "how a figure came about: formula, numbers put in, source",
     "sweep": "put one value through a range: gain, edges, any figure",
-    "spread": "ten thousand built chains: percentiles, yield, what costs most of it",
+    "spread": "ten thousand built chains: percentiles, yield, what costs it",
+    "apportion": "values that reach the targets, for the keys that may change",
+    "compensate": "the capacitor or coil that puts the upper end of the band right",
+    "couple": "size coupling and bypass capacitors for a lower edge",
+    "stages": "how many stages: gain and bandwidth of 1 to 8 like ones",
     "start": "write a new chain that computes at once",
     "set": "change one value in a chain file",
     "unset": "take one key out of a chain file",
@@ -40,7 +44,7 @@ polebook COMMAND --help tells what a command takes. A file that is named like a
 command is reached by its path: ./show
 
 exit codes: 0 done, and every target met; 1 a target missed or not judged
-(audit); 2 a file or the command line is at fault
+(audit, apportion); 2 a file or the command line is at fault
 """
 
 

@@ -1,0 +1,20 @@
+"""Options that are quantities."""
+
+from __future__ import annotations
+
+from polebook.cli.command import Usage
+
+
+def quantity(command: str, option: str, typed: str, dimension: str) -> float:
+    """The value of an option in SI units, above zero. Raises Usage with the reason where it is none."""
+    from polebook.quantity import DIMENSIONS, Refused, parse  # deferred: --help needs no reader
+
+    try:
+        value = parse(typed, dimension)
+    except Refused as refused:
+        raise Usage(f"polebook {command}: {option}: {refused.what}", refused.fix, refused.why) from None
+    if value <= 0.0:
+        noun, example = DIMENSIONS[dimension].noun, DIMENSIONS[dimension].example
+        raise Usage(f'polebook {command}: {option}: "{typed}" is not above zero', f"write it like {option} {example}",
+                    f"it is to be {noun} above zero")
+    return value

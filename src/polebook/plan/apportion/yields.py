@@ -1,0 +1,51 @@
+"""The yield of a proposal: many built chains of the file as it is and as proposed, after the search.
+
+No plan is sought for a yield, for that would be ten thousand chains a trial; that it is judged in the end is what keeps
+a proposal for a file that asks for one from being called met, or missed, unseen.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import replace
+
+from polebook.book.asked import Built
+from polebook.book.ledger import Ledger
+from polebook.plan.proposal import Proposal, pairs
+from polebook.plan.yielded import answer, asks, built
+from polebook.problem import ProblemsFound
+
+YIELD = "yield"
+FAILED = "its builds can't be computed"
+
+
+def judging(proposal: Proposal, stop: Callable[[], bool]) -> Iterator[None]:
+    """Hands either ledger its yield, a block of builds at a time; nothing where the file asks for none."""
+    if asks(proposal.before.chain):
+        yield from _judging(proposal.before, stop)
+        if proposal.edit:
+            yield from _judging(proposal.after, stop)
+        else:
+            proposal.after.hand(proposal.before.built)
+
+
+def judged(proposal: Proposal) -> Proposal:
+    """The proposal with its targets judged once more, after `judging`."""
+    return replace(proposal, targets=pairs(proposal.before, proposal.after))
+
+
+def met_beside(proposal: Proposal) -> bool:
+    """Whether all targets are met but that one, which no plan is sought for."""
+    return all(one.after.met for one in proposal.targets if one.name != YIELD)
+
+
+def _judging(of: Ledger, stop: Callable[[], bool]) -> Iterator[None]:
+    result = None
+    try:
+        for _, _, so_far in built(of.chain, stop):
+            result = so_far
+            yield None
+    except ProblemsFound:  # the chain itself has figures: only its yield is lost
+        of.hand(Built(None, FAILED))
+    else:
+        of.hand(answer(result)[0])
