@@ -4,7 +4,7 @@ Every part that is soldered in is scaled by a factor of its own, even in its log
 meets its targets all the same is drawn again. Where one is not brought back, as many random plans as asked for are
 tried in its place: half of them anywhere within the bounds of the search, half of them about the plan that was found,
 all of them snapped as that one is, and compared by their shortfalls, 5 % added for a target that is missed at all.
-Then the same for demo chains of which too much is wanted: a gain 10 dB higher, an upper edge four times as high.
+A yield is told beside. Then the same for demo chains of which too much is wanted: a gain 10 dB higher, an upper edge four times as high.
 
 Run it: python -m tests.bench.apportion [--count 20] [--seed 1] [--random 2000]
 """
@@ -28,6 +28,7 @@ from polebook.plan.apportion.merit import merit, shortfall
 from polebook.plan.apportion.prepare import bare, prepared
 from polebook.plan.apportion.snap import nearest
 from polebook.plan.apportion.task import Task, Trial, trial
+from polebook.plan.apportion.yields import YIELD, met_beside
 from polebook.problem import ProblemsFound
 from polebook.text.rearrange import replace_all
 from tests.bench.ledger import SIX
@@ -53,7 +54,7 @@ def told(text: str, name: str) -> str:
     assert chain is not None
     try:
         of = ledger(chain)
-        missed = [target.name for target in of.targets if not target.met]
+        missed = [target.name for target in of.targets if not target.met and target.name != YIELD]
     except ProblemsFound as found:
         return found.problems[0].what
     return ", ".join(missed) if of.judged and of.solution.band.clean else "no band"
@@ -115,20 +116,24 @@ def row(number: int, path: Path, text: str, args: argparse.Namespace) -> tuple[b
     """Apportions a text and tells of it; (all met, seconds)."""
     result, wall, busy, longest = timed(Request(text, path.name))
     moved = sum(key.moved for key in result.proposal.keys)
-    print(f"{number:3} {path.stem:20} {told(text, path.name):29.29} {'met' if result.proposal.met else 'NOT'}"
+    state = "met" if result.proposal.met else "yld" if met_beside(result.proposal) else "NOT"
+    print(f"{number:3} {path.stem:20} {told(text, path.name):29.29} {state}"
           f" {moved:3} moved {result.trials:4} trials {result.starts} starts {wall:5.2f} s ({busy:5.2f} busy)"
           f" longest {longest:4.0f} ms", flush=True)
     for caution in result.proposal.cautions:
         print("      caution:", caution)
-    if not result.proposal.met:
+    if not met_beside(result.proposal):
         for target in result.proposal.targets:
             if not target.after.met:
-                print(f"      {target.name}: {target.after.want:.4g} wanted, {target.after.got:.4g} got")
+                print(f"      {target.name}: {target.after.want:.4g} wanted, {target.after.got} got")
         ways = ", ".join(f"{one.target} at {one.got:.4g}" for one in result.gives) or "no single target alone"
         own, best = at_random(text, path.name, result, args.random, args.seed)
         print(f"      the others met with: {ways}")
         print(f"      off by {own:.4f} neper; the best of {args.random} random plans {best:.4f}", flush=True)
-    return result.proposal.met, wall
+    for target in result.proposal.targets:
+        if target.name == YIELD:
+            print(f"      yield: {target.after.want:.4g} wanted, {target.after.got} got")
+    return met_beside(result.proposal), wall
 
 
 def main() -> None:

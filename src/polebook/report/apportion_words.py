@@ -40,7 +40,7 @@ def sentences(one: Entry) -> Iterator[str]:
         for target in sought:
             yield from _helping(one, target)
         if len(sought) < len(missed):
-            yield ("No plan is sought for the yield: it is told of the plan that is found. "
+            yield ("Plans with more room to every other target have not brought the yield up to what is wanted; "
                    "polebook spread says which tolerance costs most of it.")
     for note in one["notes"]:
         yield f"The file calls free what no plan can set: {note}."

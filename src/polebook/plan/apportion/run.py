@@ -23,7 +23,7 @@ from polebook.plan.apportion.result import Best, Request, Result
 from polebook.plan.apportion.snap import nearest, snap
 from polebook.plan.apportion.starts import scattered
 from polebook.plan.apportion.task import Task, Trial, trial
-from polebook.plan.apportion.yields import judged, judging, met_beside
+from polebook.plan.apportion.yields import got, judged, judging, met_beside, missed
 from polebook.plan.proposal import Proposal, propose
 from polebook.problem import Problem, ProblemsFound
 
@@ -32,6 +32,7 @@ STARTS, STARTS_TO_FAVOUR = 5, 2  # of them, from which the search is begun anew
 AGREE, ALIKE = 3, 0.01  # starts that have to come to the same merit, and how near, for no more to be begun
 LIFELESS = 300  # values that are tried where the chain has no figures as it is
 LAST_ROUNDS = 80
+ROOM = (2.0, 4.0, 8.0)  # times the room that a target is given beyond its limit, for a yield
 POLL_S = 0.02
 
 T = TypeVar("T")
@@ -83,7 +84,11 @@ class _Search:
         if self.stop():
             return self._stopped()
         if not seen or (not task.favour and not shortfall(task, today)):
-            return self._result((yield from self._judged(self._proposed(today))), today)
+            proposal = yield from self._judged(self._proposed(today))
+            if seen and missed(proposal):
+                yield from self._imported()
+                proposal, today = yield from self._roomier(proposal, today, today)
+            return self._result(proposal, today)
         yield from self._imported()
         reached = yield from self._reached(of, today, trial(task, seen.x))
         if self.stop():
@@ -104,6 +109,7 @@ class _Search:
             return self._stopped()
         proposal = yield from self._judged(self._proposed(final))
         if met_beside(proposal):
+            proposal, final = yield from self._roomier(proposal, reached.trial, final)
             return self._result(proposal, final)
         giving = yield from self._watched(gives(task, reached.trial, final))
         holding = yield from self._watched(held(task, final))
@@ -200,6 +206,22 @@ class _Search:
         for _ in judging(proposal, self.stop):
             yield self._progress()
         return judged(proposal)
+
+    def _roomier(self, proposal: Proposal, start: Trial,
+                 final: Trial) -> Generator[Progress, None, tuple[Proposal, Trial]]:
+        """Where the yield alone is missed: plans with more room to every target, which is what built ones take up."""
+        task = self.task
+        for much in ROOM:
+            if self.stop() or not missed(proposal):
+                break
+            of = merit(task, much=much)
+            start = (yield from self._watched(descend(task, of, start))).trial
+            there = yield from self._watched(snap(task, of, Reached(start, of.worth(start.rows, start.x))))
+            if shortfall(task, there) <= MISSED:
+                other = yield from self._judged(self._proposed(there))
+                if got(other) > got(proposal):
+                    proposal, final = other, there
+        return proposal, final
 
     def _proposed(self, at: Trial) -> Proposal:
         return proposed(self.request, self.task, at)

@@ -1,7 +1,7 @@
 """The yield of a proposal: many built chains of the file as it is and as proposed, after the search.
 
-No plan is sought for a yield, for that would be ten thousand chains a trial; that it is judged in the end is what keeps
-a proposal for a file that asks for one from being called met, or missed, unseen.
+The search itself does not follow a yield, for that would be ten thousand chains a trial; it is judged in the end, and
+where it alone is missed plans with more room to every other target are tried.
 """
 
 from __future__ import annotations
@@ -35,8 +35,18 @@ def judged(proposal: Proposal) -> Proposal:
 
 
 def met_beside(proposal: Proposal) -> bool:
-    """Whether all targets are met but that one, which no plan is sought for."""
+    """Whether all targets are met but that one, which the search itself does not follow."""
     return all(one.after.met for one in proposal.targets if one.name != YIELD)
+
+
+def missed(proposal: Proposal) -> bool:
+    """Whether the yield is judged, and too small."""
+    return any(one.after.met is False for one in proposal.targets if one.name == YIELD)
+
+
+def got(proposal: Proposal) -> float:
+    """The yield as proposed; 0 where it is not known."""
+    return next((one.after.got or 0.0 for one in proposal.targets if one.name == YIELD), 0.0)
 
 
 def _judging(of: Ledger, stop: Callable[[], bool]) -> Iterator[None]:
