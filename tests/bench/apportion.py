@@ -4,7 +4,8 @@ Every part that is soldered in is scaled by a factor of its own, even in its log
 meets its targets all the same is drawn again. Where one is not brought back, as many random plans as asked for are
 tried in its place: half of them anywhere within the bounds of the search, half of them about the plan that was found,
 all of them snapped as that one is, and compared by their shortfalls, 5 % added for a target that is missed at all.
-A yield is told beside. Then the same for demo chains of which too much is wanted: a gain 10 dB higher, an upper edge four times as high.
+A yield is told beside. Then the same for demo chains of which too much is wanted: a gain 10 dB higher, an upper edge
+four times as high.
 
 Run it: python -m tests.bench.apportion [--count 20] [--seed 1] [--random 2000]
 """
