@@ -18,12 +18,14 @@ from polebook.session.recovery import Kept
 from polebook.session.state import Session
 from polebook.session.watch import Look
 from polebook.text.files import Identity
+from polebook.tui.apportions import Asked
 from polebook.tui.control import asked, jobs, press, recovered, watching
 from polebook.tui.draw.screen import screen
 from polebook.tui.lines import plain_text
-from polebook.tui.view import Care, Choice, Field, Lever, Overlay, Plot, Spread, State, View
+from polebook.tui.view import Apportion, Care, Choice, Field, Lever, Overlay, Plot, Spread, State, View
 from tests.book.verdict_cases import CASES as CHAINS
 from tests.helpers import DEMOS
+from tests.tui.apportion_told import plan_of
 from tests.tui.spread_told import run_of
 
 FOLDER = Path(__file__).parent / "screens"
@@ -164,6 +166,35 @@ def begun(name: str) -> State:
     return replace(state, job=replace(state.job, done=1200, total=8000))
 
 
+def planned(name: str, *keys: str, **view: object) -> State:
+    """The page of a plan that was found, and keys pressed on it."""
+    state = at(name, "Q2.c_comp" if name == LISTENER else "Q1.rc", page="apportion", focus="page", **view)
+    run = plan_of(state.session.history.text, Asked((), "", 1))
+    state = replace(state, view=replace(state.view, apportion=Apportion(run=run)))
+    for key in keys:
+        state = press(state, key, key if len(key) == 1 else None, 0.0)[0]
+    return state
+
+
+def short_of(upper: str, *free: str) -> State:
+    """The nearest plan for an upper edge that is out of reach."""
+    session = sessions.set_value(opened(LISTENER), "target.upper", upper, 0.0)
+    run = plan_of(session.history.text, Asked(free, "", 1))
+    return State(session, key(session, free[0], page="apportion", focus="page",
+                              apportion=Apportion(frozenset(free), run=run)))
+
+
+def seeking(name: str) -> State:
+    """A plan sought, with something of it told."""
+    state = at(name, "Q1.couple", page="apportion", focus="page", apportion=Apportion(favour="upper"))
+    state = press(state, "s", "s", 0.0)[0]
+    if state.job is None:
+        raise LookupError("nothing runs")
+    state = replace(state, job=replace(state.job, done=64, total=258))
+    return state.job.takes.piece(state, {"reached": [["gain", 974.0, True], ["lower", 15100.0, True],
+                                                     ["upper", 953e3, False], ["peaking", 0.0, True]]})
+
+
 def beside() -> State:
     """The listener, edited, while another hand has put another text in its place."""
     state = pinned(LISTENER, "Q1.rc", "2k4")
@@ -251,6 +282,15 @@ CASES: dict[str, Callable[[], State]] = {
     "spread-begun": lambda: begun(PROBE),
     "spread-table": lambda: built(SIX, "V"),
     "spread-plain": lambda: replace(built(LISTENER), plain=True),
+    "apportion-empty": lambda: at(LISTENER, "Q1.couple", page="apportion", focus="page"),
+    "apportion-begun": lambda: seeking(LISTENER),
+    "apportion": lambda: planned(LISTENER),
+    "apportion-accepted": lambda: planned(LISTENER, "enter"),
+    "apportion-old": lambda: planned(LISTENER, "down", "+"),
+    "apportion-next": lambda: planned(LISTENER, "/", "v"),
+    "apportion-short": lambda: short_of("8M", "Q2.rc", "Q2.ce"),
+    "apportion-words": lambda: planned(LISTENER, "="),
+    "apportion-plain": lambda: replace(planned(LISTENER), plain=True),
     "field": lambda: field("Q2.ce", "4u7"),
     "field-refused": lambda: field("Q2.ce", "4 kohm", REFUSED),
     "sheet-target": lambda: at(LISTENER, "target.upper"),

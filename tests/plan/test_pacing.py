@@ -21,6 +21,8 @@ def test_builds_that_need_a_ledger_each_come_in_small_blocks_that_change_nothing
     request = Request(wild, costs=False, figures=("gain_db",))
     paced, builds = pacing.paced(request)
     assert (paced.block, builds) == (pacing.FEW, pacing.FEW)
+    few, same = pacing.paced(request, at_once=8)
+    assert (few.block, same) == (8, builds)
     small = Request(wild, 12, costs=False, figures=("gain_db",), workers=1)
     whole = [result for *_, result in spread(small)][-1].columns["gain_db"].tolist()
     parts = [result for *_, result in spread(Request(wild, 12, costs=False, figures=("gain_db",), workers=1, block=5))]

@@ -17,6 +17,7 @@ from tests.book.verdict_cases import CASES
 from tests.fuzz_files import spoilt
 from tests.helpers import DEMOS
 from tests.session.random_edits import attempt, random_edit
+from tests.tui.apportion_told import random_apportion
 from tests.tui.spread_told import random_spread
 
 WORDS = ("", "Q1", "4k7", "a b c", "üΩ漢字 wide", "\x1b[31mred", "x" * 200, "two\nlines\n\n", "\u202eback", "e\u0301")
@@ -54,6 +55,8 @@ def random_view(rng: random.Random, session: Session) -> View:
         view = replace(view, step=random_times(rng), sag=random_times(rng), noise=random_plot(rng))
     if view.page == "spread":
         view = replace(view, spread=random_spread(rng, session.chain, WORDS))
+    if view.page == "apportion":
+        view = replace(view, apportion=random_apportion(rng, session, WORDS))
     if rng.random() < 0.25:
         return replace(view, writing=random_writing(rng, session))
     if rng.random() < 0.3:

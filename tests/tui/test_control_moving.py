@@ -44,15 +44,15 @@ def test_pages_by_digit_only_with_the_page_focused(desk):
     assert desk.view.page == "ledger"
     for digit, name in (("3", "response"), ("7", "leverage"), ("2", "nodes")):
         assert desk.press(digit).view.page == name
-    assert "there is no page 9: the pages are 1 ledger, 2 nodes, 3 response" in desk.press("9").view.message
+    assert "there is no page 0: the pages are 1 ledger, 2 nodes, 3 response" in desk.press("0").view.message
     assert (desk.view.bad, desk.view.page) == (True, "nodes")
 
 
 def test_pages_by_page_keys_from_either_focus(desk):
-    seen = [desk.press("pagedown").view.page for _ in range(8)]
-    assert seen == ["nodes", "response", "pulse", "noise", "levels", "leverage", "spread", "spread"]
-    seen = [desk.press("tab", "pageup").view.page for _ in range(8)]
-    assert seen == ["leverage", "levels", "noise", "pulse", "response", "nodes", "ledger", "ledger"]
+    seen = [desk.press("pagedown").view.page for _ in range(9)]
+    assert seen == ["nodes", "response", "pulse", "noise", "levels", "leverage", "spread", "apportion", "apportion"]
+    seen = [desk.press("tab", "pageup").view.page for _ in range(9)]
+    assert seen == ["spread", "leverage", "levels", "noise", "pulse", "response", "nodes", "ledger", "ledger"]
 
 
 def test_rows_of_the_ledger_are_its_lines(desk):

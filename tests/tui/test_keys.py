@@ -25,7 +25,7 @@ def test_every_key_of_the_design_does_what_it_says():
 
 
 def test_no_key_of_a_page_that_is_not_there():
-    assert not {"9", "0"} & set(keys.ACTIONS)
+    assert "0" not in keys.ACTIONS
     assert list(keys.PAGES.values()) == list(pages.PAGES) and list(keys.PAGES) == sorted(keys.PAGES)
 
 

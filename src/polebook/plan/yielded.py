@@ -9,7 +9,7 @@ from typing import Any
 from polebook.book.asked import Built
 from polebook.book.reach import within_reach
 from polebook.chain.model import Chain
-from polebook.plan.pacing import paced
+from polebook.plan.pacing import FEW, paced
 from polebook.plan.spread.figures import figures
 from polebook.plan.spread.judge import ALL, judged
 from polebook.plan.spread.model import BUILDS, SEED, Request, Result
@@ -24,19 +24,22 @@ def asks(chain: Chain) -> bool:
     return "target.yield" in chain.given
 
 
-def built(chain: Chain, stop: Callable[[], bool] = lambda: False) -> Iterator[tuple[int, int, Result | None]]:
+def built(chain: Chain, stop: Callable[[], bool] = lambda: False, block: int = 0,
+          at_once: int = FEW) -> Iterator[tuple[int, int, Result | None]]:
     """(done, total, result so far) of as many builds as a spread makes unasked, so that the two agree to the digit.
 
     Fewer where they have to be judged one by one, for an audit is not to take minutes. One process, only the figures
     that targets are judged by, and no costs. The result is None where there is no such target, and nothing is
     computed. Raises ProblemsFound where the chain has no ledger.
+    block, at_once  builds in a piece at the most (0: as a spread has it), and those of them that are judged one by one
     """
     names = tuple(figure.name for figure in judged(chain, figures(chain)).values())
     if not names:
         yield 0, 0, None
         return
     with within_reach(chain):
-        request, builds = paced(Request(chain, BUILDS, SEED, figures=names, costs=False, workers=1), stop)
+        whole = Request(chain, BUILDS, SEED, figures=names, costs=False, workers=1)
+        request, builds = paced(replace(whole, block=block) if block else whole, stop, at_once)
         yield from spread(replace(request, builds=builds), stop)
 
 

@@ -25,9 +25,18 @@ _FIGURES = (
 
 
 def apportion_text(answer: Document, look: Look) -> str:
-    """The keys that move, the targets and the other figures, today and as proposed, and what there is to say."""
+    """A plan, and what has become of the file."""
     one = answer["files"][0]
-    lines = [" " + look.paint(look.text(one["file"]), "head"), *paragraph(words.head(one), look), ""]
+    lines = [" " + look.paint(look.text(one["file"]), "head"), *plan_lines(one, look)]
+    text, style = words.ending(one)
+    if lines[-1]:
+        lines.append("")
+    return "\n".join([*lines, *paragraph(text, look, style)]) + "\n"
+
+
+def plan_lines(one: Entry, look: Look) -> list[str]:
+    """The keys that move, the targets and the other figures, today and as proposed, and what there is to say."""
+    lines = [*paragraph(words.head(one), look), ""]
     if rows := list(_keys(one)):
         lines += [*_table("key today proposed +", rows, look), *paragraph(words.still(one), look, "dim"), ""]
     if rows := list(_targets(one)):
@@ -40,10 +49,7 @@ def apportion_text(answer: Document, look: Look) -> str:
         lines += paragraph(unparted(f"caution: {caution}"), look, "warn", hang=3)
     for caution in one["mended"]:
         lines += paragraph(unparted(f"mended: {caution}"), look, hang=3)
-    text, style = words.ending(one)
-    if lines[-1]:
-        lines.append("")
-    return "\n".join([*lines, *paragraph(text, look, style)]) + "\n"
+    return lines
 
 
 def _table(names: str, rows: list[Row], look: Look) -> list[str]:
@@ -55,10 +61,10 @@ def _table(names: str, rows: list[Row], look: Look) -> list[str]:
 def _keys(one: Entry) -> Iterator[Row]:
     for key in one["keys"]:
         if key["moved"]:
-            yield [key["path"], key["now_text"] or show.NONE, Cell(key["text"] or show.NONE, "head"), _way(key)]
+            yield [key["path"], key["now_text"] or show.NONE, Cell(key["text"] or show.NONE, "head"), way(key)]
 
 
-def _way(key: Entry) -> str:
+def way(key: Entry) -> str:
     """How far a key moves: in per cent, or as a factor."""
     now, value = key["now"], key["value"]
     if not value:
@@ -79,15 +85,20 @@ def _targets(one: Entry) -> Iterator[Row]:
 
 
 def _figures(one: Entry) -> Iterator[Row]:
-    """The figures of the whole chain that no target tells, where they show a change."""
+    for name, unit, before, after in other_figures(one):
+        yield [name, show.by_unit(before, unit), show.by_unit(after, unit)]
+
+
+def other_figures(one: Entry) -> Iterator[tuple[str, str, float | None, float | None]]:
+    """(words, unit, today, as proposed) of the whole chain's figures that no target tells, where they show a change."""
     before, after = one["overall"]["before"], one["overall"]["after"]
     unit_in = "V" if after["gain_unit"] == "V/V" else "A"
-    units = {"noise": f"{unit_in}/√Hz", "source": unit_in}
+    units = {"noise": f"{unit_in}/√Hz", "source": unit_in, "%": "share"}
     told = {target["name"] for target in one["targets"]}
     for key, name, unit, target in _FIGURES:
         unit = units.get(unit, unit)
         if target not in told:
-            texts = [show.share(None if side[key] is None else side[key] / 100) if unit == "%"
-                     else show.by_unit(side[key], unit) for side in (before, after)]
-            if texts[0] != texts[1]:
-                yield [name, *texts]
+            old, new = (side[key] / 100 if unit == "share" and side[key] is not None else side[key]
+                        for side in (before, after))
+            if show.by_unit(old, unit) != show.by_unit(new, unit):
+                yield name, unit, old, new

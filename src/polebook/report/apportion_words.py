@@ -30,8 +30,8 @@ def still(one: Entry) -> str:
     return f"{count} more {'stays' if count == 1 else 'stay'} as the file has {'it' if count == 1 else 'them'}"
 
 
-def sentences(one: Entry) -> Iterator[str]:
-    """What keeps a plan from its targets, and what it would take."""
+def sentences(one: Entry, spread: str = "polebook spread") -> Iterator[str]:
+    """What keeps a plan from its targets, and what it would take; `spread` tells where built chains are made."""
     missed = [target for target in one["targets"] if target["after"]["met"] is False]
     if missed and not one["stopped"]:
         sought = [target for target in missed if target["name"] != _YIELD]
@@ -41,7 +41,7 @@ def sentences(one: Entry) -> Iterator[str]:
             yield from _helping(one, target)
         if len(sought) < len(missed):
             yield ("Plans with more room to every other target have not brought the yield up to what is wanted; "
-                   "polebook spread says which tolerance costs most of it.")
+                   f"{spread} says which tolerance costs most of it.")
     for note in one["notes"]:
         yield f"The file calls free what no plan can set: {note}."
     for target in one["targets"]:
@@ -78,20 +78,32 @@ def _helping(one: Entry, target: Entry) -> Iterator[str]:
         yield f"Not free, and would better {name}: {', '.join(parts)}."
 
 
+def verdict(one: Entry) -> tuple[str, str]:
+    """(whether the targets are met, and that nothing moves where that is so; style)."""
+    short = sum(target["after"]["met"] is not True for target in one["targets"])
+    told = "all targets are met" if not short else f"{short} of {len(one['targets'])} targets not met"
+    if not one["targets"]:
+        told = "the file states no targets"
+    style = "good" if not short else "bad"
+    if one["stopped"] or moved(one):
+        return told, style
+    same = "nothing better is found" if short or one["favour"] else "nothing has to change"
+    return f"{told} as the file is, {same}" if not short else f"{told}: {same}", style
+
+
+def moved(one: Entry) -> str:
+    """How many values move: "3 values"; "" for none."""
+    count = sum(key["moved"] for key in one["keys"])
+    return f"{count} value{'s' * (count != 1)}" if count else ""
+
+
 def ending(one: Entry) -> tuple[str, str]:
     """(what has become of the file, style)."""
-    moved = sum(key["moved"] for key in one["keys"])
-    short = sum(target["after"]["met"] is not True for target in one["targets"])
-    verdict = "all targets are met" if not short else f"{short} of {len(one['targets'])} targets not met"
-    if not one["targets"]:
-        verdict = "the file states no targets"
-    style = "good" if not short else "bad"
+    told, style = verdict(one)
     if one["stopped"]:
-        return f"stopped: the best so far, {verdict}; the file is as it was", "warn"
-    if not moved:
-        same = "nothing better is found" if short or one["favour"] else "nothing has to change"
-        return f"{verdict} as the file is, {same}" if not short else f"{verdict}: {same}", style
-    values = f"{moved} value{'s' * (moved != 1)}"
+        return f"stopped: the best so far, {told}; the file is as it was", "warn"
+    if not (values := moved(one)):
+        return told, style
     if one["written"]:
-        return f"{verdict}; {values} written into {one['file']}", style
-    return f"{verdict}; the file is as it was, --write puts {values} into it", style
+        return f"{told}; {values} written into {one['file']}", style
+    return f"{told}; the file is as it was, --write puts {values} into it", style

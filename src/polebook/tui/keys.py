@@ -8,7 +8,7 @@ from textwrap import wrap
 from types import MappingProxyType
 
 PAGES = {"1": "ledger", "2": "nodes", "3": "response", "4": "pulse", "5": "noise", "6": "levels", "7": "leverage",
-         "8": "spread"}
+         "8": "spread", "9": "apportion"}
 """Digit -> page, of the pages that there are."""
 
 
@@ -46,14 +46,14 @@ KEYS: tuple[Key, ...] = (
         "with the page focused: figure before, after in the row; cursor of a plot", MOVING),
     Key(("z", "Z"), ("zoom in", "zoom out"), ("z", "Z"), "zoom", "zoom a plot in, out", MOVING),
     Key(("[", "]"), ("pan left", "pan right"), ("[", "]"), "pan",
-        "pan a plot left, right; spread: another seed", MOVING),
+        "pan a plot left, right; spread, apportion: another seed", MOVING),
     Key(("v", "V"), ("next curve", "curve before"), ("v", "V"), "curves",
         "what the page shows: next, before (response: gain, delay, impedances; pulse: step, sag; noise: at the input, "
-        "the output; leverage: the figure that ranks; spread: figures)",
+        "the output; leverage: the figure that ranks; spread: figures; apportion: what is favoured)",
         MOVING),
     Key(("s",), ("single lines",), ("s",), "single lines",
         "the curve of the selected line, on and off; noise: ranked line by line, part by part; of a sweep: one more "
-        "figure; spread: run it, again", MOVING),
+        "figure; spread, apportion: run it, again", MOVING),
     Key(("tab", "shift+tab"), ("focus",), ("Tab",), "sheet, page", "sheet, page; in a field: accept and next key",
         MOVING),
     Key(("escape",), ("back",), ("Esc",), "back", "leave the field, close, back to the ledger", MOVING),
@@ -62,7 +62,9 @@ KEYS: tuple[Key, ...] = (
     Key(("+", "-"), ("step up", "step down"), ("+", "-"), "step",
         "next value of the series up, down; other values by 5 %", VALUES),
     Key(("*", "/"), ("decade up", "decade down"), ("*", "/"), "decade",
-        "a decade up, down; spread, page focused: builds", VALUES),
+        "a decade up, down; page focused: spread: builds; apportion: all keys, those of the stage", VALUES),
+    Key((" ",), ("choose",), ("Space",), "choose",
+        "apportion: the key of the row, or of the sheet, may change; again: it stays", VALUES),
     Key(("delete", "backspace"), ("take out",), ("Del",), "take out",
         "take the key out of the file: its default counts", VALUES),
     Key(("t",), ("sheets",), ("t",), "more sheets",
@@ -81,7 +83,8 @@ KEYS: tuple[Key, ...] = (
     Key(("q", "ctrl+q", "ctrl+c"), ("leave",), ("q",), "leave", "leave; asks only where work is unsaved", FILE),
     Key(("ctrl+z",), ("suspend",), ("ctrl+z",), "suspend", "suspend, back to the shell; fg returns", FILE),
     Key(("p",), ("pin",), ("p",), "pin", "pin today's figures as the baseline; again: unpin", LOOKING),
-    Key(("=",), ("working",), ("=",), "working", "working of the focused figure", LOOKING),
+    Key(("=",), ("working",), ("=",), "working", "working of the focused figure; apportion: the plan in words",
+        LOOKING),
     Key(("g",), ("decibels",), ("g",), "V/V, dB", "gains in V/V or dB", LOOKING),
     Key(("b",), ("band",), ("b",), "band", "lower or upper end of the band", LOOKING),
     Key(("!",), ("cautions",), ("!",), "cautions", "cautions and problems", LOOKING),
@@ -174,16 +177,18 @@ _IN_SEARCH: tuple[Hint, ...] = (("type", "to find"), ("Enter", "next"), ("↑", 
 _OVERLAYS = {"help": _IN_TEXT, "working": _IN_TEXT, "cautions": _IN_ROWS, "leave": _IN_LEAVE, "note": _IN_NOTE,
              "rename": _IN_NAME, "take": _IN_NAME, "start": _IN_FORM, "new": _IN_NEW,
              "changed": _IN_CHANGED, "recovered": _IN_CHANGED, "difference": _IN_DIFFERENCE}
+_DIGITS = f"1 … {max(PAGES)}"
 _SHEET = ("Enter", "+ -", "Tab", "=", "u U", "w", "?")
 _ON_PAGE = {
-    "ledger": ("1 … 8", "Enter", ", .", "Tab", "=", "?"),
-    "nodes": ("1 … 8", "Enter", ", .", "Tab", "=", "?"),
-    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", "1 … 8", "Tab", "?"),
-    "pulse": (", .", "z Z", "↑ ↓", "Enter", "b", "=", "[ ]", "1 … 8", "Tab", "?"),
-    "levels": (", .", "Enter", "b", "=", "1 … 8", "Tab", "?"),
-    "noise": (", .", "↑ ↓", "Enter", "s", "v V", "=", "z Z", "[ ]", "1 … 8", "Tab", "?"),
-    "leverage": ("Enter", "v V", "b", "=", "1 … 8", "Tab", "?"),
-    "spread": ("Enter", "s", "v V", "* /", "[ ]", "1 … 8", "Tab", "?"),
+    "ledger": (_DIGITS, "Enter", ", .", "Tab", "=", "?"),
+    "nodes": (_DIGITS, "Enter", ", .", "Tab", "=", "?"),
+    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", _DIGITS, "Tab", "?"),
+    "pulse": (", .", "z Z", "↑ ↓", "Enter", "b", "=", "[ ]", _DIGITS, "Tab", "?"),
+    "levels": (", .", "Enter", "b", "=", _DIGITS, "Tab", "?"),
+    "noise": (", .", "↑ ↓", "Enter", "s", "v V", "=", "z Z", "[ ]", _DIGITS, "Tab", "?"),
+    "leverage": ("Enter", "v V", "b", "=", _DIGITS, "Tab", "?"),
+    "spread": ("Enter", "s", "v V", "* /", "[ ]", _DIGITS, "Tab", "?"),
+    "apportion": ("Enter", "Space", "v V", "* /", "s", "[ ]", _DIGITS, "Tab", "?"),
 }
 
 
@@ -217,7 +222,9 @@ _WORDS = {("sheet", "Tab"): "page", ("page", "Tab"): "sheet", ("page", "Enter"):
           ("noise", ", ."): "cursor", ("noise", "v V"): "in, out", ("noise", "s"): "by line",
           ("leverage", "Enter"): "sweep it", ("leverage", "v V"): "rank by",
           ("spread", "s"): "run again", ("spread", "v V"): "figure",
-          ("spread", "* /"): "builds", ("spread", "[ ]"): "seed"}
+          ("spread", "* /"): "builds", ("spread", "[ ]"): "seed",
+          ("apportion", "s"): "run", ("apportion", "v V"): "favour", ("apportion", "* /"): "all, stage",
+          ("apportion", "[ ]"): "seed", ("apportion", "Enter"): "run, accept"}
 
 
 def table() -> list[str]:

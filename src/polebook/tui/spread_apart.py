@@ -3,10 +3,10 @@
 from __future__ import annotations
 
 import atexit
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from contextlib import suppress
 from queue import Empty, SimpleQueue
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING, Any, TypeVar
 
 from polebook.chain.model import Chain
 from polebook.plan.process import Process, portable
@@ -19,6 +19,7 @@ PROGRAM = "from polebook.tui.spread_work import serve; serve()"
 WAIT_S = 0.004  # that a step waits for news: keys come between
 BLOCK = 256  # builds at a time where there is no other process
 
+T = TypeVar("T", bound="Apart")
 _idle: list[Apart] = []  # one at the most: a program that is there answers half a second sooner
 _living: set[Apart] = set()
 
@@ -26,9 +27,9 @@ _living: set[Apart] = set()
 class Apart(Process):
     """Such a process, with nothing to do yet. Raises OSError where there is no room for one."""
 
-    def __init__(self) -> None:
+    def __init__(self, program: str = PROGRAM) -> None:
         self._news: SimpleQueue[tuple[str, Any]] = SimpleQueue()
-        super().__init__(PROGRAM)
+        super().__init__(program)
         _living.add(self)
 
     def ask(self, chain: Chain, builds: int, seed: int) -> None:
@@ -47,6 +48,11 @@ class Apart(Process):
             return self._news.get(timeout=WAIT_S)
         return None
 
+    @property
+    def there(self) -> bool:
+        """Whether it has not been ended."""
+        return self in _living
+
     def end(self) -> None:
         """Ends the process, whatever it does."""
         _living.discard(self)
@@ -62,11 +68,21 @@ def spread(chain: Chain, builds: int, seed: int) -> Iterator[Step]:
 
         yield from steps(chain, builds, seed, block=BLOCK)
         return
-    last: Step = (0, 0, None)
+    yield from answered(worker, _idle, lambda: worker.ask(chain, builds, seed))
+
+
+def answered(worker: T, idle: list[T], ask: Callable[[], None], meanwhile: Callable[[], None] = lambda: None,
+             ) -> Iterator[tuple[int, int, Any]]:
+    """The steps that a process answers what it is asked by, (done, total, None) where nothing has come.
+
+    idle  where it waits for the next one;  meanwhile  is called between them
+    """
+    last: tuple[int, int, Any] = (0, 0, None)
     free = False
     try:
-        worker.ask(chain, builds, seed)
+        ask()
         while not free:
+            meanwhile()
             news = worker.news()
             if news is None:
                 yield last
@@ -84,8 +100,8 @@ def spread(chain: Chain, builds: int, seed: int) -> Iterator[Step]:
                 last = (what[0], what[1], None)
                 yield what
     finally:
-        if free and not _idle:
-            _idle.append(worker)
+        if free and not idle:
+            idle.append(worker)
         else:
             worker.end()
 

@@ -7,12 +7,12 @@ import pickle
 import signal
 import sys
 import traceback
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from math import log10
 from queue import SimpleQueue
 from threading import Thread
 from time import perf_counter
-from typing import IO
+from typing import IO, Any
 
 from polebook.book.reach import within_reach
 from polebook.book.targets import LESS_IS_BETTER, TOLERANCE_DB
@@ -123,13 +123,19 @@ def _label(draw: Draw) -> str:
 
 
 def serve() -> None:
+    """Spreads, as they are asked for."""
+    with Crew() as crew:
+        attend(lambda target, asked: tell(target, _asked(asked.get(), crew)))
+
+
+def attend(answer: Callable[[IO[bytes], SimpleQueue[Any]], None]) -> None:
     """Takes what is asked from standard input, answers on standard output, and ends at once with the one who asks."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)  # ctrl-c is for the one who asks
     if hasattr(os, "nice"):
         os.nice(NICE)  # keys come first where there are fewer cores than work
     source, target = sys.stdin.buffer, sys.stdout.buffer
     sys.stdout = sys.stderr
-    asked: SimpleQueue[tuple[Chain, int, int]] = SimpleQueue()
+    asked: SimpleQueue[Any] = SimpleQueue()
 
     def listen() -> None:
         try:
@@ -139,15 +145,20 @@ def serve() -> None:
             os._exit(0)  # whatever is being computed: nobody is left to read it
 
     Thread(target=listen, daemon=True).start()
-    with Crew() as crew:
-        while True:
-            _answer(target, *asked.get(), crew)
+    while True:
+        answer(target, asked)
 
 
-def _answer(target: IO[bytes], chain: Chain, builds: int, seed: int, crew: Crew) -> None:
+def _asked(what: tuple[Chain, int, int], crew: Crew) -> Iterator[Step]:
+    chain, builds, seed = what
+    worth = builds * (len(chain.stages) + 2) >= LONG
+    yield from steps(chain, builds, seed, crew, max(cores() - 1, 1) if worth else 1)  # a core is for the keys
+
+
+def tell(target: IO[bytes], work: Iterator[Any]) -> None:
+    """Sends the steps of some work, and how it ended."""
     try:
-        worth = builds * (len(chain.stages) + 2) >= LONG
-        for step in steps(chain, builds, seed, crew, max(cores() - 1, 1) if worth else 1):  # a core is for the keys
+        for step in work:
             send(target, ("step", step))
         send(target, ("end", None))
     except ProblemsFound as found:

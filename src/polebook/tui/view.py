@@ -16,9 +16,11 @@ if TYPE_CHECKING:
     from polebook.plan.sweep import Point
     from polebook.session.recovery import Kept
     from polebook.session.watch import Look
+    from polebook.tui.apportions import Going
+    from polebook.tui.apportions import Run as Plan
     from polebook.tui.spreads import Run
 
-Page = Literal["ledger", "nodes", "response", "pulse", "noise", "levels", "leverage", "spread"]
+Page = Literal["ledger", "nodes", "response", "pulse", "noise", "levels", "leverage", "spread", "apportion"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -139,6 +141,25 @@ class Spread:
 
 
 @dataclass(frozen=True, slots=True)
+class Apportion:
+    """Where the user is on the apportion page.
+
+    chosen  paths of the keys that may change, None: as the file has it;  also  paths beside those that it offers
+    favour  a target's name, "" for none, and seed: of the next run
+    row     path of the chosen row, "" for the first
+    going   the run at work;  run  the plan that is shown
+    """
+
+    chosen: frozenset[str] | None = None
+    also: tuple[str, ...] = ()
+    favour: str = ""
+    seed: int = 1
+    row: str = ""
+    going: Going | None = None
+    run: Plan | None = None
+
+
+@dataclass(frozen=True, slots=True)
 class Writing:
     """The file as text while it is being edited: its own undo, the cursor in it, and what it comes to.
 
@@ -180,6 +201,7 @@ class Job:
     page   where it is watched; Esc stops it there
     work   yields (done, total, piece), one piece in some milliseconds; what has faults raises ProblemsFound
     rest   seconds that it waits before it begins
+    halt   asks it to come to its end with what there is, None where it is given up as it is;  halting  it was asked
     """
 
     name: str
@@ -189,6 +211,8 @@ class Job:
     done: int = 0
     total: int = 0
     rest: float = 0.0
+    halt: Callable[[], None] | None = None
+    halting: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -227,6 +251,7 @@ class View:
     lever: Lever = Lever()
     bank: Literal["plan", "levels"] = "plan"  # of the levels page
     spread: Spread = Spread()
+    apportion: Apportion = Apportion()
     writing: Writing | None = None  # the text page is open
 
 

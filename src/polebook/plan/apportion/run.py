@@ -102,6 +102,8 @@ class _Search:
             reached = yield from self._watched(descend(task, cautious, reached.trial))
             again = yield from self._watched(snap(task, cautious, reached))
             final = min(final, again, key=lambda one: shortfall(task, one))
+        if not final.lives:
+            final = yield from self._bought(of, final)
         if today.lives and of.settled(today) <= of.settled(final):
             final = today
         self.best = final
@@ -110,6 +112,8 @@ class _Search:
         proposal = yield from self._judged(self._proposed(final))
         if met_beside(proposal):
             proposal, final = yield from self._roomier(proposal, reached.trial, final)
+            return self._result(proposal, final)
+        if not final.lives:
             return self._result(proposal, final)
         giving = yield from self._watched(gives(task, reached.trial, final))
         holding = yield from self._watched(held(task, final))
@@ -161,6 +165,23 @@ class _Search:
             return not self.task.favour or (last and self.starts > STARTS_TO_FAVOUR)
         best = sorted(one.worth for one in found)[:AGREE]
         return len(best) == AGREE and best[-1] - best[0] < ALIKE * abs(best[0])
+
+    def _bought(self, of: Merit, final: Trial) -> Generator[Progress, None, Trial]:
+        """The best that scattered values lead to which have figures at the nearest ones that can be bought, where the
+        plan has none there; `final` where no others have."""
+        task, best = self.task, final
+        for x in scattered(task, LIFELESS, self.request.seed):
+            there = trial(task, x)
+            near = trial(task, *nearest(task, there)) if there.lives else there
+            yield self._progress()
+            if self.stop():
+                break
+            if near.lives and (not best.lives or of.settled(near) < of.settled(best)):
+                best = near
+        if not best.lives:
+            return final
+        there = yield from self._watched(snap(task, of, Reached(best, of.worth(best.rows, best.x))))
+        return there if there.lives else best
 
     def _from(self, of: Merit, start: Trial) -> Generator[Progress, None, Reached]:
         self.starts += 1

@@ -17,6 +17,7 @@ from polebook.problem import ProblemsFound
 
 YIELD = "yield"
 FAILED = "its builds can't be computed"
+BLOCK, ALONE = 512, 8  # builds in a piece of the work, and those of them that need a ledger each: some tens of ms
 
 
 def judging(proposal: Proposal, stop: Callable[[], bool]) -> Iterator[None]:
@@ -52,7 +53,7 @@ def got(proposal: Proposal) -> float:
 def _judging(of: Ledger, stop: Callable[[], bool]) -> Iterator[None]:
     result = None
     try:
-        for _, _, so_far in built(of.chain, stop):
+        for _, _, so_far in built(of.chain, stop, BLOCK, ALONE):
             result = so_far
             yield None
     except ProblemsFound:  # the chain itself has figures: only its yield is lost

@@ -12,6 +12,7 @@ from polebook.problem import Problem, ProblemsFound, printable
 from polebook.quantity import DIMENSIONS
 from polebook.report.figures import signed
 from polebook.session.state import KeyRow, Session, keys_of, sheets_of
+from polebook.tui.apportions import followed
 from polebook.tui.view import State
 
 
@@ -142,7 +143,7 @@ def changed(state: State, session: Session, said: str = "", go: str = "") -> Sta
     names = lines(session)
     place = names.index(name) if name in names else min(state.view.line, len(names) - 1)
     shown = state.view.sheet if state.view.sheet in sheets_of(session) else ""
-    after = at(after, line=place, sheet=shown)
+    after = at(after, line=place, sheet=shown, apportion=followed(after.view.apportion, before, session))
     if go:
         after = to_path(after, go)
     found = [row.key for row in rows(after)]

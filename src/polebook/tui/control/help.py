@@ -123,6 +123,17 @@ _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
         ("worst, of it", "the end at which the worst corner has it; its share of what the figure varies, by leverage"),
         ("v", "another figure, at last the table of all; Enter goes to the key of the row"),
     ),
+    "apportion": (
+        ("a plan", "values for the keys that may change, which reach the targets: few moved, and little, bought from "
+         "the file's series; s or Enter looks for one, Esc stops with the best so far"),
+        ("\u25cf \u00b7", "the key may change; it stays. Space changes that, / for its stage, * for all; at first what "
+         "the file calls free, else every part that is fitted. Space on the sheet adds its key"),
+        ("favoured", "v: the figure of which the most is made once all targets are met"),
+        ("proposed", "where the plan puts the key, and how far that is; what the chain's figures would be"),
+        ("Enter", "takes the plan in as one edit, which u takes back; after an edit it is an old one: s runs it again"),
+        ("=", "the plan in words: what keeps it from a target, which target would have to give, what would help"),
+        ("[ ]", "another seed: other values to begin at, beside today's"),
+    ),
 }
 
 

@@ -43,6 +43,15 @@ def stopped(state: State) -> State:
     return state if state.job is None else _ended(state, state.job, whole=False)
 
 
+def halted(state: State) -> State:
+    """The state with its job asked to come to its end, where that can be; else, and when asked again, given up."""
+    job = state.job
+    if job is None or job.halt is None or job.halting:
+        return stopped(state)
+    job.halt()
+    return replace(state, job=replace(job, halting=True))
+
+
 def watched(state: State) -> Job | None:
     """The job whose page is in sight: the one that Esc stops."""
     return state.job if state.job is not None and state.job.page == state.view.page else None

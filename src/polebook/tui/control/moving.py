@@ -74,7 +74,7 @@ def back(state: State) -> Done:
     """One step back: what runs stopped; to the line's own sheet, to the ledger, to the sheet."""
     view = state.view
     if jobs.watched(state) is not None:
-        return done(jobs.stopped(state))
+        return done(jobs.halted(state))
     if view.sheet:
         return done(to_sheet(state, line(state)))
     if view.page != "ledger":
@@ -85,6 +85,11 @@ def back(state: State) -> Done:
 def act_on_page(state: State) -> Done:
     """Enter on a row of the page: the key that makes it, else the line's sheet."""
     return pages.ways(state).act(state)
+
+
+def no_choice(state: State) -> Done:
+    """A key of the page that chooses what may change, on another page."""
+    return refuse(state, "keys are chosen for a plan", "9 is its page")
 
 
 def no_plot(state: State) -> Done:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 
-from polebook.tui.control import levels, leverage, noise, pulse, response, spread
+from polebook.tui.control import apportion, levels, leverage, noise, pulse, response, spread
 from polebook.tui.control.base import Done, Work, at, done, to_path
 from polebook.tui.control.figures import parts_of
 from polebook.tui.view import Page, State
@@ -49,6 +49,7 @@ PAGES: Mapping[Page, Ways] = {
     "levels": Ways(None, levels.act, levels.OWN, frozenset({"band"})),
     "leverage": Ways(leverage.rows, _to_sheet, leverage.OWN),
     "spread": Ways(spread.rows, spread.act, spread.OWN),
+    "apportion": Ways(apportion.rows, _to_sheet, apportion.OWN, frozenset({"choose"})),
 }
 
 

@@ -154,6 +154,7 @@ _WORK: Mapping[str, Work] = {
     "leave out": stages.leave_out,
     "note": still(notes.edit),
     "text": still(writing.edit),
+    "choose": still(moving.no_choice),
     **dict.fromkeys(sorted(pages.PLOT), still(moving.no_plot)),
     "undo": stages.back,
     "redo": stages.forth,

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
-from polebook.tui.draw import ledger, levels, leverage, nodes, noise, pulse, response, spread
+from polebook.tui.draw import apportion, ledger, levels, leverage, nodes, noise, pulse, response, spread
 from polebook.tui.draw.scene import Scene
 from polebook.tui.keys import Hint
 from polebook.tui.lines import Line
@@ -51,6 +51,8 @@ PAGES: Mapping[Page, Drawn] = {
                       hints=leverage.hints),
     "spread": Drawn(spread.page, spread.figures, lambda scene: spread.WANT, 12, lambda scene, rows: rows, 2,
                     spread.hints),
+    "apportion": Drawn(apportion.page, lambda scene: (), lambda scene: apportion.WANT, apportion.DECENT,
+                       lambda scene, rows: rows, 2, apportion.hints),
 }
 
 
