@@ -97,10 +97,12 @@ def control_to_lower(card: Card, sign: int, current: Any, across: Any) -> Any:
             return None
         return sign * (card.get("vgs_th") + mp.sqrt(2 * current / k))
     if card.family == "jfet":
-        if "idss" not in card.numbers or not ("vgs_off" in card.numbers or "gm_id" in card.numbers):
+        if {"vgs_off", "gm"} <= set(card.numbers) and "idss" not in card.numbers:
+            return sign * (2 * mp.sqrt(current * card.get("gm_id", current)) / card.get("gm") - card.get("vgs_off"))
+        if "idss" not in card.numbers or not {"vgs_off", "gm"} & set(card.numbers):
             return None
-        return sign * card.pinch_off() * (mp.sqrt(current / card.get("idss")) - 1)
-    p = card.perveance()
+        return sign * card.pinch_off(current) * (mp.sqrt(current / card.get("idss")) - 1)
+    p = card.perveance(current)
     if p is None or across is None:
         return None
     return (current / p) ** (mp.mpf(2) / 3) - across / card.mu()
@@ -155,7 +157,7 @@ class DirectNetwork:
         if kind in DEVICE_KINDS:
             return self._device(stage, a)
         if kind == "ladder":
-            return self._ladder(stage, before)
+            return self._ladder(stage, a)
         middle = (self.fixed["positive"] + self.fixed["negative"]) / 2
         out = f"{name}.o"
         self.fixed[out] = mp.mpf(number(stage["vout"])) if "vout" in stage else middle
@@ -175,7 +177,7 @@ class DirectNetwork:
             keys = [k for k in arm if k != "role"]
             if keys[0].startswith("series"):
                 far = f"{stage['name']}.{i}"
-                if "series_l" in keys:
+                if "series_l" in keys or ("series_r" in keys and number(arm["series_r"]) == 0):
                     far = node
                 self._r(node, far, arm, "series_r")
                 node = far

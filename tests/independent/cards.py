@@ -26,17 +26,19 @@ class Card:
         self.family: str = table["family"]
         self.mirrored = table.get("polarity") in ("pnp", "p")
         self.numbers = {k: mp.mpf(number(v, k)) for k, v in table.items() if k not in ("family", "polarity", "note")}
+        if self.family == "bjt" and {"gm", "rpi"} <= set(self.numbers):
+            self.numbers.setdefault("beta", self.numbers["gm"] * self.numbers["rpi"])
         self.thermal = BOLTZMANN * (mp.mpf(celsius) + mp.mpf("273.15")) / CHARGE
         self.vbe = self.numbers.get("vbe", mp.mpf("0.65")) - mp.mpf("0.002") * (mp.mpf(celsius) - 25)
 
     def get(self, key: str, default: Any = None) -> Any:
         return self.numbers.get(key, default)
 
-    def pinch_off(self) -> Any:
-        """vgs_off of a jfet, from the card or from gm at gm_id."""
+    def pinch_off(self, current: Any = None) -> Any:
+        """vgs_off of a jfet, from the card or from gm at gm_id, else at the operating point's current."""
         if "vgs_off" in self.numbers:
             return self.numbers["vgs_off"]
-        return 2 * mp.sqrt(self.numbers["idss"] * self.numbers["gm_id"]) / self.numbers["gm"]
+        return 2 * mp.sqrt(self.numbers["idss"] * self.numbers.get("gm_id", current)) / self.numbers["gm"]
 
     def k_factor(self, current: Any) -> Any:
         """k of a mosfet (A/V²), or None."""
@@ -45,9 +47,9 @@ class Card:
         at = self.numbers.get("gm_id", current)
         return self.numbers["gm"] ** 2 / (2 * at) if at is not None and "gm" in self.numbers else None
 
-    def perveance(self) -> Any:
-        """P of a triode's ia = P·(vgk + vak/mu)^1.5, or None without gm_ia."""
-        at, gm = self.get("gm_ia"), self.triode_gm()
+    def perveance(self, current: Any = None) -> Any:
+        """P of a triode's ia = P·(vgk + vak/mu)^1.5, gm at gm_ia, else at the current; None where neither is told."""
+        at, gm = self.get("gm_ia", current), self.triode_gm()
         return None if at is None else at / (mp.mpf(3) / 2 * at / gm) ** (mp.mpf(3) / 2)
 
     def triode_gm(self) -> Any:
@@ -66,10 +68,12 @@ class Card:
     def _bjt(self, current: Any, across: Any) -> dict[str, Any]:
         n = self.numbers
         gm = n["gm"] if "gm" in n else current / self.thermal
-        out = {"gm": gm, "rpi": n["rpi"] if "rpi" in n else n["beta"] / gm, "rx": n.get("rx")}
+        out = {"gm": gm, "rx": n.get("rx")}
+        if "rpi" in n or gm:
+            out["rpi"] = n["rpi"] if "rpi" in n else n["beta"] / gm
         if "ro" in n:
             out["ro"] = n["ro"]
-        elif "early_voltage" in n and current is not None:
+        elif "early_voltage" in n and current:
             out["ro"] = n["early_voltage"] / current
         if "cmu" in n:
             out["cmu"] = n["cmu"]
@@ -85,6 +89,8 @@ class Card:
             feedback = n["cmu"] if "cmu" in n else n.get("cob", mp.mpf(0))
             tau = 1 / (2 * mp.pi * n["ft"]) - (depletion + feedback) / (n["ft_ic"] / self.thermal)
             out["cpi"] = gm * tau + depletion
+        elif "c_be0" in n:
+            out["cpi"] = n["c_be0"]
         if "ccs" in n:
             out["ccs"] = n["ccs"]
         return out
@@ -100,7 +106,7 @@ class Card:
         out = {"gm": gm, "rx": n.get("rx")}
         if "ro" in n:
             out["ro"] = n["ro"]
-        elif n.get("channel_slope") and current is not None:
+        elif n.get("channel_slope") and current:
             out["ro"] = 1 / (n["channel_slope"] * current)
         crss = n.get("crss")
         out["cgd"] = n.get("cgd", crss)
@@ -114,5 +120,5 @@ class Card:
         gm = self.triode_gm()
         if "gm_ia" in n and current is not None:
             gm = gm * (current / n["gm_ia"]) ** (mp.mpf(1) / 3)
-        out = {"gm": gm, "ro": self.mu() / gm}
+        out = {"gm": gm, "ro": self.mu() / gm} if gm else {"gm": gm}
         return out | {k: n[k] for k in ("cgk", "cga", "cak") if k in n}

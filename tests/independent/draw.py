@@ -59,8 +59,8 @@ class Drawing:
             self.elements.append(Element(kind, self.line, part, a, b, value, role, c, d))
 
     def series(self, kind: str, part: str, a: str, far: str, value: Any, role: str = "") -> str:
-        """A part from node `a` to a new node `far`; the node reached (`a` itself without the part)."""
-        if value is None:
+        """A part from node `a` to a new node `far`; the node reached (`a` itself without the part, or of 0)."""
+        if not value:
             return a
         self.put(kind, part, a, far, value, role)
         return far
@@ -109,10 +109,11 @@ class Drawing:
             self.nodes.append(before)
             self.names.append(self.names[-1])
             return
+        a = self.series("C", "couple", before, self.at("a"), self.value(stage, "couple"), "low")
         if kind == "ladder":
-            out = self._ladder(stage, before)
+            out = self._ladder(stage, a)
+            self.site(self.before_site if out != a else self.after_site, a)
         else:
-            a = self.series("C", "couple", before, self.at("a"), self.value(stage, "couple"), "low")
             self.site(self.before_site, a)
             if kind in DEVICE_KINDS:
                 out = self._device_stage(stage, kind, a)
@@ -248,10 +249,7 @@ class Drawing:
             if self.value(stage, "r_bias") is not None:
                 p = self.at("p")
                 self.put("R", "r_bias", p, GROUND, self.value(stage, "r_bias"))
-            if kind == "inverting":
-                self.put("R", "rg", a, n, self.value(stage, "rg"))
-            else:
-                n = a
+            n = self.series("R", "rg", a, n, self.value(stage, "rg")) if kind == "inverting" else a
             self.bridge("rf", "R", rf, n, out)
             self.bridge("cf", "C", self.value(stage, "cf"), n, out)
         self.put("R", "rf", n, out, rf)
@@ -319,13 +317,18 @@ class Drawing:
 
     def _ladder(self, stage: Mapping[str, Any], node: str) -> str:
         arms = stage["arms"]
-        series_left = sum(any(k.startswith("series") for k in arm) for arm in arms)
+        # a series R or L of 0 is not there: what is ahead of it and behind it is one node
+        absent = [any(k in ("series_r", "series_l") and self.value(arm, k) is None for k in arm) for arm in arms]
+        series_left = sum(any(k.startswith("series") for k in arm) and not gone
+                          for arm, gone in zip(arms, absent, strict=True))
         inner = 0
         for i, arm in enumerate(arms, 1):
             parts = [k for k in arm if k != "role"]
             many = len(parts) > 1
             role = arm.get("role")
             label = {k: f"arm{i}.{k[-1]}" if many else f"arm{i}" for k in parts}
+            if absent[i - 1]:
+                continue
             if parts[0].startswith("series"):
                 series_left -= 1
                 if series_left:
@@ -341,6 +344,8 @@ class Drawing:
             else:
                 roles = {"shunt_c": role or "high", "shunt_l": role or "low", "shunt_r": ""}
                 end = node
+                if "shunt_c" in parts and self.value(arm, "shunt_c") is None:
+                    continue  # no capacitor, no current
                 standing = [k for k in ("shunt_r", "shunt_l", "shunt_c") if k in parts and self.value(arm, k)]
                 for k in standing:
                     far = GROUND if k == standing[-1] else self.at(f"arm{i}{k[-1]}")

@@ -10,7 +10,8 @@ from collections.abc import Hashable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
-PRIME = 2**89 - 1  # a zero by chance has one chance in some 10^25
+# a zero by chance has one chance in some 10^28; no 2^k - 1, which divides binary fractions such as that of 1/537
+PRIME = 271828182845904523536028747271
 
 Place = tuple[Hashable, Hashable]
 

@@ -107,12 +107,15 @@ class Noise(Solved):
         return found
 
     def _transistor(self, line: int, card: Any, current: Any, after: str) -> list[Source]:
-        gm = next(e for e in self.parted if e.line == line and e.part == "gm" + after)
+        gm = next((e for e in self.parted if e.line == line and e.part == "gm" + after), None)
+        if gm is None:  # cut off: no current, no channel
+            return []
         corner = card.get("flicker_corner", 0)
         if card.family == "bjt":
             beta = card.get("beta")
             if beta is None:
                 beta = gm.value * next(e.value for e in self.parted if e.line == line and e.part == "rpi" + after)
+            current = max(current, mp.mpf(0))  # a device that is cut off makes no shot noise
             return [self._between((line, "gm" + after), gm.a, gm.b, 2 * CHARGE * current),
                     self._between((line, "ib" + after), gm.c, gm.d, 2 * CHARGE * current / beta, corner)]
         if card.family == "triode":

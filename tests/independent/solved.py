@@ -45,7 +45,7 @@ class Solved:
         celsius = number(doc.get("supply", {}).get("temperature", 25))
         self.cards = {name: Card(table, celsius) for name, table in doc.get("device", {}).items()}
         self.bias = {s["name"]: Bias() for s in doc.get("stage", [])}
-        self.bias |= bias(doc, self.cards)
+        self.bias |= self.quiescent()
         self.drawing = Drawing(doc, self.bias, self.cards)
         self.elements = self.drawing.elements
         if scaled:
@@ -61,6 +61,10 @@ class Solved:
         self.gain = self.v(self.load)
         if self.gain == 0:
             raise ValueError("the midband gain is zero")
+
+    def quiescent(self) -> dict[str, Bias]:
+        """The bias of each device stage."""
+        return bias(self.doc, self.cards)
 
     # -- midband ----------------------------------------------------------------------------------------------------
 

@@ -143,9 +143,11 @@ def parts(of: Ledger) -> list[dict[str, Any]]:
     for index, part in enumerate(net.layout.parts):
         if part.type == "gain":
             continue
+        value = net.values[index]
         result.append({
             "stage": part.stage, "part": part.name, "type": part.type, "role": part.role or None,
-            "value": net.values[index], "tau_s": taus.get(index), "owns_upper": of.owns_upper.get(index),
+            "value": value if isfinite(value) else None, "tau_s": taus.get(index),
+            "owns_upper": of.owns_upper.get(index),
             "owns_lower": of.owns_lower.get(index), "noise_share": shares.get((part.stage, part.name)),
             "leverage": lever.parts.get((part.stage, part.name), lever.elements[index]),
         })

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from polebook.book.solution import Solution
+from polebook.chain.suggest import listed
 from polebook.problem import Problem
 
 TOUCH_V = 60.0  # V d.c.; IEC 61140 and EN 60204-1 take 60 V d.c. (25 V a.c.) as the limit without touch protection
@@ -15,7 +16,7 @@ def cautions(of: Solution, judged: bool) -> list[Problem]:
 
     Instability is no caution: it is told before any figure.
     """
-    return [*_safety(of), *(_band(of) if judged else [])]
+    return [*_safety(of), *_rounded(of), *(_band(of) if judged else [])]
 
 
 def _caution(of: Solution, owner: str, what: str, why: str, fix: str) -> Problem:
@@ -42,6 +43,17 @@ def _safety(of: Solution) -> list[Problem]:
         result.append(_caution(of, "supply", f"valves ({', '.join(valves)}) get hot enough to burn", why,
                                fix if high else f"{fix}; discharge and measure before you touch; {CODES}"))
     return result
+
+
+def _rounded(of: Solution) -> list[Problem]:
+    """What double precision leaves too few digits of."""
+    parts = of.circuit.layout.parts
+    names = [f"{parts[index].stage}.{parts[index].name}" for index in of.constants.untold]
+    if not names:
+        return []
+    return [_caution(of, "", f"the time constants of {listed(names)} can't be told",
+                     "values lie so far apart that what these parts see is lost in rounding",
+                     "look for a value with a wrong prefix (p for M, a missing u)")]
 
 
 def _band(of: Solution) -> list[Problem]:

@@ -79,7 +79,7 @@ class Ledger:
     def gain_at_reference(self) -> float | None:
         """|H| at the reference frequency, V/V or V/A."""
         hz = self.reference_hz
-        if hz is None or not self.judged:
+        if hz is None or not self.judged or not self.solution.told_at(hz):
             return None
         size = 1.0
         for gain in fold(self.solution.circuit.network, 2j * pi * hz, "full").gains:

@@ -119,8 +119,8 @@ class Noise:
 
     @cached_property
     def at_reference(self) -> Spot | None:
-        """None where no noise can be told, or it is beyond all numbers."""
-        if self.untold or self.reference_hz is None:
+        """None where no noise can be told, or it is beyond all numbers, or next to nothing passes but rounding."""
+        if self.untold or self.reference_hz is None or not self.of.told_at(self.reference_hz):
             return None
         found = self.spot(self.reference_hz)
         return found if np.isfinite(found.square) else None

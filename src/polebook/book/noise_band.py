@@ -22,7 +22,7 @@ from polebook.solve.transfer import adjoint
 
 LEAST_HZ = 0.1  # lower end of the band where the noise grows without bound towards 0
 TIMES_UPPER = 100.0  # upper edges to its upper end where it has no bound upward
-BEYOND = 5 * log(10.0)  # ln Hz past the sweep up to which an open end is integrated: what is left is below 1e-7
+BEYOND = 8 * log(10.0)  # ln Hz past the sweep up to which an open end is integrated: what is left is below 1e-7
 WIDEST = 2.5 * log(10.0)  # ln Hz
 STEPS = 10  # widths of its narrowest grid step that a panel may span
 NOTHING = 1e-14  # share of the whole below which a density that does not fall any more is none
@@ -89,9 +89,14 @@ def totals(of: Solution, sources: Sources, outputs: Sequence[int], upper_hz: flo
     each = _powers(of, sources, outputs, scales, hz)
     whole = panels(edges[:-1], edges[1:], hz[4:], _densities(sources, [x[:, 4:] for x in each], hz[4:]))
     bands = []
+    middle = np.exp(0.5 * (whole.left + whole.right))
     for k, x in enumerate(each):
-        bounded = _bounded(sources, float(whole.fine[k].sum()), x[:, :4], hz[:4], low, high)
-        bands.append(_band(bounded, stated[0], low, high, upper_hz))
+        above = high is not None or _bounded(sources, float(whole.fine[k].sum()), x[:, 2:4], hz[2], 1.5, 1.5)
+        # what has no bound upward must not make little of what has none towards 0
+        end = inf if above or not upper_hz else TIMES_UPPER * upper_hz
+        inside = float(whole.fine[k][middle < end].sum())
+        below = low is not None or _bounded(sources, inside, x[:, :2], hz[0], -0.5, 0.5)
+        bands.append(_band((below, above), stated[0], low, high, upper_hz))
     return _integrated(of, sources, (outputs, scales), bands, whole)
 
 
@@ -170,26 +175,18 @@ def _strided(grid: list[float]) -> list[float]:
     return [*kept, grid[-1]]
 
 
-def _bounded(sources: Sources, total: float, each: Array, hz: Array, low: float | None,
-             high: float | None) -> tuple[bool, bool]:
-    """Whether the integral has a bound towards 0, and upward.
+def _bounded(sources: Sources, total: float, ends: Array, hz: float, white_fall: float, flicker_fall: float) -> bool:
+    """Whether the integral has a bound at one end of the axis.
 
-    each (n, 4): |transfer|² at the two ends, the far frequency of each first. White noise needs a transfer that does
-    not rise towards 0 and falls upward, noise below its corner one that falls both ways.
+    ends (n, 2): |transfer|² at the far frequency hz and a decade before it. White noise needs a transfer that does not
+    rise towards 0 and falls upward, noise below its corner one that falls both ways: by the powers of f given.
     """
-    result = []
-    for at, stated, least in ((0, low, -0.5), (2, high, 1.5)):
-        if stated is not None:
-            result.append(True)
-            continue
-        far, near = each[:, at], each[:, at + 1]
-        with np.errstate(all="ignore"):
-            fall = np.log(near / far) / log(10.0)  # powers of f by which |transfer|² falls outward
-        white, flicker = sources.white * far * hz[at], sources.white * sources.corner * far
-        bad = (white > NOTHING * total) & ~(fall > least)
-        bad |= (flicker > NOTHING * total) & ~(fall > (0.5 if at == 0 else 1.5))
-        result.append(not bool(bad.any()))
-    return result[0], result[1]
+    far, near = ends[:, 0], ends[:, 1]
+    with np.errstate(all="ignore"):
+        fall = np.log(near / far) / log(10.0)  # powers of f by which |transfer|² falls outward
+    bad = (sources.white * far * hz > NOTHING * total) & ~(fall > white_fall)
+    bad |= (sources.white * sources.corner * far > NOTHING * total) & ~(fall > flicker_fall)
+    return not bool(bad.any())
 
 
 def _band(bounded: tuple[bool, bool], stated: float | None, low: float | None, high: float | None,

@@ -27,6 +27,8 @@ if TYPE_CHECKING:
 RISE = log(9.0) / (2.0 * pi)  # rise time of one pole times its frequency: 0.3497
 PER_CENT, PER_MILLE = 0.01, 0.001  # of the final value, to which settling is timed
 EXACT = 5e-10  # error up to which a transient is believed, as a share of the gain, or of the most that passes anywhere
+SWAMPED = 1e-7  # error, as a share of the final value, above which nothing is read off a transient
+ROUNDING = 1e-16
 POINTS = 201
 NAMES: Mapping[View, str] = {"upper": "the upper network by itself (couplings and bypasses shorted)",
                              "lower": "the lower network by itself (device and load capacitances away)"}
@@ -151,7 +153,10 @@ def pulse(of: Solution) -> Pulse:
     level = fading.size or np.abs(seen.loss).max() < EXACT  # without a pole there is nothing but the gain
     if not (level and one.miss < EXACT):
         return Pulse(_missed(found, "upper"), found.roots)
-    return Pulse("", found.roots, one, marks(one, (PER_CENT, PER_MILLE)))
+    seen_there = marks(one, (PER_CENT, PER_MILLE))
+    if max(seen_there.top or 1.0, -seen_there.dip) * max(one.miss, ROUNDING) > SWAMPED:
+        return Pulse("beside what it passes on its way the final value is lost in rounding", found.roots)
+    return Pulse("", found.roots, one, seen_there)
 
 
 def sag(of: Solution, pulse_s: float | None, net: Network | None = None) -> Sag:

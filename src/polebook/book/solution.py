@@ -3,14 +3,16 @@
 from __future__ import annotations
 
 from functools import cached_property
-from math import isfinite, log
+from math import isfinite, log, pi
 from typing import TYPE_CHECKING
 
 from polebook.book.reach import within_reach
-from polebook.book.time_constants import TimeConstants, time_constants
+from polebook.book.time_constants import TimeConstants, time_constants, told
 from polebook.chain.model import Chain
 from polebook.circuit.build import Circuit, circuit
+from polebook.circuit.views import Network
 from polebook.problem import Problem, ProblemsFound
+from polebook.solve.digits import FEW, TURNS, error, shaken
 from polebook.solve.edges import Band, band, first_seed, seed
 from polebook.solve.fold import Folded, NotHeld, fold
 from polebook.solve.inverse import Inverse, inverse
@@ -65,7 +67,27 @@ class Solution:
 
     @cached_property
     def constants(self) -> TimeConstants:
-        return time_constants(self.midband, self.inverse, self.open_lines)
+        moved = [time_constants(one, inverse(one), onward(one.net)) for one in self._shaken]
+        return told(time_constants(self.midband, self.inverse, self.open_lines), moved)
+
+    @cached_property
+    def _shaken(self) -> list[Folded]:
+        """The midband network with its entries shaken: what moves in it has lost digits."""
+        try:
+            return [fold(shaken(self.circuit.network, turn), 0.0, "midband") for turn in range(TURNS)]
+        except NotHeld:  # nothing but rounding held it
+            raise ProblemsFound([self._few_digits("source", "gain of the chain")], "") from None
+
+    def told_at(self, hz: float) -> bool:
+        """Whether double precision leaves enough digits of the response at one frequency."""
+        def response(net: Network) -> complex:
+            product: complex = 1.0
+            for gain in fold(net, 2j * pi * hz, "full").gains:
+                product *= complex(gain)
+            return product
+
+        size = response(self.circuit.network)
+        return all(error(size, response(shaken(self.circuit.network, turn))) <= FEW for turn in range(TURNS))
 
     @cached_property
     def sweep(self) -> Sweep:
@@ -80,7 +102,11 @@ class Solution:
     def band(self) -> Band:
         start = first_seed(self.constants.lower_hz, self.constants.upper_hz)
         hz, clean = seed(self.circuit.network, self.gains, start, self.constants.taus)
-        return band(self.circuit.network, self.gains, self.sweep, hz, clean)
+        found = band(self.circuit.network, self.gains, self.sweep, hz, clean)
+        for name, edge in (("lower", found.lower_hz), ("upper", found.upper_hz)):
+            if edge is not None and not self.told_at(edge):
+                raise ProblemsFound([self._few_digits("source", f"{name} edge")], "")
+        return found
 
     @cached_property
     def poles(self) -> Poles:
@@ -109,6 +135,10 @@ class Solution:
                 raise OverflowError
         if abs(sum(log(abs(gain)) for gain in folded.gains)) > MOST_NEPER:
             raise ProblemsFound([self._beyond()], "")
+        for moved in self._shaken:
+            for segment, gain, other in zip(self.circuit.layout.segments, folded.gains, moved.gains, strict=True):
+                if error(float(gain), float(other)) > FEW:
+                    raise ProblemsFound([self._few_digits(segment.name, f"midband gain of {segment.name}")], "")
         return folded
 
     def _not_held(self, node: int) -> Problem:
@@ -124,6 +154,11 @@ class Solution:
             self.chain.places.get(owner), f"the midband gain of {owner} is zero",
             "nothing of the signal passes it: a device without transconductance (no quiescent current), or an arm that "
             "cuts the chain", "look at its bias and its parts")
+
+    def _few_digits(self, owner: str, figure: str) -> Problem:
+        return Problem(self.chain.places.get(owner), f"the {figure} cannot be told",
+                       "values lie so far apart that what passes is lost in the rounding of what all but cancels",
+                       "look for a value with a wrong prefix (p for M, a missing u), or a resistor as good as open")
 
     def _beyond(self) -> Problem:
         return Problem(self.chain.places.get("source"), "the gain of the chain is beyond what a number can hold",

@@ -6,10 +6,11 @@ from dataclasses import dataclass
 from math import inf, isfinite, pi
 
 from polebook.circuit.elements import Branch
-from polebook.circuit.views import Network, admittance, impedance
+from polebook.circuit.views import Network, admittance, impedance, network
 from polebook.formula import Formula
-from polebook.solve.fold import Folded
-from polebook.solve.inverse import Inverse
+from polebook.solve.digits import FEW, error
+from polebook.solve.fold import Folded, NotHeld, fold
+from polebook.solve.inverse import Inverse, inverse
 from polebook.solve.onward import Open
 
 COCHRAN_GRABEL = "B. L. Cochran and A. Grabel, A method for the determination of the transfer function of electronic " \
@@ -22,16 +23,20 @@ FORMULAS = (
     Formula("overall.octc_upper_hz", "f_H = 1/(2·pi·sum of tau_j), over the high-role parts", COCHRAN_GRABEL),
     Formula("overall.sctc_lower_hz", "f_L = sum of 1/(2·pi·tau_j), over the low-role parts", COCHRAN_GRABEL),
 )
-OPEN = 1e-12  # a loop whose conductance is below this share of the branch's is open
+NEARLY_OPEN = 1e-5  # below this share of the branch's the conductance of the rest is not had by a difference
 
 
 @dataclass(frozen=True, slots=True)
 class TimeConstants:
-    """tau of each part in seconds, by part; None where the part sees 0 or nothing and is left out of the sums."""
+    """tau of each part in seconds, by part; None where the part sees 0 or nothing and is left out of the sums.
+
+    untold  parts whose tau is None because rounding has spoilt it
+    """
 
     by_part: dict[int, float | None]
     upper_hz: float | None
     lower_hz: float | None
+    untold: tuple[int, ...] = ()
 
     @property
     def taus(self) -> list[float]:
@@ -64,6 +69,20 @@ def time_constants(folded: Folded, z: Inverse, lines: list[Open]) -> TimeConstan
     upper = sum(tau for index, tau in by_part.items() if tau and net.layout.parts[index].role == "high")
     lower = sum(1.0 / tau for index, tau in by_part.items() if tau and net.layout.parts[index].role == "low")
     return TimeConstants(by_part, _hz(1.0 / upper if upper else 0.0), _hz(lower))
+
+
+def told(found: TimeConstants, moved: list[TimeConstants]) -> TimeConstants:
+    """The constants without those that rounding may have spoilt: moved are the same of shaken networks."""
+    def spoilt(figure: float | None, others: list[float | None]) -> bool:
+        return figure is not None and any(other is None or error(figure, other) > FEW for other in others)
+
+    untold = tuple(index for index, tau in found.by_part.items() if spoilt(tau, [one.by_part[index] for one in moved]))
+    if not untold:
+        return found
+    by_part = {index: None if index in untold else tau for index, tau in found.by_part.items()}
+    upper = None if spoilt(found.upper_hz, [one.upper_hz for one in moved]) else found.upper_hz
+    lower = None if spoilt(found.lower_hz, [one.lower_hz for one in moved]) else found.lower_hz
+    return TimeConstants(by_part, upper, lower, untold)
 
 
 def _coupled(ahead_ohm: float | None, behind: float | None) -> float | None:
@@ -111,7 +130,20 @@ def _loop(net: Network, z: Inverse, branch: Branch, index: int) -> float | None:
     across = float(z.at(branch.i, branch.j))
     if own is not None:
         loose = 1.0 - across / own
-        return None if abs(loose) < OPEN else float(own / loose)
+        if abs(loose) > NEARLY_OPEN:
+            return float(own / loose)
+        behind = _behind(net, branch)
+        return None if behind is None else float(own + behind)
     others = Branch(branch.i, branch.j, tuple(g for g in branch.groups if index not in g), False)
     rest = impedance(net, others, 0.0, "midband")
     return None if rest is None else float(rest + across)
+
+
+def _behind(net: Network, branch: Branch) -> float | None:
+    """What a branch sees at midband with its resistors away; None where nothing else holds its ends."""
+    away = {index for group in branch.groups for index in group if net.layout.parts[index].type == "R"}
+    left = network(net.layout, [inf if index in away else value for index, value in enumerate(net.values)])
+    try:
+        return float(inverse(fold(left, 0.0, "midband")).at(branch.i, branch.j))
+    except NotHeld:
+        return None

@@ -14,7 +14,7 @@ from polebook.solve.root import Function, bracketed_maximum, bracketed_root
 from polebook.solve.sweep import Array, Sweep, relative, relative_at
 
 HALF_POWER = -0.5 * log(2.0)  # neper
-FLAT = 1e-9  # neper; what rises less above the midband gain is a plateau
+FLAT = 1e-9  # neper; what rises less above the midband gain is a plateau, what is nearer to another is like it
 OUTWARD = 8.0  # ln f by which a limit is looked for beyond the sweep
 DECIBEL = 20.0 / log(10.0)  # dB in a neper
 
@@ -43,15 +43,17 @@ def seed(net: Network, midband: list[float], start_hz: float, taus: Iterable[flo
     """(band seed in Hz, whether |H| there is within 3 dB of the midband gain)."""
     if relative_at(net, start_hz, midband) >= HALF_POWER:
         return start_hz, True
-    corners = [1.0 / (2 * np.pi * tau) for tau in taus if tau > 0]
+    corners = [1.0 / (2 * np.pi * abs(tau)) for tau in taus if abs(tau) > 1e-300]
     if not corners:
         return start_hz, False
-    first = np.floor(40 * np.log10(min(corners) / 10))
-    last = np.ceil(40 * np.log10(max(corners) * 10))
+    first = np.ceil(40 * np.log10(min(corners) / 10) - FLAT)
+    last = np.floor(40 * np.log10(max(corners) * 10) + FLAT)
     hz = 10.0 ** (np.arange(first, last + 1) / 40)
     with np.errstate(all="ignore"):
         loss = relative(fold(net, 2j * np.pi * hz, "full"), midband)
-        best = int(np.nanargmin(np.abs(np.expm1(loss))))
+        off = np.abs(np.expm1(loss))
+        # where next to nothing passes every frequency is as far off: rounding is not to choose among them
+        best = int(np.flatnonzero(off <= np.nanmin(off) + FLAT)[0])
     return float(hz[best]), bool(loss[best] >= HALF_POWER)
 
 

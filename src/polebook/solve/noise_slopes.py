@@ -14,7 +14,7 @@ from dataclasses import dataclass, field
 
 from polebook.circuit.elements import Branch
 from polebook.circuit.noise import Sources
-from polebook.circuit.views import Network, each_admittance
+from polebook.circuit.views import Network, admittance, each_admittance
 from polebook.solve.fold import Folded
 from polebook.solve.noise import at, gain_of, hung, impedances, quiet
 from polebook.solve.transfer import Adjoint, branch_currents
@@ -69,6 +69,8 @@ def _branch(net: Network, numbered: tuple[int, Branch], s: Value, drive: _Drive,
     """Every part of a branch: minus its adjoint voltage times its forward one times its admittance."""
     number, branch = numbered
     (u, v), (q, returning) = solutions, currents
+    if any(y == 0.0 for y in (admittance(net, group, s, "full") for group in branch.groups)):
+        return  # open, as ro of a device that is cut off: nothing flows in it
     sizes = impedances(net, branch, s)
     inside = drive.inside.get(number) or [0.0] * len(sizes)
     if branch.series:

@@ -24,7 +24,7 @@ NODES: Array = np.concatenate([-np.array(_NODES), np.array(_NODES[-2::-1])])
 FINE: Array = np.concatenate([_FINE, _FINE[-2::-1]])
 COARSE: Array = np.concatenate([_COARSE, _COARSE[-2::-1]])
 
-NEAR = 1e-5  # share of the total by which the two rules of a panel may differ; the finer one is then off by some 1e-8
+NEAR = 1e-6  # share of the total by which the two rules of a panel may differ; the finer one is then off by far less
 ROUNDS = 60
 MOST = 4000  # panels
 
