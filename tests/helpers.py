@@ -2,11 +2,20 @@
 
 from __future__ import annotations
 
+import os
+from copy import copy
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
 ROOT = Path(__file__).resolve().parent.parent
 DEMOS = ROOT / "chains"
+WHOLE = bool(os.environ.get("POLEBOOK_WHOLE"))
+
+
+def of_whole(whole: int, part: int) -> int:
+    """How many of a random test's cases are tried: a part of them, all with POLEBOOK_WHOLE=1."""
+    return whole if WHOLE else part
 
 
 def figures(path: str | Path) -> dict[str, Any]:
@@ -15,6 +24,13 @@ def figures(path: str | Path) -> dict[str, Any]:
     from polebook.chain.read import load
 
     return document(ledger(load(str(path))))
+
+
+def fresh(session: Any) -> Any:
+    """The session with ledgers of its own, as they are now: what is asked of them stands in no other's."""
+    own = {id(one): copy(one) for one in (session.ledger, session.good, session.baseline)}
+    return replace(session, ledger=own[id(session.ledger)], good=own[id(session.good)],
+                   baseline=own[id(session.baseline)])
 
 
 def row_of(rows: list[dict[str, Any]], **wanted: str) -> dict[str, Any] | None:

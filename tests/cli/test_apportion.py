@@ -7,6 +7,7 @@ import re
 import signal
 import subprocess
 import time
+from pathlib import Path
 
 import pytest
 
@@ -20,6 +21,7 @@ from tests.test_imports import modules_after
 
 GREEDY = [('upper   = "1M"', 'upper   = "4M"'), ('gain    = "60 dB"', 'gain    = "70 dB"')]
 FEW = "Q1.rc,Q1.re,Q2.re,Q2.c_comp"
+FOUND = {}  # request -> its result
 
 
 def told(capsys, *args):
@@ -29,10 +31,23 @@ def told(capsys, *args):
 
 
 @pytest.fixture
-def chain(tmp_path):
-    copy = tmp_path / "chain.toml"
+def chain(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)  # the same request in every test: what it comes to is searched once
+    copy = Path("chain.toml")
     copy.write_bytes(LISTENER.read_bytes())
     return copy
+
+
+@pytest.fixture(autouse=True)
+def searched_once(monkeypatch):
+    search = plan.apportion
+
+    def remembered(request):
+        if request not in FOUND:
+            FOUND[request] = yield from search(request)
+        return FOUND[request]
+
+    monkeypatch.setattr(plan, "apportion", remembered)
 
 
 @pytest.fixture

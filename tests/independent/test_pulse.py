@@ -6,7 +6,6 @@ import tomllib
 from functools import cache
 from pathlib import Path
 
-import control
 import numpy as np
 import pytest
 
@@ -124,6 +123,8 @@ def test_spread_of_the_group_delay(name):
 )
 def test_beside_python_control(name, role, folder):
     """Its step response of a state space of the view, on 200 points of the window or of a few slow constants."""
+    import control  # deferred: only what runs here pays its second of imports, not each process that collects
+
     ours, chain = both(name, folder)
     view = view_of(chain, role)
     end = ours.pulse.window_s if role == HIGH else 2.0 / min(abs(complex(p)) for p in view.poles)

@@ -24,6 +24,7 @@ from polebook.plan.apportion.yields import met_beside
 from polebook.problem import ProblemsFound
 from polebook.text.rearrange import replace_all
 from tests.cli.helpers import CHAINS, LISTENER, PHOTODIODE, SIX
+from tests.helpers import WHOLE, of_whole
 
 TEXT = LISTENER.read_text(encoding="utf-8")
 TEXTS = {path.stem: path.read_text(encoding="utf-8") for path in CHAINS.glob("*.toml")}
@@ -142,7 +143,7 @@ def test_rise_overshoot_and_sag_are_targets_too():
     assert met_beside(result.proposal) and of.pulse.rise_time_s <= 3e-9 and of.pulse.overshoot_percent <= 10
 
 
-FEW = ("Q1.rc", "Q1.re", "Q2.rc", "Q2.re", "Q2.c_comp", "Q2.couple")
+FEW = ("Q1.rc", "Q1.re", "Q2.rc", "Q2.re", "Q2.c_comp")
 GREEDY = TEXT.replace('upper   = "1M"', 'upper   = "4M"').replace('gain    = "60 dB"', 'gain    = "70 dB"')
 
 
@@ -184,7 +185,7 @@ def test_no_random_plan_is_much_better_than_the_nearest():
 
     own = far(trial(task, x, values))
     low, high = task.bounds
-    for number in range(120):
+    for number in range(of_whole(120, 40)):
         near = np.clip(x + 0.3 * random.standard_normal(x.size), low, high)
         other = trial(task, random.uniform(low, high) if number % 2 else near)
         assert far(trial(task, *nearest(task, other))) > own - 0.01
@@ -200,8 +201,11 @@ def broken(text, seed):
     return replace_all(text, values, "broken").apply(text)
 
 
-@pytest.mark.parametrize(("name", "seed"), [("wire-break-listener", 1), ("six-stage", 2), ("leaf-probe", 3),
-                                            ("photodiode-front", 4), ("rain-radar", 5), ("shellac-desk", 6)])
+BROKEN = [("wire-break-listener", 1), ("shellac-desk", 6), ("photodiode-front", 4), ("six-stage", 2),
+          ("leaf-probe", 3), ("rain-radar", 5)]
+
+
+@pytest.mark.parametrize(("name", "seed"), BROKEN if WHOLE else BROKEN[:3])
 def test_broken_variants_are_brought_back(name, seed):
     """A sample of python -m tests.bench.apportion."""
     text = broken(TEXTS[name], seed)

@@ -13,6 +13,7 @@ from polebook.plan import sweep as sweeping
 from polebook.plan.ranges import swept
 from polebook.problem import ProblemsFound
 from tests.cli.helpers import ALL, LISTENER, ROOT
+from tests.helpers import of_whole
 
 TEXT = LISTENER.read_text(encoding="utf-8")
 FILES = (*ALL, *sorted((ROOT / "tests" / "independent" / "chains").glob("*.toml")))
@@ -139,7 +140,7 @@ def test_figures_are_found_where_only_a_point_has_a_ledger():
     assert point.figures == {"J1.output_ohm": pytest.approx(1e3)}
 
 
-@settings(max_examples=120, deadline=None, derandomize=True)
+@settings(max_examples=of_whole(120, 50), deadline=None, derandomize=True)
 @given(st.data())
 def test_no_value_raises_or_warns(data):
     chain = CHAINS[data.draw(st.sampled_from(sorted(CHAINS)))]

@@ -13,7 +13,7 @@ from polebook.session.state import Session
 from polebook.text.blocks import blocks
 from polebook.text.spans import scan
 from polebook.text.toml import read
-from tests.helpers import DEMOS
+from tests.helpers import DEMOS, of_whole
 from tests.session.random_edits import attempt, random_edit
 
 TEXTS = {path.stem: path.read_text(encoding="utf-8") for path in sorted(DEMOS.glob("*.toml"))}
@@ -36,7 +36,7 @@ def stage_blocks(session: Session) -> dict[str, str]:
 
 
 @given(st.integers(0, 10**9))
-@settings(max_examples=12, deadline=None, derandomize=True)
+@settings(max_examples=of_whole(12, 6), deadline=None, derandomize=True)
 def test_any_edits_are_undone_to_the_byte_and_redone(seed: int) -> None:
     rng = random.Random(seed)
     session, now = begun(rng), 0.0
@@ -62,7 +62,7 @@ def test_any_edits_are_undone_to_the_byte_and_redone(seed: int) -> None:
 
 
 @given(st.integers(0, 10**9))
-@settings(max_examples=12, deadline=None, derandomize=True)
+@settings(max_examples=of_whole(12, 6), deadline=None, derandomize=True)
 def test_an_edit_of_one_stage_leaves_the_others_as_they_are(seed: int) -> None:
     rng = random.Random(seed)
     session = begun(rng)

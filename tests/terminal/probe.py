@@ -150,20 +150,26 @@ class Terminal:
     def write(self, data: bytes) -> None:
         os.write(self.fd, data)
 
-    def quiet(self, seconds: float = 0.15, limit: float = 10.0, since: float | None = None) -> Reply:
-        """Reads until nothing has come for `seconds`."""
+    def quiet(self, seconds: float = 0.15, limit: float = 10.0, since: float | None = None,
+              first: float | None = None) -> Reply:
+        """Reads until nothing has come for `seconds`; for the first of it as long as `first`, where that is given."""
         begun = time.perf_counter() if since is None else since
         last, got = None, b""
-        while (now := time.perf_counter()) - begun < limit and now - (last or begun) < seconds:
+        while (now := time.perf_counter()) - begun < limit and \
+                now - (last or begun) < (seconds if last or first is None else first):
             if data := self.read(seconds):
                 last, got = time.perf_counter(), got + data
         return Reply(got, None if last is None else (last - begun) * 1e3)
 
-    def press(self, *names: str, quiet: float = 0.15) -> Reply:
+    def told(self, *names: str, quiet: float = 0.15) -> Reply:
+        """As `press`, of keys that something comes of."""
+        return self.press(*names, quiet=quiet, first=10.0)
+
+    def press(self, *names: str, quiet: float = 0.15, first: float | None = None) -> Reply:
         """Keys written at once, then read until it is quiet."""
         begun = time.perf_counter()
         self.write("".join(BYTES.get(name, name) for name in names).encode())
-        return self.quiet(quiet, since=begun)
+        return self.quiet(quiet, since=begun, first=first)
 
     def until(self, wanted: str, limit: float = 20.0) -> str:
         """Reads until the screen has `wanted`; the screen."""

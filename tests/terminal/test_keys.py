@@ -6,6 +6,7 @@ import time
 import pytest
 
 from polebook.tui import keys
+from tests.helpers import WHOLE
 from tests.terminal.probe import Terminal, app
 from tests.tui.places import PLACES
 
@@ -40,7 +41,8 @@ def test_a_planning_story_from_opening_to_saving(pair, path):
 def test_esc_followed_at_once_by_each_key(pair):
     """From an open field: Esc leaves it, then the key does what it always does; both in one write."""
     chosen = [name for name, action in keys.ACTIONS.items() if action not in LEAVES and action not in ("undo", "redo")]
-    for name in ["u", "U", *chosen, "R", "Q", "[", "]", "O", "9", "e", "z", "µ"]:
+    every = ["u", "U", *chosen, "R", "Q", "[", "]", "O", "9", "e", "z", "µ"]
+    for name in every if WHOLE else every[::2]:
         pair.press("1")
         assert pair.desk.view.field is not None, name
         pair.press("escape", name)
@@ -50,7 +52,7 @@ def test_esc_followed_at_once_by_each_key(pair):
         pair.press("f", *"Q1.rc", "enter")
 
 
-@pytest.mark.parametrize("value", ["2u2", "4k7", "100n"])
+@pytest.mark.parametrize("value", ["2u2", "4k7", "100n"] if WHOLE else ["4k7"])
 def test_a_value_typed_ahead_changes_nothing_but_a_field(pair, path, value):
     before = path.read_text(encoding="utf-8")
     for place in ("sheet of a stage", "ledger", "nodes", "nodes, sheet", "field", "find", "add", "help", "working",
@@ -89,7 +91,7 @@ def test_ctrl_z_without_a_shell_to_go_back_to(pair):
 
 
 def test_ctrl_l_paints_all_anew(pair):
-    assert pair.terminal.press("ctrl+l").count > 1500
+    assert pair.terminal.told("ctrl+l").count > 1500
     pair.terminal.shows(pair.desk.screen())
 
 

@@ -28,14 +28,14 @@ def test_the_cursor_and_a_row_are_few_bytes_and_a_sweep_paints_now_and_then(tmp_
         terminal.until("? help")
         terminal.press("tab", "7")
         for key in ("down", "down", "up", "up"):
-            assert 0 < terminal.press(key).count <= 2000
+            assert 0 < terminal.told(key).count <= 2000
         before, begun = len(terminal.log), time.perf_counter()
         terminal.press("enter", quiet=0.0)
         terminal.until("as wanted")
         terminal.quiet(0.25)
         assert len(terminal.log) - before <= 3500 * (2 + (time.perf_counter() - begun) / 0.2)
         for key in (".", ".", ","):
-            assert 0 < terminal.press(key).count <= 2000
+            assert 0 < terminal.told(key).count <= 2000
 
 
 def test_leaving_in_the_midst_of_a_sweep(tmp_path):

@@ -133,7 +133,7 @@ def test_a_step_and_a_move_are_few_bytes(tmp_path):
         terminal.until("? help")
         terminal.press("f", *"Q3.rc", "enter")
         for _ in range(4):
-            assert 0 < terminal.press("+").count <= 3500
-            assert 0 < terminal.press("down").count <= 2000
-            assert 0 < terminal.press("left").count <= 2000
+            assert 0 < terminal.told("+").count <= 3500
+            assert 0 < terminal.told("down").count <= 2000
+            assert 0 < terminal.told("left").count <= 2000
             terminal.press("right", "up")

@@ -74,12 +74,12 @@ def test_a_letter_is_few_bytes(tmp_path):
         terminal.until("? help")
         terminal.press("f", *"Q2.rc", "enter", "e")
         for key in ("delete", "delete", "3", "k", "9"):
-            assert 0 < terminal.press(key, quiet=0.08).count <= 1500, key
+            assert 0 < terminal.told(key, quiet=0.08).count <= 1500, key
         terminal.press("end", "#")
         for letter in "words":
-            assert 0 < terminal.press(letter, quiet=0.08).count <= 500
+            assert 0 < terminal.told(letter, quiet=0.08).count <= 500
         for key in ("up", "left", "down"):
-            assert 0 < terminal.press(key, quiet=0.08).count <= 500
+            assert 0 < terminal.told(key, quiet=0.08).count <= 500
 
 
 def test_a_long_chain_takes_letters_at_once_and_is_judged_when_they_end(tmp_path):

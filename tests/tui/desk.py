@@ -4,28 +4,36 @@ from __future__ import annotations
 
 import shutil
 from copy import copy
+from dataclasses import replace
+from functools import cache
 from pathlib import Path
 
 from polebook.tui.control import Outcome, opening, paste, press
 from polebook.tui.control.jobs import advance
 from polebook.tui.draw.screen import screen
 from polebook.tui.lines import plain_text
+from tests.helpers import fresh
 
 CHAINS = Path(__file__).parents[2] / "chains"
 LISTENER = CHAINS / "wire-break-listener.toml"
 SIX = CHAINS / "six-stage.toml"
+demo = cache(opening)
+"""A demo chain opened: nothing writes to one."""
 
 
 class Desk:
     """`seconds` pass before each key; `outcome` is that of the last one."""
 
     def __init__(self, path, seconds=5.0, plain=False):
-        self.state, self.outcome = opening(str(path), plain), Outcome.NONE
+        self.state = _fresh(demo(str(path), plain)) if Path(path).parent == CHAINS else opening(str(path), plain)
+        self.outcome = Outcome.NONE
         self.seconds, self.now = seconds, 100.0
 
     def again(self):
         """Another desk in the same state."""
-        return copy(self)
+        other = copy(self)
+        other.state = _fresh(self.state)
+        return other
 
     def press(self, *names):
         """Keys: a character, or a name such as "enter"."""
@@ -91,6 +99,10 @@ class Desk:
 
     def screen(self, columns=80, rows=24):
         return plain_text(screen(self.state, columns, rows))
+
+
+def _fresh(state):
+    return replace(state, session=fresh(state.session))
 
 
 def copied(folder, of=LISTENER, name="chain.toml"):

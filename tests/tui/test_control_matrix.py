@@ -4,6 +4,7 @@ import pytest
 
 from polebook.tui import keys
 from polebook.tui.control import Outcome
+from tests.helpers import of_whole
 from tests.tui.desk import LISTENER, SIX
 from tests.tui.places import OVER_TEXT, PLACES, at, sample
 
@@ -21,7 +22,7 @@ VALUES = ("2u2", "4k7", "100n", "1.5M", ".1", "1e3", "3p3", "12", "470R", "20.k"
 def test_every_key_at_every_place(place, of, monkeypatch):
     monkeypatch.setattr("polebook.text.files.save", lambda path, text: None)
     begun = at(place, of)
-    for key in sample(EVERY, place, 2 if of == LISTENER else 4):
+    for key in sample(EVERY, place, 4 if of == LISTENER else 8):
         desk = begun.again()
         text, past = desk.text, len(desk.state.session.history.past)
         desk.press(key)
@@ -84,7 +85,7 @@ def test_a_thousand_keys_at_random_and_undone_are_the_file_again(tmp_path):
 
     from tests.tui.desk import Desk, copied
 
-    for seed in range(6):
+    for seed in range(of_whole(6, 3)):
         source = random.Random(seed)
         path = copied(tmp_path, source.choice([LISTENER, SIX]))
         before = path.read_text(encoding="utf-8")

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 from unicodedata import category, east_asian_width
 
 from polebook.problem import printable
@@ -76,7 +77,12 @@ def cells(text: str) -> int:
     """Columns that printable text takes on a terminal."""
     if text.isascii():
         return len(text)
-    return sum(0 if category(c) in ("Mn", "Me") else 2 if east_asian_width(c) in "WF" else 1 for c in text)
+    return sum(map(_columns, text))
+
+
+@lru_cache(maxsize=1024)
+def _columns(char: str) -> int:
+    return 0 if category(char) in ("Mn", "Me") else 2 if east_asian_width(char) in "WF" else 1
 
 
 def fit(text: str, room: int, mark: str = "…") -> str:

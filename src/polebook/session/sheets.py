@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from typing import Any
 
@@ -86,17 +86,25 @@ def keys_of(session: Session, sheet: str) -> list[KeyRow]:
 
     Empty where there is no such sheet, or where the text is not TOML.
     """
-    data, spans = content_of(session.history.text)
+    rows = _keys(session.history.text, sheet)
+    leaning = _leaning(session.ledger)
+    return list(rows) if leaning is None else [replace(row, leans=leaning.get(row.path)) for row in rows]
+
+
+@lru_cache(maxsize=64)
+def _keys(text: str, sheet: str) -> tuple[KeyRow, ...]:
+    """The keys as the text alone tells them: every key pressed asks for them again."""
+    data, spans = content_of(text)
     if sheet in SECTIONS:
-        return _rows(session, [(f"{sheet}.{param.key}", param, ()) for param in SECTIONS[sheet]], data, spans)
+        return _rows([(f"{sheet}.{param.key}", param, ()) for param in SECTIONS[sheet]], data, spans)
     if sheet == "file":
-        return _rows(session, [(param.key, param, ()) for param in TOP], data, spans)
+        return _rows([(param.key, param, ()) for param in TOP], data, spans)
     head, _, name = sheet.partition(".")
     if head == "device" and name:
-        return _rows(session, _card(data, name), data, spans)
+        return _rows(_card(data, name), data, spans)
     if head == "bench" and name:
-        return _rows(session, [(f"{sheet}.{param.key}", param, ()) for param in BENCH], data, spans)
-    return _rows(session, _stage(data, sheet), data, spans)
+        return _rows([(f"{sheet}.{param.key}", param, ()) for param in BENCH], data, spans)
+    return _rows(_stage(data, sheet), data, spans)
 
 
 _Asked = Iterable[tuple[str, Param, tuple[str, ...]]]
@@ -191,17 +199,15 @@ def _arms(name: str, stage: Mapping[str, Any]) -> _Asked:
             yield f"{name}.arms.{number}.{param.key}", param, ()
 
 
-def _rows(session: Session, asked: _Asked, data: Mapping[str, Any], spans: Spans) -> list[KeyRow]:
-    leaning = _leaning(session.ledger)
+def _rows(asked: _Asked, data: Mapping[str, Any], spans: Spans) -> tuple[KeyRow, ...]:
     rows = []
     for path, param, choices in asked:
         row = kinds.row(param)
         default = f"{param.default}" if param.choices or param.dimension == "flag" else row.default
         rows.append(KeyRow(path, _short(path), _text(path, data, spans), default, row.unit, param.role, param.about,
                            choices or param.choices or (("true", "false") if param.dimension == "flag" else ()),
-                           param.sign, param.dimension, param.required,
-                           None if leaning is None else leaning.get(path)))
-    return rows
+                           param.sign, param.dimension, param.required, None))
+    return tuple(rows)
 
 
 def _short(path: str) -> str:
