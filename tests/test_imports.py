@@ -53,6 +53,12 @@ def test_a_ledger_needs_numpy_alone(command):
     assert not names & {"textual", "rich", "scipy"}
 
 
+def test_a_fit_takes_scipy_once_it_is_made():
+    names, _ = modules_after("import polebook.record.fit, polebook.record.compared")
+    assert "numpy" in names
+    assert not names & {"textual", "rich", "scipy"}
+
+
 def test_an_audit_needs_no_poles_and_no_leverage():
     names, code = modules_after(f"from polebook.cli.main import main; result = main(['audit', {SIX!r}])")
     assert code == 0 and "polebook.book.ledger" in names

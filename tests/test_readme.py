@@ -15,6 +15,8 @@ DEVELOPERS = (ROOT / "DEVELOPERS.md").read_text(encoding="utf-8")
 # the indented lines: what a reader is told to type, less the explanation beside it
 TYPED = [re.split(r" {2,}", line.strip())[0] for line in README.splitlines() if re.match(r" {4}\S", line)]
 
+MEASURED = '\n[[bench]]\ngain = "59 dB"\nfile = "sweep.csv"\n'
+
 
 def _fenced(language):
     return [text for kind, text in re.findall(r"^```(\w*)\n(.*?)^```$", README, re.DOTALL | re.MULTILINE)
@@ -34,7 +36,7 @@ def test_the_python_example_runs():
 
 
 def test_the_excerpt_is_what_the_first_command_prints(capsys):
-    (excerpt,) = _fenced("")
+    excerpt, _ = _fenced("")
     assert "bash .ci/polebook show chains/wire-break-listener.toml" in TYPED
     assert main(["show", str(LISTENER)]) == 0
     printed = capsys.readouterr().out
@@ -42,6 +44,13 @@ def test_the_excerpt_is_what_the_first_command_prints(capsys):
     assert len(blocks) == 2
     for block in blocks:
         assert block in printed
+
+
+def test_the_excerpt_of_the_fit_is_what_it_prints(capsys):
+    _, excerpt = _fenced("")
+    assert "`polebook fit chains/shellac-desk.toml`" in README
+    assert main(["fit", str(ROOT / "chains" / "shellac-desk.toml")]) == 0
+    assert excerpt in capsys.readouterr().out
 
 
 def test_the_excerpt_of_the_spread_is_what_it_prints(capsys):
@@ -58,7 +67,8 @@ def test_the_excerpt_of_the_spread_is_what_it_prints(capsys):
 @pytest.mark.parametrize("line", [line for line in TYPED if line.startswith("polebook ")])
 def test_every_command_of_the_readme_runs(line, capsys, tmp_path, monkeypatch):
     monkeypatch.chdir(tmp_path)
-    shutil.copy(LISTENER, tmp_path / "FILE")
+    (tmp_path / "FILE").write_text(LISTENER.read_text(encoding="utf-8") + MEASURED, encoding="utf-8")
+    (tmp_path / "sweep.csv").write_text("Hz, dB\n20000, 57.9\n100000, 59.5\n300000, 57.8\n1000000, 51\n2e6, 44\n")
     shutil.copy(PHOTODIODE, tmp_path / "OTHER")
     words = [word.removesuffix("...") for word in line.split()[1:]]
     assert main(words) == (1 if words[0] == "audit" else 0)

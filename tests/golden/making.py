@@ -8,9 +8,12 @@ from typing import Any
 
 from polebook.book import build
 from polebook.chain import read
+from polebook.record.review import review as gathered
 from polebook.report.look import Look
 from polebook.report.pages import LEDGER, page
+from polebook.report.review import review as review_text
 from polebook.report.sections import unstable, verdict
+from polebook.report.svg.drawings import WHAT
 from polebook.report.tables import at_frequency
 from tests.book.verdict_cases import CASES
 
@@ -18,6 +21,8 @@ GOLDEN = Path(__file__).parent
 CHAINS = sorted((GOLDEN.parent.parent / "chains").glob("*.toml"))
 AT_HZ = 100e3
 VERDICTS = "verdicts.txt"
+REVIEWED = "wire-break-listener"
+REVIEW = f"{REVIEWED}.review.md"
 
 
 def texts(chain: Path) -> dict[str, str]:
@@ -43,6 +48,12 @@ def verdicts() -> str:
         document = build.document(build.ledger(read.parse(text, "case.toml")), ("overall", "verdict"))
         told.append("\n".join([f"{name}:", *(unstable(document, look) or verdict(document, look)), ""]))
     return "\n".join(told)
+
+
+def review() -> str:
+    """The design review of one demo chain, with its pictures linked."""
+    of = build.ledger(read.load(str(GOLDEN.parent.parent / "chains" / f"{REVIEWED}.toml")))
+    return review_text(gathered(of, f"{REVIEWED}.toml"), {what: f"review-{what}.svg" for what in WHAT})
 
 
 def figures(value: Any, path: str = "") -> Iterator[tuple[str, str]]:

@@ -24,7 +24,7 @@ from polebook.tui.draw.screen import screen
 from polebook.tui.lines import plain_text
 from polebook.tui.view import Apportion, Care, Choice, Field, Lever, Overlay, Plot, Spread, State, View
 from tests.book.verdict_cases import CASES as CHAINS
-from tests.helpers import DEMOS
+from tests.helpers import DEMOS, fresh
 from tests.tui.apportion_told import plan_of
 from tests.tui.spread_told import run_of
 
@@ -38,15 +38,26 @@ PROBE = "leaf-probe"
 def texts() -> Iterator[tuple[str, str]]:
     """File name -> text of every golden screen."""
     for name, make in CASES.items():
-        for columns, rows in SIZES:
-            yield f"{name}.{columns}x{rows}.txt", plain_text(screen(make(), columns, rows))
-    for columns, rows in ((60, 16), (100, 30), (59, 16)):
-        state = CASES["ledger"]()
-        yield f"ledger.{columns}x{rows}.txt", plain_text(screen(state, columns, rows))
+        for columns, rows in sizes(name):
+            yield file(name, columns, rows), plain_text(screen(make(), columns, rows))
+
+
+def sizes(name: str) -> tuple[tuple[int, int], ...]:
+    """Columns and rows at which a case is drawn."""
+    return (*SIZES, (60, 16), (100, 30), (59, 16)) if name == "ledger" else SIZES
+
+
+def file(name: str, columns: int, rows: int) -> str:
+    return f"{name}.{columns}x{rows}.txt"
 
 
 def opened(name: str) -> Session:
     """A demo chain, open; by its own name wherever the tests run."""
+    return fresh(_read(name))
+
+
+@cache
+def _read(name: str) -> Session:
     return replace(sessions.open_file(str(DEMOS / f"{name}.toml")), path=f"chains/{name}.toml")
 
 

@@ -2,7 +2,7 @@
 
 import pytest
 
-from tests.golden.making import CHAINS, GOLDEN, VERDICTS, texts, verdicts
+from tests.golden.making import CHAINS, GOLDEN, REVIEW, VERDICTS, review, texts, verdicts
 
 
 @pytest.mark.parametrize("chain", CHAINS, ids=lambda chain: chain.stem)
@@ -13,6 +13,10 @@ def test_a_demo_chain_reads_as_its_goldens_say(chain):
 
 def test_the_verdicts_read_as_their_golden_says():
     assert verdicts() == (GOLDEN / VERDICTS).read_text(encoding="utf-8")
+
+
+def test_a_review_reads_as_its_golden_says():
+    assert review() == (GOLDEN / REVIEW).read_text(encoding="utf-8")
 
 
 def test_every_golden_has_its_chain():

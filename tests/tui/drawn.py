@@ -18,11 +18,12 @@ from tests.fuzz_files import spoilt
 from tests.helpers import DEMOS
 from tests.session.random_edits import attempt, random_edit
 from tests.tui.apportion_told import random_apportion
+from tests.tui.history_told import against, random_past
 from tests.tui.spread_told import random_spread
 
 WORDS = ("", "Q1", "4k7", "a b c", "üΩ漢字 wide", "\x1b[31mred", "x" * 200, "two\nlines\n\n", "\u202eback", "e\u0301")
 PURPOSES = ("help", "working", "cautions", "find", "add", "kind", "card", "cards", "sheets", "leave", "new", "changed",
-            "recovered", "difference", "note", "rename", "take", "start", "choice")
+            "recovered", "difference", "note", "rename", "take", "start", "choice", "post")
 FRIENDLY = sorted(path.read_text(encoding="utf-8") for path in DEMOS.glob("*.toml")) + sorted(CASES.values())
 
 
@@ -33,6 +34,8 @@ def random_session(rng: random.Random, number: int) -> Session:
         session = attempt(session, random_edit(session, rng)[1], float(at))
         if rng.random() < 0.2:
             session = sessions.pin(session)
+        elif rng.random() < 0.2 and session.good is not None:
+            session = against(rng, session, WORDS)
     if rng.random() < 0.3:
         session = sessions.set_text(session, spoilt(7, number).decode("utf-8", "replace"), 99.0)
     return replace(session, read_only=rng.choice(("", "its folder is not yours")), exists=rng.random() < 0.7)
@@ -57,6 +60,8 @@ def random_view(rng: random.Random, session: Session) -> View:
         view = replace(view, spread=random_spread(rng, session.chain, WORDS))
     if view.page == "apportion":
         view = replace(view, apportion=random_apportion(rng, session, WORDS))
+    if view.page == "history":
+        view = replace(view, past=random_past(rng, session, WORDS))
     if rng.random() < 0.25:
         return replace(view, writing=random_writing(rng, session))
     if rng.random() < 0.3:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+from functools import cache
 
 from tests.tui.desk import LISTENER, SIX, Desk
 
@@ -38,6 +39,9 @@ PLACES = {
     "apportion, a row": ("tab", "9", "v", *["down"] * 9, "space"),
     "apportion, running": ("tab", "9", "s"),
     "apportion, sheet": ("tab", "9", "tab", "s"),
+    "history": ("tab", "0"),
+    "history, sheet": ("tab", "0", "tab"),
+    "post": ("P",),
     "targets": ("t", "enter"),
     "supply": ("t", "down", "enter"),
     "preferred": ("t", "down", "down", "down", "enter"),
@@ -62,8 +66,10 @@ PLACES = {
     "text, looked through": ("e", "ctrl+f", "r"),
     "leave": ("+", "q"),
 }
+RUNNING = frozenset({"sweep", "spread, running", "spread, sheet"})
+"""Places where a job has begun, which goes on but once."""
 OVER_TEXT = frozenset({"field", "field refused", "find", "add", "kind", "card list", "flag list", "sheets", "take",
-                       "note", "rename", "text", "text, looked through"})
+                       "note", "rename", "text", "text, looked through", "post"})
 """Places where every character is text."""
 
 
@@ -74,7 +80,14 @@ def sample(keys, place, share):
 
 def at(place, of=LISTENER, plain=False):
     """A desk at the place."""
+    return _reached(place, of, plain).again() if place not in RUNNING else _to(place, of, plain)
+
+
+def _to(place, of, plain):
     return Desk(of, plain=plain).press(*PLACES[place])
+
+
+_reached = cache(_to)
 
 
 __all__ = ["LISTENER", "OVER_TEXT", "PLACES", "SIX", "at"]

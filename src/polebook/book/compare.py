@@ -138,18 +138,15 @@ def _left(account: Account, site: Site) -> Number:
 
 
 @dataclass(frozen=True, slots=True)
-class Changes:
-    """What moved from one ledger to another; each figure is computed when it is asked for, and kept.
+class Moves:
+    """What moved to the ledger `after` from what stood before; each figure is computed when it is asked for, and kept.
 
     Lines are matched by name, a node by the line whose output it is, an inner one by its own name ("Q2.1").
-    added, removed   stages that only the later or only the earlier one has
+    What stood before is for a class of this one to know: `_told`.
     """
 
-    before: Ledger
     after: Ledger
-    added: tuple[str, ...]
-    removed: tuple[str, ...]
-    _kept: dict[tuple[str, str], Change | None] = field(default_factory=dict, compare=False, repr=False)
+    _kept: dict[tuple[str, str], Change | None] = field(default_factory=dict, compare=False, repr=False, kw_only=True)
 
     def overall(self, figure: str) -> Change | None:
         """A figure of OVERALL (KeyError for none of them); None where one of the ledgers can't tell it."""
@@ -180,6 +177,27 @@ class Changes:
         """The current out of a rail, A."""
         return self._change((f"rail {name}", "current_a"), "ratio", lambda of: of.rails.current(_standing(of, name)))
 
+    def _change(self, key: tuple[str, str], way: Way, get: Callable[[Ledger], Number]) -> Change | None:
+        if key not in self._kept:
+            self._kept[key] = self._told(key, way, get)
+        return self._kept[key]
+
+    def _told(self, key: tuple[str, str], way: Way, get: Callable[[Ledger], Number]) -> Change | None:
+        """A figure by its group and name, ("line Q1", "k"); `get` has it of a ledger. None where there are not two."""
+        raise NotImplementedError
+
+
+@dataclass(frozen=True, slots=True)
+class Changes(Moves):
+    """What moved from one ledger to another.
+
+    added, removed   stages that only the later or only the earlier one has
+    """
+
+    before: Ledger
+    added: tuple[str, ...]
+    removed: tuple[str, ...]
+
     def all(self) -> Iterator[tuple[str, str, str, Change]]:
         """("overall", "line" or "node"; name; figure; change) of every figure that stands in both ledgers."""
         for figure in OVERALL:
@@ -192,18 +210,12 @@ class Changes:
                     if change := ask(name, figure):
                         yield group, name, figure, change
 
-    def _change(self, key: tuple[str, str], way: Way, get: Callable[[Ledger], Number]) -> Change | None:
-        if key not in self._kept:
-            self._kept[key] = _told(self.before, self.after, way, get)
-        return self._kept[key]
-
-
-def _told(before: Ledger, after: Ledger, way: Way, get: Callable[[Ledger], Number]) -> Change | None:
-    try:
-        with within_reach(before.chain):
-            return Change(get(before), get(after), way)
-    except (KeyError, ProblemsFound):  # no such line in one of them; figures beyond what can be computed
-        return None
+    def _told(self, key: tuple[str, str], way: Way, get: Callable[[Ledger], Number]) -> Change | None:
+        try:
+            with within_reach(self.before.chain):
+                return Change(get(self.before), get(self.after), way)
+        except (KeyError, ProblemsFound):  # no such line in one of them; figures beyond what can be computed
+            return None
 
 
 def _lines(of: Ledger) -> dict[str, Line]:
@@ -231,5 +243,5 @@ def _standing(of: Ledger, rail: str) -> str:
 def changes(before: Ledger, after: Ledger) -> Changes:
     """What moved from `before` to `after`."""
     old, new = ([stage.name for stage in of.chain.stages] for of in (before, after))
-    return Changes(before, after, tuple(name for name in new if name not in old),
+    return Changes(after, before, tuple(name for name in new if name not in old),
                    tuple(name for name in old if name not in new))

@@ -6,7 +6,7 @@ gives d(figure)/d(element), a complex step through bias, card and stage formulas
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
@@ -16,7 +16,8 @@ from polebook.book.noise_slopes import Slopes, slopes_of
 from polebook.book.shares import derivatives
 from polebook.book.solution import Solution
 from polebook.chain.model import Chain
-from polebook.circuit.build import CURRENT_KEYS, values_and_noise
+from polebook.circuit.build import CURRENT_KEYS, Circuit, values_and_noise
+from polebook.devices.spectrum import Spectrum
 from polebook.formula import Formula
 from polebook.solve.contributions import contributions
 from polebook.solve.transfer import adjoint, branch_currents
@@ -36,6 +37,7 @@ FORMULAS = (
 FIGURES = ("gain", "lower_edge", "upper_edge", "noise")
 if TYPE_CHECKING:
     from polebook.book.noise import Noise
+    from polebook.solve.sweep import Array
 
 STEP = 1e-30  # imaginary share of a key's value: its square is nothing
 
@@ -139,17 +141,7 @@ def through_bias(of: Solution, partial: dict[str, dict[int, float] | None], slop
     On the noise, what the path does to its sources comes to it.
     """
     count = len(paths)
-    numbers = of.chain.numbers
-    override: dict[str, Any] = {}
-    for k, path in enumerate(paths):
-        stepped = np.full(count, numbers[path], dtype=complex)
-        stepped[k] *= 1 + 1j * STEP
-        override[path] = stepped
-    with np.errstate(all="ignore"):
-        stepped_values, spectra = values_and_noise(of.circuit, override)
-        moved = np.array([np.broadcast_to(value, (count,)) for value in stepped_values], dtype=complex)
-        relative = moved.imag / STEP / np.array(of.circuit.network.values, dtype=float)[:, None]
-    relative = np.where(np.isfinite(relative), relative, 0.0)  # a device cut off has figures that nothing moves
+    relative, spectra = of_elements(of.circuit, paths)
     rows: dict[str, Any] = {}
     for name, each in partial.items():
         weights = None if each is None else np.array([each[index] for index in range(relative.shape[0])])
@@ -157,3 +149,19 @@ def through_bias(of: Solution, partial: dict[str, dict[int, float] | None], slop
     if slopes is not None:
         rows["noise"] = rows["noise"] + slopes.moved(spectra, count, STEP)
     return [{name: None if row is None else float(row[k]) for name, row in rows.items()} for k in range(count)]
+
+
+def of_elements(of: Circuit, paths: Sequence[str]) -> tuple[Array, list[Spectrum]]:
+    """d ln(element)/d ln(path), (elements, paths), and the noise sources stepped by `STEP`, path by path."""
+    count = len(paths)
+    override: dict[str, Any] = {}
+    for k, path in enumerate(paths):
+        stepped = np.full(count, of.chain.numbers[path], dtype=complex)
+        stepped[k] *= 1 + 1j * STEP
+        override[path] = stepped
+    with np.errstate(all="ignore"):
+        values, spectra = values_and_noise(of, override)
+        moved = np.array([np.broadcast_to(value, (count,)) for value in values], dtype=complex)
+        relative = moved.imag / STEP / np.array(of.network.values, dtype=float)[:, None]
+    # a device cut off has figures that nothing moves
+    return np.where(np.isfinite(relative), relative, 0.0), spectra

@@ -75,6 +75,8 @@ class Chain:
     given    the paths that the file itself states (no defaults)
     places   path -> where its value stands in the file, of words too; also "Q1" (the stage's header), "device.D",
              "bench.1", and "source", "load", "supply", "target", "preferred", "tolerance" (line 0 where absent)
+    output   the stage at whose output the chain is looked at, all that follows hanging there; "" for the load. No file
+             says so: a bench that was measured there asks for it.
     """
 
     path: str
@@ -92,6 +94,7 @@ class Chain:
     target_note: str = ""
     has_targets: bool = False
     digest: str = ""
+    output: str = ""
 
     def get(self, path: str, default: float | None = None) -> float | None:
         """The number at `path`, or `default`."""

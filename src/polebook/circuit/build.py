@@ -35,7 +35,10 @@ class Circuit:
 
 
 def circuit(chain: Chain) -> Circuit:
-    """Solves the bias, and lays out the network. Raises ProblemsFound where a needed figure cannot be had."""
+    """Solves the bias, and lays out the network. Raises ProblemsFound where a needed figure cannot be had.
+
+    Where the chain is looked at ahead of its load, what follows is one segment with the load, and no way to go on.
+    """
     plan = bias.plan(chain)
     get = chain.numbers.get
     points = bias.solve(plan, get)
@@ -43,20 +46,30 @@ def circuit(chain: Chain) -> Circuit:
     source = recorder.begin("source", chain.source_kind, GROUND)
     emf, source.after = terminals.source(recorder, chain.source_kind == "voltage", get)
     lacks: list[tuple[Stage, Lack]] = []
+    at, ended = source.after, False
     for stage in chain.stages:
-        before = recorder.segments[-1].after
-        segment = recorder.begin(stage.name, stage.kind, before)
-        segment.after = before
+        if ended:
+            recorder.within(stage.name)
+        else:
+            segment = recorder.begin(stage.name, stage.kind, at)
         if not stage.left_out:
             given, missing = given_of(chain, stage, get, points)
             lacks += [(stage, lack) for lack in missing]
             if not missing:
-                segment.after = STAMPS[KINDS[stage.kind].topology](recorder, before, given)
+                at = STAMPS[KINDS[stage.kind].topology](recorder, at, given)
+        if not ended:
+            segment.after = at
+        if stage.name == chain.output:
+            recorder.begin("load", "load", at).after = at
+            ended = True
     if lacks:
         raise ProblemsFound([_problem(chain, plan, stage, lack) for stage, lack in lacks], "")
-    before = recorder.segments[-1].after
-    load = recorder.begin("load", "load", before)
-    load.after = terminals.load(recorder, before, get)
+    if ended:
+        recorder.within("load")
+        terminals.load(recorder, at, get)
+    else:
+        load = recorder.begin("load", "load", at)
+        load.after = terminals.load(recorder, at, get)
     layout = arrange(recorder, emf)
     return Circuit(chain, plan, layout, points, network(layout, recorder.values))
 

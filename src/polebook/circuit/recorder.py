@@ -31,12 +31,19 @@ class Recorder:
     untold: list[tuple[str, str]] = field(default_factory=list)
     told: list[bool] = field(default_factory=list)
     _own: dict[tuple[int, str], int] = field(default_factory=dict)
+    _owner: str = ""
+    _owners: int = 0
 
     def begin(self, name: str, kind: str, before: int) -> Segment:
         """Opens the next segment; all that is stamped from now on is its own."""
         segment = Segment(name, kind, before)
         self.segments.append(segment)
+        self.within(name)
         return segment
+
+    def within(self, owner: str) -> None:
+        """Whose the parts are that are stamped from now on, in the segment that is open."""
+        self._owner, self._owners = owner, self._owners + 1
 
     def stands(self, value: Value | None) -> bool:
         return self._stands(value)
@@ -82,10 +89,10 @@ class Recorder:
         self._segment.storages.append(Storage(self._part(part, "tau", "low", tau), node))
 
     def noise_current(self, part: str, i: int, j: int, spectrum: Spectrum | None) -> None:
-        self._noise(NoiseSource(self._segment.name, part, len(self.segments) - 1, i, j), spectrum)
+        self._noise(NoiseSource(self._owner, part, len(self.segments) - 1, i, j), spectrum)
 
     def noise_voltage(self, part: str, node: int, ahead: int, spectrum: Spectrum | None) -> None:
-        source = NoiseSource(self._segment.name, part, len(self.segments) - 1, GROUND, GROUND, node, ahead)
+        source = NoiseSource(self._owner, part, len(self.segments) - 1, GROUND, GROUND, node, ahead)
         self._noise(source, spectrum)
 
     def _noise(self, source: NoiseSource, spectrum: Spectrum | None) -> None:
@@ -102,7 +109,7 @@ class Recorder:
 
     def _new_node(self, label: str, site: str, driven: bool) -> int:
         number = len(self.names)
-        self.names.append(f"{self._segment.name}.{label}")
+        self.names.append(f"{self._owner}.{label}")
         self.sites.append(site)
         self.is_driven.append(driven)
         self._segment.nodes.append(number)
@@ -130,12 +137,12 @@ class Recorder:
 
     def _part(self, name: str, type_: str, role: str, value: Value, silent: bool = False) -> int:
         """Number of the part; a name stamped twice (cin_cm of both inputs) is one part in two places."""
-        index = self._own.get((len(self.segments), name))
+        index = self._own.get((self._owners, name))
         self.fresh.append(index is None)
         if index is not None:
             return index
-        self._own[len(self.segments), name] = len(self.parts)
-        self.parts.append(Part(self._segment.name, name, type_, role, len(self.segments) - 1, silent))
+        self._own[self._owners, name] = len(self.parts)
+        self.parts.append(Part(self._owner, name, type_, role, len(self.segments) - 1, silent))
         self.values.append(value)
         return len(self.parts) - 1
 

@@ -1,11 +1,12 @@
-"""`polebook audit FILE...`: does each chain reach its targets?"""
+"""`polebook audit FILE...`: does each chain reach its targets, and does its record still hold?"""
 
 from __future__ import annotations
 
 import argparse
-from time import monotonic
+import os
 from typing import TYPE_CHECKING, Any
 
+from polebook.cli.built import hand_yield
 from polebook.cli.command import FAULT, MET, MISSED, Command
 from polebook.cli.out import Out
 from polebook.problem import Problem, ProblemsFound
@@ -18,19 +19,28 @@ _ABOUT = """Does each chain reach its targets? One line a target: wanted, got, m
 A target for the yield is judged by 10000 built chains from seed 1, the same as
 polebook spread makes; a file without one builds nothing.
 
-exit codes: 0 all met, or no targets set; 1 one is missed or not judged; 2 a file is at fault
-(the others are judged all the same)"""
+Where there is a record beside a file (polebook post writes it) an audit says when
+it is older than the file, or when polebook has other figures for the file by now.
+With --posted that counts as missed, and so does a file of which nothing is posted.
+The name of a record stands for its chain, so that *.toml may be told.
 
-QUICK_S, REPAINT_S = 0.4, 0.1  # what is built by then shows no progress; least time between two paints
+exit codes: 0 all met, or no targets set; 1 one is missed or not judged, or with
+--posted a record does not hold; 2 a file is at fault (the others are judged all
+the same)
+
+examples:
+  polebook audit chains/*.toml
+  polebook audit --posted chains/*.toml"""
 
 
 def _arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("files", metavar="FILE", nargs="+", help="chain files (TOML)")
+    parser.add_argument("--posted", action="store_true", help="the record of every file must be there, and hold")
     parser.add_argument("--json", action="store_true", help="the verdicts as JSON, at full precision")
 
 
 def _run(args: argparse.Namespace, out: Out) -> int:
-    done = [_judge(file, out, args.json) for file in args.files]
+    done = [_judge(file, out, args.json, args.posted) for file in _chains(args.files)]
     code: int = max(entry["exit"] for entry in done)
     if args.json:
         from polebook.report.jsonout import dump
@@ -39,7 +49,16 @@ def _run(args: argparse.Namespace, out: Out) -> int:
     return code
 
 
-def _judge(file: str, out: Out, quiet: bool) -> dict[str, Any]:
+def _chains(files: list[str]) -> list[str]:
+    """The files, a record's chain in its place where that is not named as well."""
+    from polebook.record.posted_names import chain_of  # deferred: --help needs none of it
+
+    chains = [(file, chain_of(file)) for file in files]
+    plain = {os.path.normpath(file) for file, chain in chains if chain is None}
+    return [chain or file for file, chain in chains if chain is None or os.path.normpath(chain) not in plain]
+
+
+def _judge(file: str, out: Out, quiet: bool, strict: bool) -> dict[str, Any]:
     """The entry of one file in the JSON answer; its text is written as soon as it is known, unless `quiet`."""
     from polebook.chain import read
 
@@ -48,44 +67,49 @@ def _judge(file: str, out: Out, quiet: bool) -> dict[str, Any]:
         from polebook.book import build  # deferred: a faulty file is told without numpy, 75 ms sooner
 
         ledger = build.ledger(chain)  # leverage, which the verdict takes, is more than an audit asks for
-        spread = _built(ledger, file, out) if "target.yield" in chain.given and ledger.judged else None
+        spread = hand_yield(ledger, file, out)
         document = build.document(ledger, (build.BAND, "targets", *(() if ledger.judged else ("verdict",))))
     except ProblemsFound as found:
         out.found(found)
         problems = [_problem(problem) for problem in found.problems]
-        return {"file": file, "digest": None, "targets": None, "spread": None, "exit": FAULT, "problems": problems}
+        return {"file": file, "digest": None, "targets": None, "spread": None, "posted": None, "exit": FAULT,
+                "problems": problems}
+    posted, problems = _posted(file, ledger, out)
     targets = list(document["targets"] or [])
     if not quiet:
         from polebook.report.audit import audit
 
-        out.write(audit(file, {**document, "spread": spread}, out.look))
+        out.write(audit(file, {**document, "spread": spread, "posted": posted}, out.look, strict))
     # targets that an unstable chain could not even be asked for are missed, not absent
     unasked = document["targets"] is None and chain.has_targets
     code = MISSED if unasked or any(entry["met"] is not True for entry in targets) else MET
-    return {"file": file, "digest": document["chain"]["digest"], "targets": targets, "spread": spread, "exit": code,
-            "problems": []}
+    if strict and posted["state"] != "current":
+        code = FAULT if problems else MISSED
+    return {"file": file, "digest": document["chain"]["digest"], "targets": targets, "spread": spread,
+            "posted": posted, "exit": code, "problems": problems}
 
 
-def _built(ledger: Ledger, file: str, out: Out) -> dict[str, Any] | None:
-    """Hands the ledger its yield; what that was found from, None where the chain has no target to build for."""
-    from polebook.book.asked import Built
-    from polebook.plan import yielded  # deferred: few files ask for a yield
+def _posted(file: str, ledger: Ledger, out: Out) -> tuple[dict[str, Any], list[dict[str, Any]]]:
+    """How the record stands to the file, and what is wrong with the record."""
+    from polebook.record.posted_names import record_of  # deferred: --help needs none of it
 
-    result, next_s = None, monotonic() + QUICK_S
+    name = record_of(file)
+    row: dict[str, Any] = {"state": "none", "record": name, "date": None, "digest": None, "message": None,
+                           "version": None, "moved": []}
+    if not os.path.lexists(name):
+        return row, []
+    from polebook.record import post as record  # deferred: few files have a record; saves the others 4 ms
+
     try:
-        for done, total, so_far in yielded.built(ledger.chain):
-            result = so_far
-            if (now_s := monotonic()) > next_s:
-                next_s = now_s + REPAINT_S
-                out.progress(f" {file}: {done} of {total} built (ctrl-c stops)")
-        built, row = yielded.answer(result)
-        ledger.hand(built)
-    except ProblemsFound:  # the chain itself has figures: only its yield is lost
-        ledger.hand(Built(None, "its builds can't be computed"))
-        row = None
-    finally:
-        out.progress("")
-    return row
+        standing = record.standing(file, ledger)
+    except ProblemsFound as found:
+        out.found(found)
+        return {**row, "state": "fault"}, [_problem(problem) for problem in found.problems]
+    if newest := standing.newest:
+        row |= {"date": newest.date.isoformat(), "digest": newest.digest, "message": newest.message,
+                "version": newest.version}
+    moved = [{"figure": one.name, "posted": one.before, "now": one.after} for one in standing.moved]
+    return {**row, "state": standing.state, "moved": moved}, []
 
 
 def _problem(problem: Problem) -> dict[str, Any]:

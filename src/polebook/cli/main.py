@@ -24,6 +24,12 @@ COMMANDS = {
     "compensate": "the capacitor or coil that puts the upper end of the band right",
     "couple": "size coupling and bypass capacitors for a lower edge",
     "stages": "how many stages: gain and bandwidth of 1 to 8 like ones",
+    "post": "keep the figures in the record beside the file",
+    "compare": "what changed since a revision or a post, and what each change did",
+    "bench": "what was measured on hardware, against the plan",
+    "fit": "fit keys to a measured sweep, with standard errors",
+    "report": "a design review in Markdown, with drawings beside it",
+    "draw": "one drawing as SVG: response, account, pulse, levels",
     "start": "write a new chain that computes at once",
     "set": "change one value in a chain file",
     "unset": "take one key out of a chain file",
@@ -50,6 +56,8 @@ exit codes: 0 done, and every target met; 1 a target missed or not judged
 
 def main(argv: Sequence[str] | None = None) -> int:
     """Run the command line `argv` (default: the process's own arguments). Returns the exit code."""
+    # before numpy comes in: at small matrices several threads wait on each other, which is twice the work and more
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     out = standard()
     try:
         return _run(list(sys.argv[1:] if argv is None else argv), out)

@@ -1,8 +1,10 @@
-"""Options that are quantities."""
+"""Options that are quantities or whole numbers."""
 
 from __future__ import annotations
 
 from polebook.cli.command import Usage
+
+_MOST = 20  # digits of a whole number
 
 
 def quantity(command: str, option: str, typed: str, dimension: str) -> float:
@@ -18,3 +20,13 @@ def quantity(command: str, option: str, typed: str, dimension: str) -> float:
         raise Usage(f'polebook {command}: {option}: "{typed}" is not above zero', f"write it like {option} {example}",
                     f"it is to be {noun} above zero")
     return value
+
+
+def whole(command: str, option: str, typed: str | None, example: str) -> int | None:
+    """A whole number as typed, None for none. Raises Usage."""
+    if typed is None:
+        return None
+    typed = typed.strip()
+    if not (typed.isdecimal() and typed.isascii() and len(typed) <= _MOST):
+        raise Usage(f'polebook {command}: {option}: "{typed}" is no whole number', f"write it like {option} {example}")
+    return int(typed)

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 
 from polebook.cli.command import INTERRUPTED, MET, Command, Usage
 from polebook.cli.out import Out
+from polebook.cli.quantities import whole
 from polebook.cli.table_file import STANDARD, check, csv_option
 from polebook.report.look import Look
 
@@ -55,7 +56,8 @@ def _run(args: argparse.Namespace, out: Out) -> int:
     check(args.csv, args.file)
     if args.json and args.csv == STANDARD:
         raise Usage("polebook spread: --json and --csv both go to the standard output", "name a file: --csv builds.csv")
-    builds, seed = _whole("--builds", args.builds, "10000"), _whole("--seed", args.seed, "1")
+    builds, seed = (whole("spread", option, typed, example) for option, typed, example in
+                    (("--builds", args.builds, "10000"), ("--seed", args.seed, "1")))
     limits = None if args.temperature is None else temperature(args.temperature)
     from polebook.chain import read
 
@@ -63,19 +65,9 @@ def _run(args: argparse.Namespace, out: Out) -> int:
     from polebook.plan.spread import model  # deferred: a faulty file is told without numpy, 75 ms sooner
 
     request = model.Request(chain, model.BUILDS if builds is None else builds, model.SEED if seed is None else seed)
-    result = _done(_at(request, limits), out)
+    result = done(_at(request, limits), out)
     _tell(args, chain, result, limits, out)
     return MET if result.complete else INTERRUPTED
-
-
-def _whole(option: str, typed: str | None, example: str) -> int | None:
-    """A whole number as typed, None for none. Raises Usage."""
-    if typed is None:
-        return None
-    typed = typed.strip()
-    if not (typed.isdecimal() and typed.isascii() and len(typed) <= 20):
-        raise Usage(f'polebook spread: {option}: "{typed}" is no whole number', f"write it like {option} {example}")
-    return int(typed)
 
 
 def temperature(typed: str) -> tuple[float, float]:
@@ -108,7 +100,7 @@ def _at(request: Request, limits: tuple[float, float] | None) -> Request:
     return replace(request, chain=with_numbers(request.chain, {_TEMPERATURE: limits[0]}))
 
 
-def _done(request: Request, out: Out) -> Result:
+def done(request: Request, out: Out) -> Result:
     """The whole spread; after ctrl-c what there is of it. Raises KeyboardInterrupt where that is nothing."""
     from polebook.book.reach import within_reach
     from polebook.plan import pacing
@@ -120,10 +112,10 @@ def _done(request: Request, out: Out) -> Result:
     try:
         with within_reach(request.chain):
             request, _ = pacing.paced(request)
-            for done, total, result in run.spread(request):
+            for solved, total, result in run.spread(request):
                 if (now_s := monotonic()) > next_s:
                     next_s = now_s + REPAINT_S
-                    out.progress(_progress(result, done / total, look))
+                    out.progress(_progress(result, solved / total, look))
     except KeyboardInterrupt:
         if result is None:
             out.progress("")

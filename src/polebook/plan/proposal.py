@@ -143,7 +143,7 @@ def propose(text: str, file: str, values: Mapping[str, Wanted], label: str = "",
     keys = tuple(_key(path, param, here, raw_text(after_data, after_spans, locate(path, after_data).path),
                       reading.chain, after_chain) for path, param, here in spelled)
     with within_reach(after_chain):
-        told, mended = _beyond(new.cautions, old.cautions), _beyond(old.cautions, new.cautions)
+        told, mended = beyond(new.cautions, old.cautions), beyond(old.cautions, new.cautions)
         both = pairs(old, new)
     return Proposal(keys, both, told, mended, edit, old, new)
 
@@ -153,7 +153,7 @@ def pairs(before: Ledger, after: Ledger) -> tuple[Judged, ...]:
     return tuple(Judged(a.name, a, b) for a, b in zip(before.targets, after.targets, strict=True))
 
 
-def _beyond(cautions: Iterable[Problem], others: Iterable[Problem]) -> tuple[str, ...]:
+def beyond(cautions: Iterable[Problem], others: Iterable[Problem]) -> tuple[str, ...]:
     """The sentences of cautions that are not among others, whatever figures these tell.
 
     That an estimate of an edge is off is said of the estimate, not of the chain.

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Generator, Iterator
 from dataclasses import replace
 from typing import Any
 
 from polebook.book.asked import Built
+from polebook.book.ledger import Ledger
 from polebook.book.reach import within_reach
 from polebook.chain.model import Chain
 from polebook.plan.pacing import FEW, paced
@@ -15,6 +16,7 @@ from polebook.plan.spread.judge import ALL, judged
 from polebook.plan.spread.model import BUILDS, SEED, Request, Result
 from polebook.plan.spread.run import spread
 from polebook.plan.spread_document import share
+from polebook.problem import ProblemsFound
 
 NOTHING = "no target that builds are judged by"
 
@@ -55,3 +57,17 @@ def answer(of: Result | None) -> tuple[Built, dict[str, Any] | None]:
            "states": of.failures()}
     cause = f"{100.0 * alone[worst]:.1f} % of the built chains meet {worst}"
     return Built(told.shares[ALL].share, "", cause), row
+
+
+def hand(of: Ledger) -> Generator[tuple[int, int], None, dict[str, Any] | None]:
+    """Hands `of` the yield of its builds; yields (done, total) meanwhile, and returns the row that `answer` gives."""
+    result = None
+    try:
+        for done, total, so_far in built(of.chain):
+            result = so_far
+            yield done, total
+        made, row = answer(result)
+    except ProblemsFound:  # the chain itself has figures: only its yield is lost
+        made, row = Built(None, "its builds can't be computed"), None
+    of.hand(made)
+    return row

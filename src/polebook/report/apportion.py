@@ -12,7 +12,7 @@ from polebook.report.sections import paragraph, unparted
 from polebook.report.table import Cell, Column, Row, table
 
 _MET = {True: Cell("met", "good"), False: Cell("missed", "bad"), None: Cell("not judged", "warn")}
-_FIGURES = (
+FIGURES = (
     ("gain_db", "gain", "dB", "gain"), ("lower_edge_hz", "lower edge", "Hz", "lower"),
     ("upper_edge_hz", "upper edge", "Hz", "upper"), ("peaking_db", "peaking", "dB", "peaking"),
     ("rise_time_s", "rise time", "s", "rise"), ("overshoot_percent", "overshoot", "%", "overshoot"),
@@ -95,7 +95,7 @@ def other_figures(one: Entry) -> Iterator[tuple[str, str, float | None, float | 
     unit_in = "V" if after["gain_unit"] == "V/V" else "A"
     units = {"noise": f"{unit_in}/√Hz", "source": unit_in, "%": "share"}
     told = {target["name"] for target in one["targets"]}
-    for key, name, unit, target in _FIGURES:
+    for key, name, unit, target in FIGURES:
         unit = units.get(unit, unit)
         if target not in told:
             old, new = (side[key] / 100 if unit == "share" and side[key] is not None else side[key]

@@ -6,6 +6,7 @@ import re
 from textwrap import wrap
 
 from polebook.report import figures as show
+from polebook.report import markdown
 from polebook.report.document import Document, Entry, bridge_of, entries, greatest, input_node, output_node, part_name
 from polebook.report.look import Look, cells, fit
 from polebook.report.table import Cell, Column, table
@@ -129,12 +130,18 @@ def verdict(document: Document, look: Look) -> list[str]:
 
 def cautions(document: Document, look: Look) -> list[str]:
     """Every caution, with the name of what it is about where it does not say so itself."""
-    lines: list[str] = []
+    lines = [line for text in warnings(document) for line in paragraph(text, look, hang=3)]
+    return [" " + look.paint("cautions", "warn"), *lines] if lines else []
+
+
+def warnings(document: Document) -> list[str]:
+    """The cautions as sentences."""
+    told = []
     for caution in entries(document, "cautions"):
         about, text = caution["stage"], caution["text"]
         named = not about or about == "supply" or re.search(rf"(?<!\w){re.escape(about)}(?!\w)", text)
-        lines += paragraph(text if named else f"{about}: {text}", look, hang=3)
-    return [" " + look.paint("cautions", "warn"), *lines] if lines else []
+        told.append(text if named else f"{about}: {text}")
+    return told
 
 
 def bridges(document: Document, look: Look) -> list[str]:
@@ -171,6 +178,8 @@ def _of_no_use(bridge: Entry) -> bool:
 
 def paragraph(text: str, look: Look, style: str = "", hang: int = 1) -> list[str]:
     """`text` wrapped to the width, indented by one; lines after the first by `hang`. No-break spaces hold."""
+    if isinstance(look, markdown.Markup):
+        return markdown.paragraph(look.text(text.replace(NO_BREAK, " ")))
     lines = wrap(look.text(text), look.width - 1, initial_indent=" ", subsequent_indent=" " * hang)
     return [look.paint(line.replace(NO_BREAK, " "), style) for line in lines]
 

@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from polebook.report.look import Look, cells, fit
+from polebook.report.markdown import Markup, piped
 
 GAP = 2
 LEAST = 4  # what a cut column keeps
@@ -33,6 +34,10 @@ Row = Sequence[Cell | str]
 def table(columns: Sequence[Column], rows: Sequence[Row], look: Look, gap: int = GAP) -> list[str]:
     """The heading and the rows as lines, indented by one, each within `look.width` columns."""
     body = [[_shown(cell, look) for cell in row] for row in rows]
+    if isinstance(look, Markup):
+        return piped([look.text(" ".join(column.title.split("\n"))) for column in columns],
+                     [column.right for column in columns],
+                     [[look.paint(cell.text, cell.style) for cell in row] for row in body])
     heads = [[look.text(part) for part in column.title.split("\n")] for column in columns]
     widths = [
         max([*map(cells, heads[at]), *(cells(row[at].text) for row in body)], default=0) for at in range(len(columns))

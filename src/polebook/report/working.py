@@ -24,24 +24,29 @@ _WORDS = frozenset({"sqrt", "ln", "log10", "exp", "cos", "max", "min", "pi"})
 
 def working(document: Entry, title: str, file: str, look: Look) -> str:
     """The page of one working, a dict as `Working.document` makes it."""
+    first, *rest = [heading({"chain": {"title": title}}, file, look), *blocks(document, look)]
+    return "\n".join(first) + "\n" + "\n".join("\n".join(block) + "\n" for block in rest)
+
+
+def blocks(document: Entry, look: Look) -> list[list[str]]:
+    """What the page says, in blocks of lines."""
     document = finite(document)
-    blocks = [heading({"chain": {"title": title}}, file, look), _head(document, look)]
+    found = [_head(document, look)]
     if document["why"]:
-        blocks.append(paragraph(f"It is null: {document['why']}.", look))
+        found.append(paragraph(f"It is null: {document['why']}.", look))
     if document["formula"] and not _told(document):
-        blocks.append(_statement(document["formula"], look))
+        found.append(_statement(document["formula"], look))
     values = {number["symbol"]: number for number in document["numbers"]}
     for step in document["steps"]:
-        blocks.append(_step(step, values, look))
+        found.append(_step(step, values, look))
         values[step["symbol"]] = step
     if document["numbers"]:
-        blocks.append(_numbers(document["numbers"], look))
+        found.append(_numbers(document["numbers"], look))
     if document["note"]:
-        blocks.append(paragraph(document["note"], look))
+        found.append(paragraph(document["note"], look))
     if document["source"]:
-        blocks.append(paragraph(f"source: {document['source']}", look, hang=3))
-    first, *rest = blocks
-    return "\n".join(first) + "\n" + "\n".join("\n".join(block) + "\n" for block in rest)
+        found.append(paragraph(f"source: {document['source']}", look, hang=3))
+    return found
 
 
 def names(known: Iterable[str], look: Look) -> str:

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import os
 from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
 
-from polebook.book.compare import Changes, changes
 from polebook.book.ledger import Ledger, ledger
 from polebook.book.reach import within_reach
 from polebook.chain.model import Chain
@@ -16,6 +16,9 @@ from polebook.text import files
 from polebook.text.edit import Edit, Splice
 from polebook.text.files import Identity
 from polebook.text.history import History
+
+if TYPE_CHECKING:
+    from polebook.session.baselines import Against
 
 _SECTIONS = ("targets", "lines", "sites", "upper_account", "lower_account", "owns_upper", "owns_lower", "cautions",
              "verdict")
@@ -36,7 +39,8 @@ class Session:
     problems   faults of the text now, or why its chain has no ledger
     ledger     of the chain now, None where it has none
     good       the last ledger that there was: the same as `ledger` where there is one
-    baseline   the pinned ledger
+    baseline   the ledger that figures are told against: pinned, or of a revision
+    against    what is told of a baseline from the record; with a post it is all there is. None of a pin
     exists     the file is on the disk
     identity   what tells whether it is still the one that was read
     held       which other polebook has the file, "" for none: while one has, nothing is written
@@ -56,6 +60,7 @@ class Session:
     identity: Identity | None = None
     held: str = ""
     gone: bool = False
+    against: Against | None = None
 
     @property
     def saved(self) -> bool:
@@ -228,16 +233,9 @@ def set_text(session: Session, text: str, now: float) -> Session:
 
 def pin(session: Session) -> Session:
     """The session with today's figures as the baseline."""
-    return replace(session, baseline=session.good)
+    return replace(session, baseline=session.good, against=None)
 
 
 def unpin(session: Session) -> Session:
     """The session without a baseline."""
-    return replace(session, baseline=None)
-
-
-def moved(session: Session) -> Changes | None:
-    """What moved against the baseline; None without a baseline or without a ledger."""
-    if session.baseline is None or session.ledger is None:
-        return None
-    return changes(session.baseline, session.ledger)
+    return replace(session, baseline=None, against=None)

@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
+from polebook.session.baselines import Against, SincePost, moved, posted, set_against, since, stands
 from polebook.session.opened import (
     ChangedOnDisk,
     Session,
     agreed,
     apply,
     changed_on_disk,
-    moved,
     new_session,
     open_file,
     pin,
@@ -36,8 +36,8 @@ from polebook.session.stages import (
 from polebook.session.values import set_value, step
 
 __all__ = [
-    "ChangedOnDisk", "KeyRow", "Session", "add_stage", "agreed", "apply", "change_kind", "changed_on_disk",
-    "copy_stage", "keys_of", "move_stage", "moved", "new_session", "open_file", "pin", "redo", "reload", "remove_stage",
-    "rename_stage", "reread", "save", "set_note", "set_text", "set_value", "sheets_of", "step", "take_card",
-    "toggle_left_out", "undo", "unpin", "whole",
+    "Against", "ChangedOnDisk", "KeyRow", "Session", "SincePost", "add_stage", "agreed", "apply", "change_kind",
+    "changed_on_disk", "copy_stage", "keys_of", "move_stage", "moved", "new_session", "open_file", "pin", "posted",
+    "redo", "reload", "remove_stage", "rename_stage", "reread", "save", "set_against", "set_note", "set_text",
+    "set_value", "sheets_of", "since", "stands", "step", "take_card", "toggle_left_out", "undo", "unpin", "whole",
 ]

@@ -13,6 +13,7 @@ from polebook.problem import Place, Problem, ProblemsFound
 from polebook.text.toml import LARGEST, too_large
 
 _NO_BLOCK = getattr(os, "O_NONBLOCK", 0) | getattr(os, "O_CLOEXEC", 0) | getattr(os, "O_NOCTTY", 0)
+_CHAIN = "a chain file"
 _REASONS = {
     errno.ENOENT: ("there is no such file", "name an existing file"),
     errno.ENOTDIR: ("a part of its path is a file, not a folder", "name an existing file"),
@@ -55,22 +56,30 @@ class FileText:
 def read(path: str | os.PathLike[str]) -> FileText:
     """The text of the file at `path`, UTF-8, at most 512 KiB. Raises ProblemsFound; never waits on a pipe or device."""
     name = os.fspath(path)
+    data, status = contents(name, LARGEST)
+    if len(data) > LARGEST:
+        raise ProblemsFound([too_large(name, max(status.st_size, len(data)))])
+    text = decoded(name, data)
+    mode = stat.S_IMODE(status.st_mode)
+    return FileText(name, text, mode, _identity(status), newline(text), not os.access(name, os.W_OK))
+
+
+def contents(name: str, most: int, what: str = _CHAIN) -> tuple[bytes, os.stat_result]:
+    """What the file `name` holds, one byte past `most` at most, and its state; `what` says what is asked for.
+
+    Raises ProblemsFound; never waits on a pipe or device.
+    """
     try:
-        _check_kind(name, os.stat(name))  # first, for to open a device may be to set it going
+        _check_kind(name, os.stat(name), what)  # first, for to open a device may be to set it going
         handle = os.open(name, os.O_RDONLY | _NO_BLOCK)
         try:
             status = os.fstat(handle)
-            _check_kind(name, status)
-            data = _contents(handle)
+            _check_kind(name, status, what)
+            return _contents(handle, most), status
         finally:
             os.close(handle)
     except (OSError, ValueError) as error:  # ValueError: a NUL in the name
         raise _failed(name, error, "read") from None
-    if len(data) > LARGEST:
-        raise ProblemsFound([too_large(name, max(status.st_size, len(data)))])
-    text = _decoded(name, data)
-    mode = stat.S_IMODE(status.st_mode)
-    return FileText(name, text, mode, _identity(status), newline(text), not os.access(name, os.W_OK))
 
 
 def newline(text: str) -> str:
@@ -156,27 +165,28 @@ def _existing(name: str, target: str) -> os.stat_result | None:
     return status
 
 
-def _check_kind(name: str, status: os.stat_result) -> None:
+def _check_kind(name: str, status: os.stat_result, what: str = _CHAIN) -> None:
     if stat.S_ISREG(status.st_mode):
         return
     if stat.S_ISDIR(status.st_mode):
-        problem = Problem(Place(name), "this is a folder", "a chain file is asked for", "name a file in it")
+        problem = Problem(Place(name), "this is a folder", f"{what} is asked for", "name a file in it")
     else:
-        problem = Problem(Place(name), "this is a pipe or a device", "a chain file is asked for", "name a file")
+        problem = Problem(Place(name), "this is a pipe or a device", f"{what} is asked for", "name a file")
     raise ProblemsFound([problem])
 
 
-def _contents(handle: int) -> bytes:
-    """What the file holds, one byte past the limit at most."""
+def _contents(handle: int, most: int) -> bytes:
+    """What the file holds, one byte past `most` at most."""
     parts: list[bytes] = []
-    room = LARGEST + 1
+    room = most + 1
     while room > 0 and (part := os.read(handle, room)):
         parts.append(part)
         room -= len(part)
     return b"".join(parts)
 
 
-def _decoded(name: str, data: bytes) -> str:
+def decoded(name: str, data: bytes) -> str:
+    """The text of UTF-8 `data`; `name` is the name that a problem carries. Raises ProblemsFound."""
     try:
         return data.decode("utf-8")
     except UnicodeDecodeError as error:

@@ -23,6 +23,7 @@ from polebook.tui.control import Outcome, jobs, paste, press, watching
 from polebook.tui.control.base import refuse
 from polebook.tui.draw.screen import screen
 from polebook.tui.guardian import Guardian
+from polebook.tui.historian import Historian
 from polebook.tui.lines import Line
 from polebook.tui.paint import changed
 from polebook.tui.styles import strip
@@ -108,6 +109,7 @@ class PolebookApp(App[int], inherit_bindings=False):
         self.state = state
         self.fault: str | None = None  # what is known of the fault of ours that ended it
         self._guardian = guardian
+        self._historian = Historian()
         self.face = Face(lambda: self.state)
         self._painting: asyncio.TimerHandle | None = None
         self._working: asyncio.TimerHandle | None = None
@@ -136,6 +138,7 @@ class PolebookApp(App[int], inherit_bindings=False):
         self.app_resume_signal.subscribe(self, lambda _: self._anew())
         if self._guardian is not None:
             self._guardian.begin(loop, self.state, self._change, lambda error: terminal.fail(self, error))
+        self._historian.begin(loop, self.state, self._change, lambda error: terminal.fail(self, error))
 
     async def live(self) -> None:
         """The app from beginning to end; what ends it from outside is heard from the first moment on."""
@@ -181,6 +184,7 @@ class PolebookApp(App[int], inherit_bindings=False):
         self.state = state if outcome is Outcome.QUIT else watching.due(state, time.monotonic())
         if self._guardian is not None:
             outcome = self._kept(self._guardian, outcome)
+        self._historian.see(self.state)
         if outcome is Outcome.QUIT:
             self.exit(0)
         elif outcome is Outcome.SUSPEND:
@@ -213,6 +217,7 @@ class PolebookApp(App[int], inherit_bindings=False):
             self.state = after
             if self._guardian is not None:
                 self._guardian.see(after)
+            self._historian.see(after)
             self._soon()
 
     def _stumbled(self, loop: asyncio.AbstractEventLoop, context: dict[str, Any]) -> None:

@@ -8,7 +8,7 @@ from textwrap import wrap
 from types import MappingProxyType
 
 PAGES = {"1": "ledger", "2": "nodes", "3": "response", "4": "pulse", "5": "noise", "6": "levels", "7": "leverage",
-         "8": "spread", "9": "apportion"}
+         "8": "spread", "9": "apportion", "0": "history"}
 """Digit -> page, of the pages that there are."""
 
 
@@ -35,7 +35,7 @@ class Key:
 MOVING, VALUES, STAGES, FILE, LOOKING = "Moving", "Values", "Stages", "The file", "Looking closer"
 
 KEYS: tuple[Key, ...] = (
-    Key(tuple(PAGES), ("page",), ("1", "…", max(PAGES)), "page", "with the page focused: " + ", ".join(
+    Key(tuple(PAGES), ("page",), ("1", "…", list(PAGES)[-1]), "page", "with the page focused: " + ", ".join(
         f"{digit} {name}" for digit, name in PAGES.items()), MOVING),
     Key(("pageup", "pagedown"), ("page before", "page after"), ("PgUp", "PgDn"), "page", "page before, after", MOVING),
     Key(("left", "right"), ("line before", "line after"), ("←", "→"), "line", "line before, after (source … load)",
@@ -49,11 +49,11 @@ KEYS: tuple[Key, ...] = (
         "pan a plot left, right; spread, apportion: another seed", MOVING),
     Key(("v", "V"), ("next curve", "curve before"), ("v", "V"), "curves",
         "what the page shows: next, before (response: gain, delay, impedances; pulse: step, sag; noise: at the input, "
-        "the output; leverage: the figure that ranks; spread: figures; apportion: what is favoured)",
-        MOVING),
+        "the output; leverage: the figure that ranks; spread: figures; apportion: what is favoured; history: figures, "
+        "changes)", MOVING),
     Key(("s",), ("single lines",), ("s",), "single lines",
         "the curve of the selected line, on and off; noise: ranked line by line, part by part; of a sweep: one more "
-        "figure; spread, apportion: run it, again", MOVING),
+        "figure; spread, apportion: run it, again; history: look again", MOVING),
     Key(("tab", "shift+tab"), ("focus",), ("Tab",), "sheet, page", "sheet, page; in a field: accept and next key",
         MOVING),
     Key(("escape",), ("back",), ("Esc",), "back", "leave the field, close, back to the ledger", MOVING),
@@ -80,13 +80,15 @@ KEYS: tuple[Key, ...] = (
     Key(("e",), ("text",), ("e",), "text", "the file as text", FILE),
     Key(("u", "U"), ("undo", "redo"), ("u", "U"), "undo", "undo, redo", FILE),
     Key(("w",), ("write",), ("w",), "write", "write the file", FILE),
+    Key(("P",), ("post",), ("P",), "post", "post the saved file: its figures and a message, in its record", FILE),
     Key(("q", "ctrl+q", "ctrl+c"), ("leave",), ("q",), "leave", "leave; asks only where work is unsaved", FILE),
     Key(("ctrl+z",), ("suspend",), ("ctrl+z",), "suspend", "suspend, back to the shell; fg returns", FILE),
-    Key(("p",), ("pin",), ("p",), "pin", "pin today's figures as the baseline; again: unpin", LOOKING),
+    Key(("p",), ("pin",), ("p",), "pin", "pin today's figures as the baseline; again: no baseline", LOOKING),
     Key(("=",), ("working",), ("=",), "working", "working of the focused figure; apportion: the plan in words",
         LOOKING),
     Key(("g",), ("decibels",), ("g",), "V/V, dB", "gains in V/V or dB", LOOKING),
     Key(("b",), ("band",), ("b",), "band", "lower or upper end of the band", LOOKING),
+    Key(("B",), ("benches",), ("B",), "bench", "measured sweeps of [[bench]] over the response, on and off", LOOKING),
     Key(("!",), ("cautions",), ("!",), "cautions", "cautions and problems", LOOKING),
     Key(("?",), ("help",), ("?",), "help", "every key, and what the words mean", LOOKING),
     Key(("ctrl+l",), ("repaint",), ("ctrl+l",), "repaint", "paint the screen anew", LOOKING),
@@ -174,21 +176,23 @@ _IN_WRITING: tuple[Hint, ...] = (
     ("ctrl+f", "find"), ("ctrl+x", "line out"), ("ctrl+g", "as it was"), ("ctrl+q", "leave"))
 _IN_FAULTS: tuple[Hint, ...] = (("ctrl+n", "next fault"), *_IN_WRITING[:3], *_IN_WRITING[4:6], *_IN_WRITING[6:])
 _IN_SEARCH: tuple[Hint, ...] = (("type", "to find"), ("Enter", "next"), ("↑", "before"), ("Esc", "stay there"))
+_IN_POST: tuple[Hint, ...] = (("Enter", "post it"), ("Esc", "post nothing"))
 _OVERLAYS = {"help": _IN_TEXT, "working": _IN_TEXT, "cautions": _IN_ROWS, "leave": _IN_LEAVE, "note": _IN_NOTE,
-             "rename": _IN_NAME, "take": _IN_NAME, "start": _IN_FORM, "new": _IN_NEW,
+             "rename": _IN_NAME, "post": _IN_POST, "take": _IN_NAME, "start": _IN_FORM, "new": _IN_NEW,
              "changed": _IN_CHANGED, "recovered": _IN_CHANGED, "difference": _IN_DIFFERENCE}
-_DIGITS = f"1 … {max(PAGES)}"
+_DIGITS = f"1 … {list(PAGES)[-1]}"
 _SHEET = ("Enter", "+ -", "Tab", "=", "u U", "w", "?")
 _ON_PAGE = {
     "ledger": (_DIGITS, "Enter", ", .", "Tab", "=", "?"),
     "nodes": (_DIGITS, "Enter", ", .", "Tab", "=", "?"),
-    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", _DIGITS, "Tab", "?"),
+    "response": (", .", "z Z", "Enter", "v V", "s", "[ ]", _DIGITS, "B", "Tab", "?"),
     "pulse": (", .", "z Z", "↑ ↓", "Enter", "b", "=", "[ ]", _DIGITS, "Tab", "?"),
     "levels": (", .", "Enter", "b", "=", _DIGITS, "Tab", "?"),
     "noise": (", .", "↑ ↓", "Enter", "s", "v V", "=", "z Z", "[ ]", _DIGITS, "Tab", "?"),
     "leverage": ("Enter", "v V", "b", "=", _DIGITS, "Tab", "?"),
     "spread": ("Enter", "s", "v V", "* /", "[ ]", _DIGITS, "Tab", "?"),
     "apportion": ("Enter", "Space", "v V", "* /", "s", "[ ]", _DIGITS, "Tab", "?"),
+    "history": ("↑ ↓", "Enter", "P", "v V", "s", _DIGITS, "Tab", "?"),
 }
 
 
@@ -224,7 +228,8 @@ _WORDS = {("sheet", "Tab"): "page", ("page", "Tab"): "sheet", ("page", "Enter"):
           ("spread", "s"): "run again", ("spread", "v V"): "figure",
           ("spread", "* /"): "builds", ("spread", "[ ]"): "seed",
           ("apportion", "s"): "run", ("apportion", "v V"): "favour", ("apportion", "* /"): "all, stage",
-          ("apportion", "[ ]"): "seed", ("apportion", "Enter"): "run, accept"}
+          ("apportion", "[ ]"): "seed", ("apportion", "Enter"): "run, accept",
+          ("history", "Enter"): "baseline", ("history", "s"): "look again", ("history", "v V"): "changes"}
 
 
 def table() -> list[str]:

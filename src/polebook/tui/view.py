@@ -18,9 +18,10 @@ if TYPE_CHECKING:
     from polebook.session.watch import Look
     from polebook.tui.apportions import Going
     from polebook.tui.apportions import Run as Plan
+    from polebook.tui.histories import Benches, Known, Request, Then
     from polebook.tui.spreads import Run
 
-Page = Literal["ledger", "nodes", "response", "pulse", "noise", "levels", "leverage", "spread", "apportion"]
+Page = Literal["ledger", "nodes", "response", "pulse", "noise", "levels", "leverage", "spread", "apportion", "history"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,7 +48,7 @@ class Overlay:
     """What lies over the page: a list to choose from, or text to read.
 
     purpose  "help", "working", "cautions", "find", "add", "kind", "card", "sheets", "leave", "new", "changed",
-             "recovered", "difference"
+             "recovered", "difference", "post"
     typed    text that narrows a list (find, cards), or that is being edited (note, rename)
     row      chosen row of a list, or first line shown of a text
     """
@@ -160,6 +161,31 @@ class Apportion:
 
 
 @dataclass(frozen=True, slots=True)
+class Past:
+    """Where the user is on the history page, and what is known of posts, revisions and bench sweeps.
+
+    asked    how often it was to be looked for anew: 0 while nothing was
+    row      key of the chosen row, "" for the first
+    take     key of the row that becomes the baseline as soon as its figures are there, "" for none
+    post     what is to be posted;  told  the post that it came to is to be chosen once it is listed
+    spread   changes by meaning over the whole width, in the place of figures
+    known    None while nothing is;  thens  revisions that were solved, the last looked at behind
+    benches  the sweeps beside the file;  overlaid  they are drawn over the response
+    """
+
+    asked: int = 0
+    row: str = ""
+    take: str = ""
+    post: Request | None = None
+    told: bool = False
+    spread: bool = False
+    known: Known | None = None
+    thens: tuple[Then, ...] = ()
+    benches: Benches | None = None
+    overlaid: bool = True
+
+
+@dataclass(frozen=True, slots=True)
 class Writing:
     """The file as text while it is being edited: its own undo, the cursor in it, and what it comes to.
 
@@ -252,6 +278,7 @@ class View:
     bank: Literal["plan", "levels"] = "plan"  # of the levels page
     spread: Spread = Spread()
     apportion: Apportion = Apportion()
+    past: Past = Past()
     writing: Writing | None = None  # the text page is open
 
 

@@ -15,7 +15,8 @@ _FRAME = (
     ("the verdict", "what limits the chain now, and by which mechanism."),
     ("unsaved work", "is kept outside the file within two seconds of an edit, and offered when the file is opened "
      "again after anything but leaving by choice. What another program does to the file is noticed and asked about."),
-    ("the baseline", "p pins today's figures; from then on every figure that moved shows by how much."),
+    ("the baseline", "p pins today's figures; from then on every figure that moved shows by how much. Page 0 has "
+     "posts and revisions to take in their place."),
 )
 _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
     "ledger": (
@@ -38,7 +39,9 @@ _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
     ),
     "response": (
         ("g, p, d, Z", "at the end of a curve: gain, phase (in dots, on the right axis), delay, size of an impedance"),
-        ("b", "the pinned baseline, in dashes"),
+        ("b", "the baseline, in dashes"),
+        ("m, m1, m2", "sweeps measured on a bench, at the end of each; phases of them in dots. B takes them away. "
+         "Nothing is drawn outside of what was swept; at the cursor: planned, measured, and how far off"),
         ("own curve", "s: that of the selected line beside the chain's; of impedances the line's in place of the "
          "chain's"),
         ("limits", "the upright lines are the targets' edges; between them the response must stay above -3 dB, "
@@ -65,7 +68,7 @@ _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
          "its end and what has to be left of it"),
         ("falls by", "the parts that let go of the pulse's height at first, by their time constants; target.pulse is "
          "its length"),
-        ("b", "at the end of a curve: the pinned baseline"),
+        ("b", "at the end of a curve: the baseline"),
         ("window", ", . move the cursor; z Z closer, further about it; [ ] Home End sideways; Esc the whole again"),
     ),
     "noise": (
@@ -80,7 +83,7 @@ _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
          "cursor's sign at the cursor's frequency"),
         ("gm, ib, ig", "a device's main current, its base current, its gate leakage; en, in: an amplifier's own noise"),
         ("Enter", "to the key of the row: a part's own, the card of a device; of a figure the target or the source"),
-        ("b", "at the end of a curve: the pinned baseline"),
+        ("b", "at the end of a curve: the baseline"),
     ),
     "levels": (
         ("b", "from the d.c. plan to the levels and back; where there is room both are in sight"),
@@ -133,6 +136,17 @@ _WORDS: dict[Page, tuple[tuple[str, str], ...]] = {
         ("Enter", "takes the plan in as one edit, which u takes back; after an edit it is an old one: s runs it again"),
         ("=", "the plan in words: what keeps it from a target, which target would have to give, what would help"),
         ("[ ]", "another seed: other values to begin at, beside today's"),
+    ),
+    "history": (
+        ("a post", "what was found of the chain on a day, kept in the record beside the file; 1 is the newest. It "
+         "holds targets, the lines' figures and the account, and no curves. P makes one of the saved file"),
+        ("a revision", "the file as git has it, by the beginning of its hash; its whole ledger is solved here"),
+        ("=", "what has the same chain, whatever its notes, its order and the way values are spelled"),
+        ("Enter", "the row is the baseline: every page shows what moved since; again: no baseline"),
+        ("\u25cf", "the row that is the baseline"),
+        ("then, now", "figures of the row and of the text as it stands here; by: from then to now"),
+        ("what changed", "from the row to now, by meaning; v shows all of it"),
+        ("s", "looks again at the record and at git, as opening the page and writing the file do"),
     ),
 }
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from polebook.tui.control import jobs, pages
 from polebook.tui.control.base import Done, at, done, line, lines, refuse, rows, to_sheet
 from polebook.tui.control.figures import names_of
@@ -9,23 +11,23 @@ from polebook.tui.keys import PAGES
 from polebook.tui.view import Page, State
 
 _ORDER: tuple[Page, ...] = tuple(pages.PAGES)
+_OF_DIGIT: Mapping[str, Page] = dict(zip(PAGES, _ORDER, strict=True))
 
 
 def page(state: State, digit: str, now: float) -> Done:
     """The page of a digit."""
-    state = at(state, digit_at=now)
-    name = PAGES.get(digit)
-    for known in _ORDER:
-        if known == name:
-            return done(at(state, page=known, row=0, figure=0))
-    have = ", ".join(f"{key} {word}" for key, word in PAGES.items())
-    return refuse(state, f"there is no page {digit}", f"the pages are {have}; Tab goes to the sheet, to type a value")
+    return done(_opened(at(state, digit_at=now), _OF_DIGIT[digit]))
 
 
 def turn(state: State, by: int) -> Done:
     """The page before or after."""
     to = min(max(_ORDER.index(state.view.page) + by, 0), len(_ORDER) - 1)
-    return done(at(state, page=_ORDER[to], row=0, figure=0))
+    return done(_opened(state, _ORDER[to]))
+
+
+def _opened(state: State, page: Page) -> State:
+    """The state on that page, at its first row."""
+    return pages.PAGES[page].opened(at(state, page=page, row=0, figure=0))
 
 
 def select(state: State, to: int) -> Done:

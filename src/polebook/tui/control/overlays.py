@@ -8,7 +8,7 @@ from dataclasses import replace
 from polebook.problem import ProblemsFound
 from polebook.session.state import add_stage, rename_stage, set_value
 from polebook.tui import keys
-from polebook.tui.control import cards, cautions, leaving, lists, new, notes, recovered, stages, watching
+from polebook.tui.control import cards, cautions, history, leaving, lists, new, notes, recovered, stages, watching
 from polebook.tui.control.base import Done, at, attempt, done, reason, to_path
 from polebook.tui.control.typing import insert, one_line, typed
 from polebook.tui.view import Choice, Overlay, State
@@ -32,6 +32,8 @@ def press(state: State, overlay: Overlay, key: str, character: str | None, now: 
         return notes.press(state, overlay, key, character, now)
     if purpose == "take":
         return cards.press(state, overlay, key, character)
+    if purpose == "post":
+        return history.typing(state, overlay, key, character)
     if purpose == "rename":
         return _rename(state, overlay, key, character, now)
     moved = lists.moved(overlay, key)
@@ -56,6 +58,8 @@ def paste(state: State, overlay: Overlay, text: str) -> Done:
         return done(at(state, overlay=new.paste(overlay, text)))
     if purpose == "take":
         return done(at(state, overlay=cards.paste(overlay, text)))
+    if purpose == "post":
+        return done(at(state, overlay=history.paste(overlay, text)))
     if purpose == "rename":
         name, cursor = insert(overlay.typed, overlay.cursor, one_line(text))
         return done(at(state, overlay=replace(overlay, typed=name, cursor=cursor, refusal="")))

@@ -5,12 +5,13 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import replace
 
-from polebook.session.state import pin, unpin
+from polebook.session.state import pin, stands, unpin
 from polebook.tui import keys
 from polebook.tui.control import (
     cautions,
     fields,
     help,
+    history,
     leaving,
     lists,
     moving,
@@ -85,8 +86,10 @@ def _begins(state: State, text: str, now: float) -> Done | None:
 
 
 def _pin(state: State, now: float) -> Done:
-    if state.session.baseline is not None:
-        return say(replace(state, session=unpin(state.session)), "unpinned")
+    if stands(state.session):
+        against = state.session.against
+        told = "unpinned" if against is None else f"{against.name} is the baseline no more; p pins today's figures"
+        return say(replace(state, session=unpin(state.session)), told)
     if state.session.ledger is None:
         return refuse(state, "there are no figures to pin", "! tells what is wrong with the file")
     return say(replace(state, session=pin(state.session)), "pinned: figures that move from here on show by how much")
@@ -163,6 +166,8 @@ _WORK: Mapping[str, Work] = {
     "suspend": lambda state, now: (state, Outcome.SUSPEND),
     "repaint": lambda state, now: (state, Outcome.REPAINT),
     "pin": _pin,
+    "post": still(history.post),
+    "benches": still(history.overlaid),
     "working": still(working.show),
     "decibels": _decibels,
     "band": _band,

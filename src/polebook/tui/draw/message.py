@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from polebook import series
-from polebook.book.compare import Changes
+from polebook.book.compare import Moves
 from polebook.book.workings.units import about
 from polebook.chain.steps import series_of
 from polebook.quantity import Refused, letter, parse
@@ -11,6 +11,7 @@ from polebook.report.figures import signed
 from polebook.report.look import cells
 from polebook.session.sheets import content_of
 from polebook.session.state import KeyRow
+from polebook.tui.draw import against as baseline
 from polebook.tui.draw.focus import focused
 from polebook.tui.draw.pen import Pen, ends
 from polebook.tui.draw.scene import Scene
@@ -98,11 +99,12 @@ def against(scene: Scene) -> Line:
     told = [text for text in (_moved(changes, *one) for one in (
         ("gain_db", "gain", "dB"), ("lower_edge_hz", "lower", "Hz"), ("upper_edge_hz", "upper", "Hz"))) if text]
     if not told:
-        return (Span("as pinned", "dim"),)
-    return (Span(", ".join(told), "moved"), Span(" against pin", "dim"))
+        against = scene.session.against
+        return (Span(scene.pen.text(f"as {'pinned' if against is None else against.name}"), "dim"),)
+    return (Span(", ".join(told), "moved"), Span(scene.pen.text(f" against {baseline.name(scene.session)}"), "dim"))
 
 
-def _moved(changes: Changes, figure: str, name: str, unit: str) -> str:
+def _moved(changes: Moves, figure: str, name: str, unit: str) -> str:
     change = changes.overall(figure)
     if change is None or not change.moved:
         return ""

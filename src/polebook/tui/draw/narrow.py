@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from polebook.report.look import cells
+from polebook.tui.draw.against import lacking
 from polebook.tui.draw.focus import focused
 from polebook.tui.draw.message import keys, message
 from polebook.tui.draw.overlay import overlay
@@ -85,11 +87,13 @@ def _faded(line: Line) -> Line:
 
 
 def page_rule(scene: Scene, room: int) -> Line:
-    """The rule above the page; it says so where the figures are old ones."""
-    if not scene.stale:
+    """The rule above the page; it says so where the figures are old ones, or what the page lacks of the baseline."""
+    told = STALE if scene.stale else scene.pen.cut(scene.pen.text(lacking(scene)), max(room - 6, 1))
+    if not told:
         return scene.pen.rule(room)
     dash = scene.pen.sign("─")
-    return (Span(f"{dash}{dash} ", "dim"), Span(STALE, "warn"), Span(" " + dash * (room - len(STALE) - 4), "dim"))
+    return (Span(f"{dash}{dash} ", "dim"), Span(told, "warn" if scene.stale else "moved"),
+            Span(" " + dash * max(room - cells(told) - 4, 0), "dim"))
 
 
 def without_figures(scene: Scene, room: int, rows: int) -> list[Line]:

@@ -7,7 +7,9 @@ from dataclasses import dataclass
 from functools import lru_cache
 
 from polebook.book.ledger import Ledger
+from polebook.record.posted import Post
 from polebook.report import figures as show
+from polebook.session.baselines import got, posted
 from polebook.tui.draw.moved import FAINT
 from polebook.tui.draw.scene import Scene
 
@@ -143,16 +145,22 @@ def baseline(scene: Scene) -> Ledger | None:
 
 def moved(scene: Scene, figure: Figure) -> str:
     """By how much a figure is off the pinned one; "" where nothing is pinned or nothing would show."""
-    base = baseline(scene)
-    if base is None:
+    base, post = baseline(scene), posted(scene.session)
+    if base is None and post is None:
         return ""
-    before, after = figure.get(base), figure.get(scene.figures)
+    before = _held(post, figure) if post is not None else figure.get(base) if base is not None else None
+    after = figure.get(scene.figures)
     if before is None or after is None:
         return ""
     if figure.unit == "dB":
         return show.signed(after - before, "dB") if abs(after - before) >= LEAST_DB else ""
     same = abs(after - before) < FAINT * max(abs(after), abs(before))
     return "" if same else show.signed(after - before, unit_of(scene, figure.unit))
+
+
+def _held(post: Post, figure: Figure) -> float | None:
+    """What a post has of a figure: of the density alone, where that had a target."""
+    return got(post, "noise") if figure.path == "target.noise" else None
 
 
 def share_moved(scene: Scene, maker: Maker) -> str:

@@ -6,6 +6,7 @@ from math import sqrt
 
 from polebook.book.ledger import Ledger
 from polebook.report import figures as show
+from polebook.tui.draw import against
 from polebook.tui.draw import noise_curves as curves
 from polebook.tui.draw.grid import NOTHING, Cell, Column, Row, grid
 from polebook.tui.draw.noise_makers import (
@@ -110,7 +111,8 @@ def lines(scene: Scene, hz: float, room: int, tall: bool) -> list[Line]:
     told.append(sides[0])
     base = baseline(scene)
     if base is not None and not why(base):
-        told.append((Span("pinned ", "dim"), Span(pen.text(_density(scene, base, hz, output)), "moved")))
+        word = pen.text(f"{against.short(scene.session)} ")
+        told.append((Span(word, "dim"), Span(pen.text(_density(scene, base, hz, output)), "moved")))
     noise = of.noise
     if noise is not None and noise.output_rms is None:
         reason = pen.wrapped(f"no total: {noise.totals.why}", room - 2)

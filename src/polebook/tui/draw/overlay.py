@@ -12,7 +12,7 @@ from polebook.tui.draw.sheet import field_spans
 from polebook.tui.lines import Line, Span, width
 from polebook.tui.view import Overlay
 
-TYPED = frozenset(("find", "card", "cards", "rename", "take", "add", "kind", "choice", "sheets", "new"))
+TYPED = frozenset(("find", "card", "cards", "rename", "take", "add", "kind", "choice", "sheets", "new", "post"))
 """Purposes that have a line to type in beside their title."""
 MOST_LABEL = 34
 LEAST_FIELD = 12

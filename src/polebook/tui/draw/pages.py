@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
-from polebook.tui.draw import apportion, ledger, levels, leverage, nodes, noise, pulse, response, spread
+from polebook.tui.draw import apportion, history, ledger, levels, leverage, nodes, noise, pulse, response, spread
 from polebook.tui.draw.scene import Scene
 from polebook.tui.keys import Hint
 from polebook.tui.lines import Line
@@ -53,6 +53,7 @@ PAGES: Mapping[Page, Drawn] = {
                     spread.hints),
     "apportion": Drawn(apportion.page, lambda scene: (), lambda scene: apportion.WANT, apportion.DECENT,
                        lambda scene, rows: rows, 2, apportion.hints),
+    "history": Drawn(history.page, history.figures, history.want, 13, lambda scene, rows: rows, 2, history.hints),
 }
 
 

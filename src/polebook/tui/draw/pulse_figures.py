@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from polebook.book.ledger import Ledger
 from polebook.book.targets import Target
 from polebook.report import figures as show
+from polebook.session.baselines import got, posted
 from polebook.tui.draw.moved import FAINT
 from polebook.tui.draw.scene import Scene
 
@@ -85,10 +86,11 @@ def wanted(figure: Figure, target: Target) -> str:
 
 def moved(scene: Scene, figure: Figure) -> str:
     """By how much a figure is off the pinned one; "" where nothing is pinned or nothing would show."""
-    base = scene.session.baseline
-    if base is None or base is scene.ledger:
+    base, post = scene.session.baseline, posted(scene.session)
+    if post is None and (base is None or base is scene.ledger):
         return ""
-    before, after = figure.get(base), figure.get(scene.figures)
+    before = got(post, figure.target) if post is not None else figure.get(base) if base is not None else None
+    after = figure.get(scene.figures)
     if before is None or after is None:
         return ""
     if figure.unit == PER_CENT:

@@ -6,7 +6,7 @@ from math import inf, sqrt
 
 from polebook.book.ledger import Ledger
 from polebook.report import figures as show
-from polebook.tui.draw import nodes
+from polebook.tui.draw import against, nodes
 from polebook.tui.draw import pulse_curves as curves
 from polebook.tui.draw.grid import NOTHING, Cell, Column, Row, grid
 from polebook.tui.draw.pen import BLANK
@@ -80,7 +80,8 @@ def _cursor(scene: Scene, t: float) -> list[Line]:
         told.append((Span("lost ", "dim"), Span(f"{100.0 * (1.0 - height):.2f} %")))
     base = scene.session.baseline
     if base is not None and base is not of and not why(base, upper):
-        told.append((Span("pinned ", "dim"), Span(f"{100.0 * at(base, t):.2f} %", "moved")))
+        word = pen.text(f"{against.short(scene.session)} ")
+        told.append((Span(word, "dim"), Span(f"{100.0 * at(base, t):.2f} %", "moved")))
     if name:
         told.append((Span(f"here: {name}", "select"),))
     return told

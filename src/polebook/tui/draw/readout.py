@@ -6,7 +6,7 @@ from math import atan2, degrees, isfinite, pi
 
 from polebook.book.account import BUDGET_DB
 from polebook.report import figures as show
-from polebook.tui.draw import curves
+from polebook.tui.draw import against, benches, curves
 from polebook.tui.draw.curves import Here
 from polebook.tui.draw.grid import NOTHING, Cell, Column, Row, grid
 from polebook.tui.draw.pen import BLANK, Pen, window
@@ -25,9 +25,11 @@ def rows(scene: Scene, what: str, hz: float, room: int, most: int, table: int) -
     """
     at = curves.here(scene.figures, hz)
     first = _fitted(_chain(scene, what, at), room, 3)
+    swept = [(Span(" "), *piece) for piece in benches.pieces(scene, at, size)] if what == "gain" else []
+    swept = [scene.pen.fitted(line, room) for line in swept[:max(most - 1, table // 3)]]
     if table >= min(LEAST_TABLE, len(scene.names)) + 2:
-        return [first, BLANK, *_table(scene, at, room, table - 2)]
-    return [first, *_flowing(_short(scene, at), room, most - 1)][:most]
+        return [first, *swept, BLANK, *_table(scene, at, room, table - 2 - len(swept))]
+    return [first, *swept, *_flowing(_short(scene, at), room, most - 1)][:most]
 
 
 def _chain(scene: Scene, what: str, at: Here) -> list[Piece]:
@@ -49,7 +51,8 @@ def _pinned(scene: Scene, at: Here) -> list[Piece]:
     if base is None or base is scene.ledger:
         return []
     text = size(scene, curves.here(base, at.hz).gain_db, False)
-    return [(Span("pinned ", "dim"), Span(scene.pen.text(text), "moved"))]
+    word = scene.pen.text(f"{against.short(scene.session)} ")
+    return [(Span(word, "dim"), Span(scene.pen.text(text), "moved"))]
 
 
 def _ohms(scene: Scene, what: str, at: Here) -> list[Piece]:

@@ -10,7 +10,7 @@ import numpy as np
 from polebook.book.account import BUDGET_DB
 from polebook.book.ledger import Ledger
 from polebook.book.response import Array, begin_hz, whole_band
-from polebook.tui.draw import readout
+from polebook.tui.draw import benches, readout
 from polebook.tui.draw.curves import delayed, impedances, swept
 from polebook.tui.draw.plot import scale
 from polebook.tui.draw.plot.axis import Axis, decades
@@ -29,6 +29,7 @@ MANY_ROWS = 14  # from so many on the other lines' curves are drawn too
 DB_A_ROW, MOST_DB = 5.0, 80.0
 BELOW_DB = 15.0  # that are seen of every curve
 UNEVEN = 30.0  # a delay so many times its median needs an axis of equal ratios
+_ROUNDING = 1e-9
 UNSTABLE = "unstable: curves of the network, which no signal will follow"
 UNKNOWN = "stability not told: curves of the network"
 
@@ -86,18 +87,22 @@ def chart(scene: Scene, room: int, rows: int) -> Chart:
 def _gain(scene: Scene, low: float, high: float, room: int, rows: int) -> Chart:
     of, count = scene.figures, 2 * room
     found = swept(of, low, high, count)
-    phase = scale.degrees([found.phase_deg], rows)
-    curves = [Curve(found.hz, found.phase_deg, "bar", "dotted", ".", "p", right=True)]
+    measured = benches.phases(scene, found)
+    phase = scale.degrees([found.phase_deg, *(_within(one, low, high) for one in measured)], rows)
+    curves = [*measured, Curve(found.hz, found.phase_deg, "bar", "dotted", ".", "p", right=True)]
     base = _baseline(scene)
     if base is not None:
         then = swept(base, low, high, count)
         curves.append(_pinned(then.hz, then.gain_db))
     if scene.view.plot.single:
         curves.append(Curve(found.hz, found.gains_db[scene.at], "select", "dashed", "o", _letter(scene)))
+    curves += benches.gains(scene)
     curves.append(Curve(found.hz, found.gain_db, letter="g"))
     others = [Curve(found.hz, own, "dim", "sparse", ",") for k, own in enumerate(found.gains_db) if k != scene.at] \
         if scene.view.plot.single and rows >= MANY_ROWS else []
     empty = replace(_base(scene, (low, high), room), marks=_poles(scene), right=phase, curves=tuple(others))
+    if not empty.note and (bad := benches.faults(scene)):
+        empty = replace(empty, note=bad, note_style="warn")
     return _limited(scene, empty, curves, rows)
 
 
@@ -108,7 +113,8 @@ def _limited(scene: Scene, empty: Chart, curves: list[Curve], rows: int) -> Char
     """
     of = scene.figures
     unit = "dB" if of.chain.source_kind == "voltage" else "dBΩ"
-    gains = [one.y for one in curves if not one.right]
+    gains = [_within(one, empty.x.low, empty.x.high) for one in curves if not one.right]
+    gains = [gain for gain in gains if gain.size]
     tops = [float(np.nanmax(gain)) for gain in gains if np.isfinite(gain).any()]
     most = max(min(DB_A_ROW * rows, MOST_DB), max(tops) - min(tops) + BELOW_DB if tops else 0.0)
     up = scale.decibels(gains, rows, most)
@@ -189,9 +195,14 @@ def _poles(scene: Scene) -> tuple[Mark, ...]:
 
 
 def _baseline(scene: Scene) -> Ledger | None:
-    """The pinned ledger, where it is another one than today's. Sweeps from the bench will lie over the curves too."""
+    """The baseline's ledger, where it is another one than today's; None of a post, which holds no curve."""
     base = scene.session.baseline
     return base if base is not scene.ledger else None
+
+
+def _within(of: Curve, low: float, high: float) -> Array:
+    """The part of a curve that lies in a window, all of one that was computed for it."""
+    return of.y[(of.x >= low * (1.0 - _ROUNDING)) & (of.x <= high * (1.0 + _ROUNDING))]
 
 
 def _pinned(hz: Array, y: Array) -> Curve:

@@ -7,7 +7,7 @@ from functools import cached_property
 
 from polebook.book.account import Account
 from polebook.book.build import by_stage
-from polebook.book.compare import Changes
+from polebook.book.compare import Moves
 from polebook.book.ledger import Ledger
 from polebook.book.lines import Line
 from polebook.book.sites import Site, interstage_names
@@ -139,6 +139,6 @@ class Scene:
         return shares.index(most) if most > 0 else -1
 
     @cached_property
-    def changes(self) -> Changes | None:
+    def changes(self) -> Moves | None:
         """What moved against the baseline; None where nothing is pinned, or nothing to compare it with."""
         return None if self.ledger is None else moved(self.session)

@@ -6,6 +6,8 @@ from os.path import basename
 
 from polebook.book.targets import Target
 from polebook.report.look import cells
+from polebook.session.state import stands
+from polebook.tui.draw import against
 from polebook.tui.draw.pen import ends
 from polebook.tui.draw.scene import Scene
 from polebook.tui.lines import Line, Span, line, width
@@ -44,8 +46,8 @@ def _flags(scene: Scene) -> list[tuple[str, str]]:
         flags.append(("recovered", "warn"))
     if scene.state.care.unkept:
         flags.append((scene.pen.text(f"no recovery: {scene.state.care.unkept}"), "bad"))
-    if session.baseline is not None:
-        flags.append(("pinned", "moved"))
+    if stands(session):
+        flags.append((scene.pen.text(against.flag(session)), "moved"))
     return flags
 
 

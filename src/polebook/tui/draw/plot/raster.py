@@ -14,7 +14,7 @@ Dots: TypeAlias = "NDArray[np.bool_]"
 Bits: TypeAlias = "NDArray[np.int64]"
 WIDE, TALL = 2, 4
 """Dots of a braille cell."""
-PATTERNS = {"solid": (1, 1), "dotted": (2, 1), "dashed": (8, 5), "sparse": (4, 1)}
+PATTERNS = {"solid": (1, 1), "dotted": (2, 1), "dashed": (8, 5), "sparse": (4, 1), "broken": (4, 3)}
 """Name -> every so many dots, so many of them there."""
 _BRAILLE = 0x2800
 _BITS = np.array([[0x01, 0x08], [0x02, 0x10], [0x04, 0x20], [0x40, 0x80]])

@@ -1,0 +1,34 @@
+"""What `audit` and `post` share: the yield of built chains, with a bar where that takes long."""
+
+from __future__ import annotations
+
+from time import monotonic
+from typing import TYPE_CHECKING, Any
+
+from polebook.cli.out import Out
+
+if TYPE_CHECKING:
+    from polebook.book.ledger import Ledger
+
+QUICK_S, REPAINT_S = 0.4, 0.1  # what is built by then shows no progress; least time between two paints
+
+
+def hand_yield(ledger: Ledger, file: str, out: Out) -> dict[str, Any] | None:
+    """Hands the ledger the yield that its file wants; what that was found from, None where nothing is built."""
+    if "target.yield" not in ledger.chain.given or not ledger.judged:
+        return None
+    from polebook.plan import yielded  # deferred: few files ask for a yield
+
+    work, next_s = yielded.hand(ledger), monotonic() + QUICK_S
+    try:
+        while True:
+            try:
+                done, total = next(work)
+            except StopIteration as end:
+                row: dict[str, Any] | None = end.value
+                return row
+            if (now_s := monotonic()) > next_s:
+                next_s = now_s + REPAINT_S
+                out.progress(f" {file}: {done} of {total} built (ctrl-c stops)")
+    finally:
+        out.progress("")
