@@ -1,8 +1,10 @@
-"""Mutated chain files against the command line: no traceback, a known exit code, never over the time limit.
+"""Mutated and hostile chain files against reader and command line: no traceback, a known exit code, nothing that a
+terminal would obey, never over the limits of CPU time and memory.
 
-    python -m tests.fuzz_files --count 2000 --seed 1
+    python -m tests.fuzz_files --count 20000 --seed 1
 
-A file is spoilt by seed and number alone, so a finding is repeated with --only NUMBER.
+A file is spoilt by seed and number alone, so a finding is repeated with --only NUMBER. Of ten files four have one
+hostile character in one field (18400 files have every one in every field), one is at a limit, five are mutated chains.
 """
 
 from __future__ import annotations
@@ -10,21 +12,31 @@ from __future__ import annotations
 import argparse
 import contextlib
 import io
+import json
 import multiprocessing
+import os
 import random
+import resource
+import subprocess
 import sys
 import tempfile
 import time
 import traceback
+import unicodedata
 from collections import Counter
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from multiprocessing.connection import Connection, wait
 from pathlib import Path
 
-LIMIT_S = 2.0
-ALLOWED = {"show": {0, 2}, "audit": {0, 1, 2}}
-_SEEDS = sorted((Path(__file__).parent.parent / "chains").glob("*.toml"))
+from tests.fuzz_hostile import SEEDS, limit, marked
+
+LIMIT_S, HANGS_S = 2.0, 300.0  # of the CPU; of the clock, whatever else the machine does
+FEW, STAGE_S, ARM_S = 16, 0.2, 0.02  # stages that take no more; what a further one may take, and an arm of a ladder
+LIMIT_MB, MOST_BYTES = 500, 4 << 30
+ALLOWED = {"read": {0, 2}, "show": {0, 2}, "audit": {0, 1, 2}}
+OBEYED = ("Cc", "Cf", "Cn", "Co", "Cs", "Zl", "Zp")  # kinds of characters that no terminal gets of a file
+SOMETIMES, EVERY = ("show --page all", "show --json", "parts"), 7
 _VALUES = (
     '""', '"abc"', "true", "false", "nan", "-inf", "inf", "0", "-1", "1e308", "1e-308", "1e400", '"1e400"',
     '"4k7k"', '"1,5k"', '"-3k"', '"10 nF"', '"5 V"', '"60 dB"', '"-200 dB"', '"5 %"', "[]", "[1, 2]", "{}",
@@ -140,9 +152,18 @@ GENTLE: tuple[Mutation, ...] = (_reprefix, _reprefix, _reprefix, _drop, _zero)
 
 
 def spoilt(seed: int, number: int) -> bytes:
-    """Mutated file `number` of `seed`."""
+    """File `number` of `seed`."""
     rng = random.Random(f"{seed}:{number}")
-    lines = rng.choice(_SEEDS).read_text(encoding="utf-8").split("\n")
+    tens, of_ten = divmod(number, 10)
+    if of_ten % 2 and of_ten < 9:
+        return marked(tens * 4 + of_ten // 2)
+    if of_ten == 9:
+        return limit(rng)
+    return _mutated(rng)
+
+
+def _mutated(rng: random.Random) -> bytes:
+    lines = rng.choice(SEEDS).read_text(encoding="utf-8").split("\n")
     mutations = rng.choice((MUTATIONS, GENTLE))
     for _ in range(rng.choice((1, 1, 2, 4))):
         if lines:
@@ -157,72 +178,118 @@ def spoilt(seed: int, number: int) -> bytes:
 
 @dataclass(frozen=True, slots=True)
 class Finding:
-    """What one command did with one file. `wrong` is empty where it behaved."""
+    """What one command did with one file. `wrong` is empty where it behaved; megabytes: the most its process had."""
 
     number: int
     command: str
     code: int | None
     seconds: float
     wrong: str
+    megabytes: float = 0.0
 
 
-def run(command: str, path: str, number: int) -> Finding:
-    """The command, in this process, its streams caught."""
+def commands(number: int) -> list[str]:
+    """What is done with a file."""
+    return [*ALLOWED, *([SOMETIMES[number // EVERY % len(SOMETIMES)]] if number % EVERY == 0 else [])]
+
+
+def _read(path: str) -> int:
+    """The reader alone, and every problem as it would be told."""
+    from polebook.chain import read
+    from polebook.problem import ProblemsFound
+
+    try:
+        read.load(path)
+    except ProblemsFound as found:
+        sys.stderr.write(f"{found}\n")
+        return 2
+    return 0
+
+
+def limit_s(data: bytes) -> float:
+    """CPU time for a file: of a valid chain all poles are solved together, which takes seconds at 64 stages."""
+    return LIMIT_S + STAGE_S * min(max(data.count(b"[[stage]]") - FEW, 0), 48) + ARM_S * min(data.count(b" }, {"), 256)
+
+
+def run(command: str, path: str, number: int, times: float = 1.0) -> Finding:
+    """The command, in this process, its streams caught; it may take so many times the limit."""
     from polebook.cli.main import main
 
     wrong, code = "", None
     out, err = io.StringIO(), io.StringIO()
-    begun = time.perf_counter()
+    begun = time.process_time()
     try:
         with contextlib.redirect_stdout(out), contextlib.redirect_stderr(err):
-            code = main([command, path])
+            code = _read(path) if command == "read" else main([*command.split(), path])
     except BaseException:
         wrong = traceback.format_exc()
-    seconds = time.perf_counter() - begun
-    told = out.getvalue() + err.getvalue()
-    if not wrong and code not in ALLOWED[command]:
-        wrong = f"exit code {code}"
-    elif not wrong and any(not char.isprintable() and char != "\n" for char in told):
-        wrong = "a control character reached the terminal"
-    elif not wrong and "Warning" in err.getvalue():
-        wrong = err.getvalue()
-    elif not wrong and code == 2 and "    fix  " not in err.getvalue():
-        wrong = f"exit code 2 without a remedy: {err.getvalue()[:200]!r}"
-    return Finding(number, command, code, seconds, wrong)
+    seconds = time.process_time() - begun
+    megabytes = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
+    return Finding(number, command, code, seconds, wrong or _amiss(command, code, out.getvalue(), err.getvalue()) or
+                   (f"{seconds:.1f} s" if seconds > times * limit_s(Path(path).read_bytes()) else "") or
+                   (f"{megabytes:.0f} MB" if megabytes > LIMIT_MB else ""), megabytes)
 
 
-def _worker(seed: int, jobs: Connection) -> None:
+def _amiss(command: str, code: int | None, out: str, err: str) -> str:
+    """What is wrong with an answer."""
+    if code not in ALLOWED[command.split()[0]] if command != "parts" else code not in (0, 2):
+        return f"exit code {code}"
+    if bad := {char for char in set(out + err) if char != "\n" and unicodedata.category(char) in OBEYED}:
+        return f"a control character reached the terminal: {sorted(bad)!r}"
+    if "Warning" in err or "Traceback" in err:
+        return err
+    if code == 2 and "    fix  " not in err:
+        return f"exit code 2 without a remedy: {err[:200]!r}"
+    if "--json" in command and code == 0:
+        json.loads(out, parse_constant=lambda word: sys.exit(f"{word} in JSON"))
+    return ""
+
+
+def _worker(seed: int, times: float, jobs: Connection) -> None:
     from polebook.book import build  # noqa: F401 - so that no import counts against the first file's limit
 
+    resource.setrlimit(resource.RLIMIT_AS, (MOST_BYTES, MOST_BYTES))  # a file that eats memory ends here, not elsewhere
     with tempfile.TemporaryDirectory() as folder:
         path = str(Path(folder) / "spoilt.toml")
         while (job := jobs.recv()) is not None:
             number, command = job
-            Path(path).write_bytes(spoilt(seed, number))
-            jobs.send("begun")
-            jobs.send(run(command, path, number))
+            data = spoilt(seed, number)
+            Path(path).write_bytes(data)
+            jobs.send(time.process_time() + times * limit_s(data))
+            jobs.send(run(command, path, number, times))
 
 
 class _Worker:
     """One process that is replaced when it overruns or dies."""
 
-    def __init__(self, seed: int) -> None:
-        self.seed = seed
+    def __init__(self, seed: int, times: float) -> None:
+        self.seed, self.times = seed, times
         self.start()
 
     def start(self) -> None:
         context = multiprocessing.get_context("spawn")
         self.pipe, theirs = context.Pipe()
-        self.process = context.Process(target=_worker, args=(self.seed, theirs), daemon=True)
+        self.process = context.Process(target=_worker, args=(self.seed, self.times, theirs), daemon=True)
         self.process.start()
         theirs.close()
         self.job: tuple[int, str] | None = None
-        self.deadline = 0.0
+        self.deadline = self.limit_s = 0.0
 
     def give(self, job: tuple[int, str] | None) -> None:
         self.job = job
-        self.deadline = time.monotonic() + 60  # until it says that it has begun: it may still be starting
+        self.deadline, self.limit_s = time.monotonic() + HANGS_S, float("inf")  # it may still be starting
         self.pipe.send(job)
+
+    def overruns(self) -> bool:
+        """Whether its CPU time, or the clock, has gone past the limit."""
+        if time.monotonic() > self.deadline:
+            return True
+        try:
+            stat = Path(f"/proc/{self.process.pid}/stat").read_text(encoding="ascii")
+        except OSError:  # another system, or it has died: the pipe tells that
+            return False
+        user, system = stat.rpartition(")")[2].split()[11:13]
+        return (int(user) + int(system)) / os.sysconf("SC_CLK_TCK") > self.limit_s + 1.0
 
     def lost(self, why: str) -> Finding:
         assert self.job is not None
@@ -234,10 +301,10 @@ class _Worker:
         return Finding(number, command, None, LIMIT_S, why)
 
 
-def findings(seed: int, numbers: list[int], workers: int) -> Iterator[Finding]:
+def findings(seed: int, numbers: list[int], workers: int, times: float = 1.0) -> Iterator[Finding]:
     """Every command on every file, in no particular order. An overrun or a dead process is a finding."""
-    jobs = [(number, command) for number in reversed(numbers) for command in reversed(list(ALLOWED))]
-    crew = [_Worker(seed) for _ in range(min(workers, len(jobs)))]
+    jobs = [(number, command) for number in reversed(numbers) for command in reversed(commands(number))]
+    crew = [_Worker(seed, times) for _ in range(min(workers, len(jobs)))]
     busy = []
     for worker in crew:
         worker.give(jobs.pop())
@@ -246,10 +313,12 @@ def findings(seed: int, numbers: list[int], workers: int) -> Iterator[Finding]:
         ready = wait([worker.pipe for worker in busy], timeout=0.1)
         for worker in list(busy):
             found = _hear(worker) if worker.pipe in ready else None
-            if found is None and time.monotonic() > worker.deadline:
-                found = worker.lost(f"over {LIMIT_S} s")
+            if found is None and worker.overruns():
+                found = worker.lost("over the limit of time")
             if found is None:
                 continue
+            if found.megabytes > LIMIT_MB:
+                worker.lost("")  # what it had at most would be counted against the next file
             yield found
             if jobs:
                 worker.give(jobs.pop())
@@ -265,10 +334,20 @@ def _hear(worker: _Worker) -> Finding | None:
         heard = worker.pipe.recv()
     except EOFError:
         return worker.lost("the process died")
-    if heard == "begun":
-        worker.deadline = time.monotonic() + LIMIT_S
+    if not isinstance(heard, Finding):
+        worker.limit_s = heard
         return None
     return heard
+
+
+def real(seed: int, number: int) -> str:
+    """What is wrong with an audit by the program itself, of a file that is named as badly as it is written."""
+    with tempfile.TemporaryDirectory() as folder:
+        path = Path(folder) / f"spoilt \x1b[31m\u202e{number}.toml"
+        path.write_bytes(spoilt(seed, number))
+        done = subprocess.run([sys.executable, "-m", "polebook", "audit", str(path)], capture_output=True, check=False,
+                              timeout=HANGS_S, env={**os.environ, "PYTHONIOENCODING": "utf-8"})
+    return _amiss("audit", done.returncode, done.stdout.decode(), done.stderr.decode())
 
 
 def main(argv: list[str] | None = None) -> int:
@@ -276,23 +355,31 @@ def main(argv: list[str] | None = None) -> int:
     parser.add_argument("--count", type=int, default=2000)
     parser.add_argument("--seed", type=int, default=1)
     parser.add_argument("--workers", type=int, default=2)
+    parser.add_argument("--real", type=int, default=0, help="so many of them also as programs of their own")
     parser.add_argument("--only", type=int, metavar="NUMBER", help="this file alone; its text is printed")
     args = parser.parse_args(argv)
     numbers = list(range(args.count)) if args.only is None else [args.only]
     if args.only is not None:
         sys.stdout.write(spoilt(args.seed, args.only).decode("utf-8", "backslashreplace") + "\n")
-    codes: dict[str, Counter[int | None]] = {command: Counter() for command in ALLOWED}
-    wrong, slowest = [], Finding(-1, "", None, 0.0, "")
+    codes: dict[str, Counter[int | None]] = {command: Counter() for command in (*ALLOWED, *SOMETIMES)}
+    wrong = []
+    slowest = largest = Finding(-1, "", None, 0.0, "")
     for found in findings(args.seed, numbers, args.workers):
         codes[found.command][found.code] += 1
         slowest = max(slowest, found, key=lambda one: one.seconds)
+        largest = max(largest, found, key=lambda one: one.megabytes)
         if found.wrong:
             wrong.append(found)
-            print(f"file {found.number}, {found.command}: {found.wrong}")
+            print(f"file {found.number}, {found.command}: {found.wrong}", flush=True)
+    for number in numbers[:args.real]:
+        if told := real(args.seed, number):
+            wrong.append(Finding(number, "audit", None, 0.0, told))
+            print(f"file {number}, the program itself: {told}")
     for command, counts in codes.items():
         told = ", ".join(f"exit {code}: {count}" for code, count in sorted(counts.items(), key=str))
         print(f"{command}: {told}")
-    print(f"slowest: {slowest.seconds:.3f} s ({slowest.command}, file {slowest.number}); wrong: {len(wrong)}")
+    print(f"slowest: {slowest.seconds:.3f} s of CPU ({slowest.command}, file {slowest.number}); "
+          f"most memory: {largest.megabytes:.0f} MB ({largest.command}, file {largest.number}); wrong: {len(wrong)}")
     return 1 if wrong else 0
 
 

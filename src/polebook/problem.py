@@ -11,8 +11,9 @@ from functools import lru_cache
 EXCERPT_CELLS = 72  # of a source line, so that excerpt and line number fit 80 columns
 TAB_CELLS = 4
 _NAMED = {"\n": "\\n", "\r": "\\r", "\t": "\\t"}
-# Cc control, Cf format (bidi, zero width), Cn unassigned, Cs lone surrogates, Zl and Zp line and paragraph separators
-_HIDDEN = frozenset(("Cc", "Cf", "Cn", "Cs", "Zl", "Zp"))
+# Cc control, Cf format (bidi, zero width), Cn unassigned, Co private use (what and how wide it is, the terminal's font
+# says), Cs lone surrogates, Zl and Zp line and paragraph separators
+_HIDDEN = frozenset(("Cc", "Cf", "Cn", "Co", "Cs", "Zl", "Zp"))
 # what shows nothing by itself, or changes how wide its neighbour is on some terminals and not on others: joiners,
 # fillers and vowels of Hangul, selectors of a variant, halves of flags, tones of skin
 _UNSURE = re.compile("[\u034f\u115f-\u11ff\u17b4\u17b5\u180b-\u180f\u3164\ud7b0-\ud7ff\ufe00-\ufe0f\uffa0"

@@ -61,7 +61,7 @@ def down(value: float, name: str) -> float:
 
 def holds(value: float, name: str) -> bool:
     """Whether `value` is one of the series, exactly as a text of it would be read."""
-    return at_most(value, name) == value
+    return 10.0**_LOWEST <= value <= 10.0**_HIGHEST and at_most(value, name) == value
 
 
 def _value(rank: int, name: str) -> float:

@@ -1,6 +1,6 @@
 """A spread as a whole: the same in any blocks and by any helpers, stopped, judged, its corners and costs."""
 
-import pickle
+import io
 from dataclasses import replace
 from math import erf, exp, log, pi, sqrt
 from time import monotonic, sleep
@@ -9,18 +9,19 @@ import numpy as np
 import pytest
 
 from polebook.book.ledger import ledger
+from polebook.plan import wire
 from polebook.plan.spread import block as blocks
 from polebook.plan.spread.alone import alone, with_numbers
 from polebook.plan.spread.costs import Sample, estimated
 from polebook.plan.spread.draws import drawn
-from polebook.plan.spread.helper import Setting, Task
+from polebook.plan.spread.helper import Bench, Setting, Task, answer, answered, setting_of
 from polebook.plan.spread.judge import judged
 from polebook.plan.spread.linear import as_filed, slopes
 from polebook.plan.spread.model import MOST_BUILDS, Request
 from polebook.plan.spread.nominal import nominal
 from polebook.plan.spread.run import spread
 from polebook.plan.spread.states import GOOD, UNSOLVED
-from polebook.plan.spread.workers import Crew, Workers, block_size
+from polebook.plan.spread.workers import Crew, block_size
 from polebook.problem import ProblemsFound
 from tests.laws.chains import chain
 from tests.plan.spread_chains import LOW_PASS, TWO, parsed, run
@@ -379,8 +380,19 @@ def test_a_chain_without_a_ledger_has_no_spread():
 def test_a_setting_can_be_sent():
     of = chain("six-stage")
     setting = Setting(of, None, (), 3, 64)
-    again = pickle.loads(pickle.dumps(setting.portable()))
-    with Crew() as crew:
-        one = Workers(again, crew, 0).bench.do(Task(1, 0, 64))
-        two = Workers(setting, crew, 0).bench.do(Task(1, 0, 64))
-    assert one.columns["gain_db"].tolist() == two.columns["gain_db"].tolist()
+    task = Task(1, 0, 64, ("Q1.rc", 0.5))
+    one, two = Bench(setting_of(sent(setting.message()))).do(task), Bench(setting).do(task)
+    assert one.columns["gain_db"].tobytes() == two.columns["gain_db"].tobytes()
+    again, piece = answered(sent(answer(task, one)))
+    assert again == task and (piece.first, piece.outside, piece.alone) == (one.first, one.outside, one.alone)
+    assert {name: column.tobytes() for name, column in piece.columns.items()} == \
+        {name: column.tobytes() for name, column in one.columns.items()}
+    assert piece.state.tobytes() == one.state.tobytes()
+
+
+def sent(message):
+    """A message as the other side reads it."""
+    pipe = io.BytesIO()
+    wire.write(pipe, message)
+    pipe.seek(0)
+    return wire.read(pipe)

@@ -50,7 +50,8 @@ def test_what_is_asked_at_fault_is_told(monkeypatch):
 def test_in_a_process_of_its_own_it_comes_to_the_same_is_stopped_and_is_there_for_the_next():
     work = sought(LEAST, TEXT, "x.toml", Event())
     assert not spread_apart._living  # nothing before the first piece
-    assert last(work) == last(steps(question(LEAST, TEXT, "x.toml")))
+    there, here_ = (run_of(last(one), LEAST, TEXT) for one in (work, steps(question(LEAST, TEXT, "x.toml"))))
+    assert (there.edit, there.told) == (here_.edit, here_.told)
     (worker,) = spread_apart._living
     assert apportion_apart._idle == [worker]
     halt, told = Event(), []

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass
 from functools import cached_property
-from math import log10, pi, sqrt
+from math import inf, log10, pi, sqrt
 
 from polebook.book.lumped import Lumped, merged
 from polebook.book.sites import interstage_names, site_names
@@ -45,7 +45,7 @@ class Level:
 
     @property
     def headroom_db(self) -> float | None:
-        return 20.0 * log10(self.clip / self.largest) if self.clip and self.largest else None
+        return _decibels(self.clip, self.largest) if self.clip and self.largest else None
 
 
 @dataclass(frozen=True, slots=True)
@@ -183,4 +183,10 @@ class Levels:
 
 def over_noise_db(peak: float | None, noise_rms: float | None) -> float | None:
     """20·log10 of a sine's rms over the noise's: `peak` in V or A against an rms in the same unit."""
-    return 20.0 * log10(peak / (sqrt(2.0) * noise_rms)) if peak and noise_rms else None
+    return _decibels(peak, sqrt(2.0) * noise_rms) if peak and noise_rms else None
+
+
+def _decibels(one: float, other: float) -> float | None:
+    """20·log10 of the ratio; None where no double holds it."""
+    ratio = one / other
+    return 20.0 * log10(ratio) if 0.0 < ratio < inf else None

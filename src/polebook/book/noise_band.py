@@ -184,8 +184,9 @@ def _bounded(sources: Sources, total: float, ends: Array, hz: float, white_fall:
     far, near = ends[:, 0], ends[:, 1]
     with np.errstate(all="ignore"):
         fall = np.log(near / far) / log(10.0)  # powers of f by which |transfer|² falls outward
-    bad = (sources.white * far * hz > NOTHING * total) & ~(fall > white_fall)
-    bad |= (sources.white * sources.corner * far > NOTHING * total) & ~(fall > flicker_fall)
+        white, flicker = sources.white * far * hz, sources.white * sources.corner * far
+    bad = (white > NOTHING * total) & ~(fall > white_fall)
+    bad |= (flicker > NOTHING * total) & ~(fall > flicker_fall)
     return not bool(bad.any())
 
 

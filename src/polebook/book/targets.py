@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
-from math import log10
+from math import inf, log10
 
 from polebook.chain.model import Chain
 from polebook.formula import Formula
@@ -76,7 +76,10 @@ def judge(chain: Chain, name: str, want: float, got: Got) -> Target:
 
 def _gain(chain: Chain, want: float, got: Got) -> Target:
     tolerance = chain.get("target.gain_tolerance", TOLERANCE_DB) or TOLERANCE_DB
-    off = 20.0 * log10(abs(got.gain) / want)
+    ratio = abs(got.gain) / want
+    if not 0.0 < ratio < inf:
+        raise OverflowError("a gain and its target with no number between them")
+    off = 20.0 * log10(ratio)
     margin = (tolerance - abs(off)) / tolerance
     return Target("gain", want, abs(got.gain), margin, margin >= 0.0, "")
 

@@ -77,6 +77,7 @@ class Chain:
              "bench.1", and "source", "load", "supply", "target", "preferred", "tolerance" (line 0 where absent)
     output   the stage at whose output the chain is looked at, all that follows hanging there; "" for the load. No file
              says so: a bench that was measured there asks for it.
+    text     what it was read from; numbers may have been put in the place of the text's since
     """
 
     path: str
@@ -95,6 +96,7 @@ class Chain:
     has_targets: bool = False
     digest: str = ""
     output: str = ""
+    text: str = field(default="", compare=False, repr=False)
 
     def get(self, path: str, default: float | None = None) -> float | None:
         """The number at `path`, or `default`."""

@@ -63,7 +63,7 @@ def reading_of(text: str, file: str) -> Reading:
         return Reading(None, tuple(desk.found), [*desk.problems(), _and_more(file)], data)
     if desk.found:
         return Reading(None, tuple(desk.found), desk.problems(), data)
-    return Reading(replace(chain, digest=digest.of(chain)), (), [], data)
+    return Reading(replace(chain, digest=digest.of(chain), text=text), (), [], data)
 
 
 @lru_cache(maxsize=4)

@@ -91,10 +91,13 @@ def _unit(column: int, cols: Columns) -> float:
 
 
 def _best(rows: list[Row], active: set[int], column: int, cols: Columns) -> int:
-    """The row with the fewest entries among those in which the column weighs enough."""
+    """The row with the fewest entries among those in which the column weighs enough. Raises OverflowError."""
     weights = {k: _weight(rows[k], column, cols) for k in sorted(active)}
     enough = 0.1 * max(weights.values())
-    return min((k for k, weight in weights.items() if weight >= enough), key=lambda k: len(rows[k]))
+    known = [k for k, weight in weights.items() if weight >= enough > 0.0]
+    if not known:
+        raise OverflowError("entries that are beyond all numbers have no order")
+    return min(known, key=lambda k: len(rows[k]))
 
 
 def _tree_ends(row_of: dict[int, int], small: list[bool], cols: Columns, group: Group) -> list[tuple[int, int]]:

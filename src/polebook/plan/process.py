@@ -1,22 +1,19 @@
-"""A second process of this program that answers what it is asked, each thing as a whole; `send` is its side's too."""
+"""A second process of this program that answers what it is asked, each thing as a whole message (`wire`)."""
 
 from __future__ import annotations
 
 import os
-import pickle
 import subprocess
 import sys
 from contextlib import suppress
-from dataclasses import fields, replace
 from threading import Thread
-from types import MappingProxyType
-from typing import IO, Any
 
-from polebook.chain.model import Chain
+from polebook.plan import wire
+from polebook.plan.wire import Garbled, Message
 
 
 class Process:
-    """Runs `program` (Python) as a program of its own, not as a copy of this one, and hears it in a thread of its own.
+    """Runs `program` (Python, fixed text) as a program of its own, not as a copy of this one, and hears it in a thread.
 
     Raises OSError where there is no room for one. Its maker says what becomes of what it says (`heard`, called in that
     thread) and of its end (`gone`, likewise).
@@ -24,24 +21,26 @@ class Process:
 
     def __init__(self, program: str) -> None:
         path = os.pathsep.join(part or os.getcwd() for part in sys.path)
-        self._process = subprocess.Popen([sys.executable, "-c", program], stdin=subprocess.PIPE, stdout=subprocess.PIPE,
-                                         stderr=subprocess.DEVNULL, env={**os.environ, "PYTHONPATH": path})
+        # -P: or it would take a module that lies in the current folder for one of Python's own
+        self._process = subprocess.Popen([sys.executable, "-P", "-c", program], stdin=subprocess.PIPE,
+                                         stdout=subprocess.PIPE, stderr=subprocess.DEVNULL,
+                                         env={**os.environ, "PYTHONPATH": path})
         self._listener = Thread(target=self._listen, daemon=True)
         self._listener.start()
 
-    def heard(self, what: Any) -> None:
-        """Something that it said."""
+    def heard(self, what: Message) -> None:
+        """Something that it said. Raises Garbled for what it may not say."""
         raise NotImplementedError
 
-    def gone(self) -> None:
-        """It has ended, or says what nobody understands."""
+    def gone(self, why: str) -> None:
+        """It has ended (""), or says what nobody understands."""
         raise NotImplementedError
 
-    def give(self, what: object) -> None:
+    def give(self, what: Message) -> None:
         """Hands something over."""
         assert self._process.stdin is not None
         with suppress(OSError):  # it has gone: its listener says so
-            send(self._process.stdin, what)
+            wire.write(self._process.stdin, what)
 
     def end(self) -> None:
         """Ends the process, whatever it does."""
@@ -55,21 +54,12 @@ class Process:
 
     def _listen(self) -> None:
         assert self._process.stdout is not None
+        why = ""
         try:
-            while True:
-                self.heard(pickle.load(self._process.stdout))
-        except (EOFError, OSError, ValueError, pickle.UnpicklingError):
-            self.gone()
-
-
-def send(target: IO[bytes], what: object) -> None:
-    """Writes something for the other side to load."""
-    pickle.dump(what, target, pickle.HIGHEST_PROTOCOL)
-    target.flush()
-
-
-def portable(chain: Chain) -> Chain:
-    """The same with plain dicts, which can be sent."""
-    views: dict[str, Any] = {one.name: getattr(chain, one.name) for one in fields(chain)}
-    plain: dict[str, Any] = {key: dict(view) for key, view in views.items() if isinstance(view, MappingProxyType)}
-    return replace(chain, **plain)
+            while (what := wire.read(self._process.stdout)) is not None:
+                self.heard(what)
+        except Garbled as error:
+            why = str(error)
+        except OSError:
+            pass
+        self.gone(why)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
-from math import exp, log, sqrt
+from math import exp, inf, log, sqrt
 
 import numpy as np
 
@@ -43,7 +43,7 @@ def seed(net: Network, midband: list[float], start_hz: float, taus: Iterable[flo
     """(band seed in Hz, whether |H| there is within 3 dB of the midband gain)."""
     if relative_at(net, start_hz, midband) >= HALF_POWER:
         return start_hz, True
-    corners = [1.0 / (2 * np.pi * abs(tau)) for tau in taus if abs(tau) > 1e-300]
+    corners = [1.0 / (2 * np.pi * abs(tau)) for tau in taus if 1e-300 < abs(tau) < inf]
     if not corners:
         return start_hz, False
     first = np.ceil(40 * np.log10(min(corners) / 10) - FLAT)
@@ -105,7 +105,8 @@ def _peak(at: Function, x: Array, loss: Array) -> float:
     """
     top = float(loss.max())
     best = max([top, *(at(x[end] + step) for end, step in ((0, -OUTWARD), (-1, OUTWARD)) if loss[end] > top - 0.1)])
-    sides = np.diff(loss)
+    with np.errstate(invalid="ignore"):  # below all numbers on both sides: not a number, and no bump
+        sides = np.diff(loss)
     for k in np.nonzero((sides[:-1] >= 0) & (sides[1:] <= 0))[0] + 1:
         reach = float(loss[k] + max(sides[k - 1], -sides[k]))
         if reach > max(best, FLAT):

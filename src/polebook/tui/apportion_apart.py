@@ -5,8 +5,10 @@ from __future__ import annotations
 from collections.abc import Iterator
 from threading import Event
 
+from polebook.plan.wire import Message
 from polebook.problem import Problem, ProblemsFound
-from polebook.tui.apportion_work import STOP, Step, question, steps
+from polebook.tui.apportion_passed import STOP, piece
+from polebook.tui.apportion_work import Step, question, steps
 from polebook.tui.apportions import Asked
 from polebook.tui.spread_apart import Apart, answered
 
@@ -23,17 +25,17 @@ def sought(asked: Asked, text: str, file: str, halt: Event) -> Iterator[Step]:
     what = question(asked, text, file)
     _idle[:] = [worker for worker in _idle if worker.there]
     try:
-        worker = _idle.pop() if _idle else Apart(PROGRAM)
+        worker = _idle.pop() if _idle else Apart(PROGRAM, piece)
     except OSError:
         work = steps(what, halt.is_set)
     else:
-        work = answered(worker, _idle, lambda: worker.give(what), _Passed(worker, halt).on)
+        work = answered(worker, _idle, lambda: worker.give(Message("run", what)), _Passed(worker, halt).on)
     problems: list[Problem] = []
-    for done, total, piece in work:
-        if piece is not None and "problems" in piece:  # the last piece: once it has ended the process is free again
-            problems = [Problem(None, *one) for one in piece["problems"]]
+    for done, total, came in work:
+        if came is not None and "problems" in came:  # the last piece: once it has ended the process is free again
+            problems = [Problem(None, *one) for one in came["problems"]]
         else:
-            yield done, total, piece
+            yield done, total, came
     if problems:
         raise ProblemsFound(problems)
 
@@ -47,4 +49,4 @@ class _Passed:
     def on(self) -> None:
         if self._halt.is_set() and not self._said:
             self._said = True
-            self._worker.give(STOP)
+            self._worker.give(Message(STOP))

@@ -10,14 +10,16 @@ from time import perf_counter
 from typing import IO, Any
 
 from polebook.plan.apportion import Best, Request, Result, apportion
+from polebook.plan.wire import Message
 from polebook.problem import ProblemsFound
 from polebook.text.edit import Edit, Splice
+from polebook.tui.apportion_passed import STOP
+from polebook.tui.apportion_passed import asked as asked_of
 from polebook.tui.apportions import Asked, Reached, Run
 from polebook.tui.spread_work import attend, tell
 
 Step = tuple[int, int, Any]
 OFTEN_S = 0.1  # the best so far is told anew after so long
-STOP = "stop"  # said to a process in the midst of a run
 
 
 def steps(asked: Mapping[str, Any], stop: Callable[[], bool] = lambda: False) -> Iterator[Step]:
@@ -74,7 +76,11 @@ def serve() -> None:
     attend(_answer)
 
 
-def _answer(target: IO[bytes], asked: SimpleQueue[Any]) -> None:
+def _answer(target: IO[bytes], asked: SimpleQueue[Message]) -> None:
     what = asked.get()
-    if what != STOP:  # else it came when all was done
-        tell(target, steps(what, stop=lambda: not asked.empty()))
+    if what.kind != STOP:  # else it came when all was done
+        tell(target, _asked(what, asked))
+
+
+def _asked(what: Message, more: SimpleQueue[Message]) -> Iterator[Step]:
+    yield from steps(asked_of(what), stop=lambda: not more.empty())

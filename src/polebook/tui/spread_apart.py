@@ -9,8 +9,11 @@ from queue import Empty, SimpleQueue
 from typing import TYPE_CHECKING, Any, TypeVar
 
 from polebook.chain.model import Chain
-from polebook.plan.process import Process, portable
+from polebook.plan.passed import passed
+from polebook.plan.process import Process
+from polebook.plan.wire import Message
 from polebook.problem import Problem, ProblemsFound
+from polebook.tui.news import News, news
 
 if TYPE_CHECKING:
     from polebook.tui.spread_work import Step
@@ -24,26 +27,30 @@ _idle: list[Apart] = []  # one at the most: a program that is there answers half
 _living: set[Apart] = set()
 
 
+def _told(given: Any) -> Any:
+    from polebook.tui.spread_passed import told  # deferred: it needs numpy, and there is no run at the start
+
+    return told(given)
+
+
 class Apart(Process):
     """Such a process, with nothing to do yet. Raises OSError where there is no room for one."""
 
-    def __init__(self, program: str = PROGRAM) -> None:
-        self._news: SimpleQueue[tuple[str, Any]] = SimpleQueue()
+    def __init__(self, program: str, piece: Callable[[Any], Any]) -> None:
+        """`piece` takes what a step has come to, as `news.news` does."""
+        self._news: SimpleQueue[News] = SimpleQueue()
+        self._piece = piece
         super().__init__(program)
         _living.add(self)
 
-    def ask(self, chain: Chain, builds: int, seed: int) -> None:
-        """Has it begin."""
-        self.give((portable(chain), builds, seed))
+    def heard(self, what: Message) -> None:
+        self._news.put(news(what, self._piece))
 
-    def heard(self, what: Any) -> None:
-        self._news.put(what)
+    def gone(self, why: str) -> None:
+        self._news.put(("gone", why))
 
-    def gone(self) -> None:
-        self._news.put(("gone", None))
-
-    def news(self) -> tuple[str, Any] | None:
-        """What it says next: ("step", ...), ("end", None), ("problems", ...), ("fault", ...), ("gone", None)."""
+    def news(self) -> News | None:
+        """What it says next, None where that is not yet."""
         with suppress(Empty):
             return self._news.get(timeout=WAIT_S)
         return None
@@ -61,14 +68,18 @@ class Apart(Process):
 
 def spread(chain: Chain, builds: int, seed: int) -> Iterator[Step]:
     """As `spread_work.steps`, each step in some milliseconds; (done, total, None) also where nothing has come."""
-    try:
-        worker = _idle.pop() if _idle else Apart()
-    except OSError:
+    worker = None
+    told = passed(chain)
+    if told is not None:
+        with suppress(OSError):
+            worker = _idle.pop() if _idle else Apart(PROGRAM, _told)
+    if worker is None or told is None:
         from polebook.tui.spread_work import steps  # deferred: here nothing else needs the engine
 
         yield from steps(chain, builds, seed, block=BLOCK)
         return
-    yield from answered(worker, _idle, lambda: worker.ask(chain, builds, seed))
+    asked = Message("run", {"chain": told, "builds": builds, "seed": seed})
+    yield from answered(worker, _idle, lambda: worker.give(asked))
 
 
 def answered(worker: T, idle: list[T], ask: Callable[[], None], meanwhile: Callable[[], None] = lambda: None,
@@ -83,27 +94,32 @@ def answered(worker: T, idle: list[T], ask: Callable[[], None], meanwhile: Calla
         ask()
         while not free:
             meanwhile()
-            news = worker.news()
-            if news is None:
+            heard = worker.news()
+            if heard is None:
                 yield last
                 continue
-            kind, what = news
-            free = kind in ("end", "problems")
-            if kind == "problems":
-                raise ProblemsFound(what)
-            if kind == "fault":
-                raise RuntimeError(what)
-            if kind == "gone":
-                raise ProblemsFound([Problem(None, "the process that computes it has gone", "something has ended it",
-                                             "s begins again")])
-            if kind == "step":
-                last = (what[0], what[1], None)
-                yield what
+            free = heard[0] in ("end", "problems")
+            if heard[0] == "problems":
+                raise ProblemsFound(heard[1])
+            if heard[0] == "fault":
+                raise RuntimeError(heard[1])
+            if heard[0] == "gone":
+                raise ProblemsFound([_gone(heard[1])])
+            if heard[0] == "step":
+                last = (*heard[1][:2], None)
+                yield heard[1]
     finally:
         if free and not idle:
             idle.append(worker)
         else:
             worker.end()
+
+
+def _gone(why: str) -> Problem:
+    if why:
+        return Problem(None, "the process that computes it says what is no answer", why,
+                       "s begins again; if polebook was updated while it ran, leave it and open the file again")
+    return Problem(None, "the process that computes it has gone", "something has ended it", "s begins again")
 
 
 def end_all() -> None:

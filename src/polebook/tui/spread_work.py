@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 import os
-import pickle
 import signal
 import sys
 import traceback
 from collections.abc import Callable, Iterator
+from contextlib import suppress
 from math import log10
 from queue import SimpleQueue
 from threading import Thread
@@ -17,7 +17,7 @@ from typing import IO, Any
 from polebook.book.reach import within_reach
 from polebook.book.targets import LESS_IS_BETTER, TOLERANCE_DB
 from polebook.chain.model import Chain
-from polebook.plan.process import send
+from polebook.plan import wire
 from polebook.plan.spread.draws import Draw
 from polebook.plan.spread.figures import Figure as Kind
 from polebook.plan.spread.model import Request, Result
@@ -25,7 +25,9 @@ from polebook.plan.spread.run import spread
 from polebook.plan.spread.states import GOOD, KEYS, WORDS
 from polebook.plan.spread.statistics import Statistics
 from polebook.plan.spread.workers import LONG, Crew, cores
+from polebook.plan.wire import Garbled, Message, plain
 from polebook.problem import Problem, ProblemsFound
+from polebook.tui.spread_passed import asked as asked_of
 from polebook.tui.spreads import Figure, Heap, Row, Told, Worst
 
 Step = tuple[int, int, Told | None]
@@ -128,29 +130,28 @@ def serve() -> None:
         attend(lambda target, asked: tell(target, _asked(asked.get(), crew)))
 
 
-def attend(answer: Callable[[IO[bytes], SimpleQueue[Any]], None]) -> None:
+def attend(answer: Callable[[IO[bytes], SimpleQueue[Message]], None]) -> None:
     """Takes what is asked from standard input, answers on standard output, and ends at once with the one who asks."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)  # ctrl-c is for the one who asks
     if hasattr(os, "nice"):
         os.nice(NICE)  # keys come first where there are fewer cores than work
     source, target = sys.stdin.buffer, sys.stdout.buffer
     sys.stdout = sys.stderr
-    asked: SimpleQueue[Any] = SimpleQueue()
+    asked: SimpleQueue[Message] = SimpleQueue()
 
     def listen() -> None:
-        try:
-            while True:
-                asked.put(pickle.load(source))
-        except (EOFError, OSError):
-            os._exit(0)  # whatever is being computed: nobody is left to read it
+        with suppress(Garbled, OSError):
+            while (one := wire.read(source)) is not None:
+                asked.put(one)
+        os._exit(0)  # whatever is being computed: nobody is left to read it
 
     Thread(target=listen, daemon=True).start()
     while True:
         answer(target, asked)
 
 
-def _asked(what: tuple[Chain, int, int], crew: Crew) -> Iterator[Step]:
-    chain, builds, seed = what
+def _asked(what: Message, crew: Crew) -> Iterator[Step]:
+    chain, builds, seed = asked_of(what)
     worth = builds * (len(chain.stages) + 2) >= LONG
     yield from steps(chain, builds, seed, crew, max(cores() - 1, 1) if worth else 1)  # a core is for the keys
 
@@ -159,11 +160,11 @@ def tell(target: IO[bytes], work: Iterator[Any]) -> None:
     """Sends the steps of some work, and how it ended."""
     try:
         for step in work:
-            send(target, ("step", step))
-        send(target, ("end", None))
+            wire.write(target, Message("step", plain(step)))
+        wire.write(target, Message("end"))
     except ProblemsFound as found:
-        send(target, ("problems", found.problems))
+        wire.write(target, Message("problems", plain(found.problems)))
     except OSError:
         raise
     except Exception:
-        send(target, ("fault", traceback.format_exc()))
+        wire.write(target, Message("fault", traceback.format_exc()))

@@ -10,7 +10,7 @@ from collections.abc import Callable, Iterator
 from queue import Empty, SimpleQueue
 
 from polebook.plan.spread.block import Piece, Stopped
-from polebook.plan.spread.helper import Answers, Bench, Helper, Setting, Task
+from polebook.plan.spread.helper import THERE, Answers, Bench, Helper, Setting, Task
 
 LONG = 120_000  # builds times segments from which a helper, which takes 0.3 s to start, is worth it
 AHEAD = 2  # tasks that a helper has at a time
@@ -66,24 +66,25 @@ class Workers:
     """This process and `count` helpers of a crew, at one setting. Raises ProblemsFound for a chain without ledger."""
 
     def __init__(self, setting: Setting, crew: Crew, count: int) -> None:
-        self.setting, self._crew = setting, crew
+        self._crew = crew
         self._todo: deque[Task] = deque()
         self._ready: dict[int, Piece] = {}
         crew.runs += 1
         crew.grow(count)
-        self._mine = crew.helpers[:count]
+        self._given = setting.message() if count else None
+        self._mine = crew.helpers[:count] if self._given else []
         for helper in self._mine:
             helper.tasks.clear()
-            if helper.there:
-                helper.set(setting)
+            self._set(helper)
         self.bench = Bench(setting)  # while the helpers set up theirs
+        self._names = {figure.name for figure in self.bench.figures}
 
     def pieces(self, tighter: tuple[str, float] | None, builds: int, stop: Callable[[], bool]) -> Iterator[Piece]:
         """Blocks from build 0 on until `builds` are there, in order; ends early once `stop` says so.
 
         tighter  as in `Task`
         """
-        size = self.setting.size
+        size = self.bench.setting.size
         starts = range(0, builds, size)
         self._todo = deque(Task(self._crew.runs, first, min(size, builds - first), tighter) for first in starts)
         self._ready = {}
@@ -110,19 +111,28 @@ class Workers:
                 return
             wait = False
             helper, what, task, piece = heard
-            if what == "gone":
-                self._todo.extendleft(reversed(helper.tasks))
-                helper.tasks.clear()
-                self._crew.lose(helper)
-                self._mine = [one for one in self._mine if one is not helper]
-            elif what == "there":
+            if what == THERE:
                 helper.there = True
                 if helper in self._mine:
-                    helper.set(self.setting)
-            elif task is not None and piece is not None and task in helper.tasks:  # else it is of a spread called off
+                    self._set(helper)
+            elif task is None or piece is None or (task in helper.tasks and piece.columns.keys() != self._names):
+                self._lose(helper)
+            elif task in helper.tasks:  # else it is of a spread called off
                 helper.tasks.remove(task)
                 self._ready[task.first] = piece
             self._hand_out()
+
+    def _set(self, helper: Helper) -> None:
+        if helper.there and self._given is not None:
+            helper.give(self._given)
+
+    def _lose(self, helper: Helper) -> None:
+        """What it had to do is done by others; of one that has gone, or answers what it was not asked."""
+        self._todo.extendleft(reversed(helper.tasks))
+        helper.tasks.clear()
+        self._mine = [one for one in self._mine if one is not helper]
+        if helper in self._crew.helpers:  # else it says that it has gone after it was let go
+            self._crew.lose(helper)
 
     def _hand_out(self) -> None:
         for helper in self._mine:
