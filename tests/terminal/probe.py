@@ -140,12 +140,16 @@ class Terminal:
             if error.errno != errno.EIO:
                 raise
             return b""
+        self.took(data)
+        return data
+
+    def took(self, data: bytes) -> None:
+        """What has come goes on the emulator's screen, and what it asks is answered."""
         self.log += data
         self._stream.feed(_KEYBOARD.sub(b"", data))
         for asked, answer in _ANSWERS:
             for _ in range(data.count(asked)):
-                os.write(self.fd, answer)
-        return data
+                self.write(answer)
 
     def write(self, data: bytes) -> None:
         os.write(self.fd, data)

@@ -4,6 +4,9 @@ import fcntl
 import termios
 import time
 
+import pytest
+
+from tests.bench.slow_line import run
 from tests.terminal.probe import Terminal, app
 from tests.tui.desk import SIX, Desk, copied
 
@@ -88,3 +91,10 @@ def test_a_terminal_set_not_to_wait_is_waited_for(tmp_path):
             time.sleep(0.02)
         time.sleep(0.2)  # the first painting is more than the terminal's buffer holds
         terminal.shows(desk.screen(200, 60))
+
+
+@pytest.mark.parametrize(("name", "keys", "paints"), [("typed ahead, all at once", 16, 6), ("+ held down", 24, 10)])
+def test_over_9600_baud_and_300_ms_no_key_is_lost_and_few_are_painted(tmp_path, name, keys, paints):
+    """How many are painted depends on how fast the machine is, that they are fewer than the keys does not."""
+    told = run(name, copied(tmp_path, SIX), keys)
+    assert told.keys == keys and 0 < told.paints <= paints and told.sent <= 1500 * paints

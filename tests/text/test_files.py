@@ -160,7 +160,7 @@ def test_text_that_utf8_cannot_hold_is_not_saved(tmp_path: Path) -> None:
 
 
 def test_a_missing_folder_is_named(tmp_path: Path) -> None:
-    assert refused(files.save, tmp_path / "none" / "a.toml", "x").why == "there is no such file"
+    assert refused(files.save, tmp_path / "none" / "a.toml", "x").why == "its folder is not there"
 
 
 AS_ANOTHER_USER = """

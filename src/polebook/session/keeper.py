@@ -38,6 +38,11 @@ class Keeper:
         self._wanted = self._done = NOTHING
         self._turn = threading.Lock()
 
+    @property
+    def lost(self) -> bool:
+        """Whether what was kept is there no more: another hand has removed it."""
+        return bool(self.file) and not os.path.lexists(self.file)
+
     def want(self, work: Work) -> None:
         """From now on this is what is to be kept."""
         self._wanted = work
@@ -46,7 +51,7 @@ class Keeper:
         """Keeps what is wanted now, if it is not kept yet. Why it can't be, "" where it is."""
         with self._turn:
             work = self._wanted
-            if work == self._done and (work.text is None or os.path.lexists(self.file)):
+            if work == self._done and (work.text is None or not self.lost):
                 return ""
             try:
                 if work.text is None:

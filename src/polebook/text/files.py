@@ -116,6 +116,9 @@ def save(path: str | os.PathLike[str], text: str | Iterable[str]) -> None:
         _write(temporary, (text,) if isinstance(text, str) else text, status)
         os.replace(temporary, target)
         temporary = ""
+    except FileNotFoundError:
+        raise ProblemsFound([Problem(Place(name), "the file can't be saved", "its folder is not there",
+                                     "make the folder again, then save again")]) from None
     except (OSError, ValueError) as error:  # ValueError: a NUL in the name, a lone surrogate in the text
         raise _failed(name, error, "saved") from None
     finally:
@@ -161,8 +164,12 @@ def _existing(name: str, target: str) -> os.stat_result | None:
         return None
     _check_kind(name, status)
     if not os.access(target, os.W_OK):
-        raise PermissionError(errno.EACCES, "read-only file")
+        raise OSError(errno.EROFS if _read_only_disk(target) else errno.EACCES, "read-only file")
     return status
+
+
+def _read_only_disk(path: str) -> bool:
+    return os.name == "posix" and bool(os.statvfs(path).f_flag & os.ST_RDONLY)
 
 
 def _check_kind(name: str, status: os.stat_result, what: str = _CHAIN) -> None:

@@ -182,16 +182,18 @@ class Guardian:
             seen = known if theirs is None else theirs.identity
             self._watching.do(lambda: self._look(state, seen), lambda found: self._told(lambda: self._saw(*found)))
 
-    def _look(self, state: State, seen: Identity | None) -> tuple[Look | None, Holder | None, tuple[Kept, ...]]:
-        """At the file and its lock; what was left behind where the lock has become ours."""
+    def _look(self, state: State, seen: Identity | None) -> tuple[Look | None, Holder | None, tuple[Kept, ...], bool]:
+        """At the file and its lock; what was left behind where the lock has become ours; whether kept work is gone."""
         session = state.session
         look = watch.look(self._path, session.identity, seen)
         holder = self._lock.hold()
         kept = self._found(state)[0] if holder is None and session.held else ()
-        return look, holder, kept
+        return look, holder, kept, self._keeper.lost
 
-    def _saw(self, look: Look | None, holder: Holder | None, kept: tuple[Kept, ...]) -> None:
+    def _saw(self, look: Look | None, holder: Holder | None, kept: tuple[Kept, ...], lost: bool) -> None:
         self._looks = False
+        if lost:
+            self._keep()
         self._change(lambda state: watching.held(state, holder, kept, time.monotonic()))
         if look is not None:
             self._change(lambda state: watching.noticed(state, look, time.monotonic()))

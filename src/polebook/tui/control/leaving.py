@@ -73,8 +73,16 @@ def leaving(state: State, value: str) -> Done:
         return replace(state, care=replace(state.care, keep=value == "keep")), Outcome.QUIT
     if value == "write":
         after, outcome = write(writing_judged.taken_in(state))
-        return (after, Outcome.QUIT) if after.session.saved else (after, outcome)
+        return (after, Outcome.QUIT) if after.session.saved else (_unwritable(after), outcome)
     return done(state)
+
+
+def _unwritable(state: State) -> State:
+    """The state after a save that failed on leaving: why, and the ways out that need no file."""
+    if not state.view.bad or state.view.overlay is not None:
+        return state
+    return at(state, message="", bad=False, overlay=Overlay(
+        "leave", "it could not be written", (_KEEP, _LOSE, _STAY), refusal=state.view.message))
 
 
 def settle(state: State, overlay: Overlay, value: str, now: float) -> Done:

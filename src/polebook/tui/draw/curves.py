@@ -19,7 +19,7 @@ from polebook.book.response import (
     response,
 )
 
-_KEPT = 12  # ledgers, windows and kinds of curves in a row: undo and redo find theirs again
+_KEPT = 4  # the ledger of now and the pinned one, and the window before: each holds all of its ledger
 
 
 @lru_cache(_KEPT)

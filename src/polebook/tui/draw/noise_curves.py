@@ -14,7 +14,7 @@ from polebook.tui.draw.plot.axis import Array
 if TYPE_CHECKING:
     from polebook.book.noise import Density, Spot
 
-_KEPT = 12  # ledgers and windows in a row: undo and redo find theirs again
+_KEPT = 4  # the ledger of now and the pinned one, and the window before: each holds all of its ledger
 
 
 @lru_cache(_KEPT)

@@ -79,7 +79,7 @@ def why(of: Ledger) -> str:
     return "" if of.noise.shares else SILENT
 
 
-@lru_cache(8)
+@lru_cache(4)
 def makers(of: Ledger, by_line: bool) -> Sequence[Maker]:
     """All that make noise, or all lines, the greatest share at the reference frequency first."""
     if of.noise is None or why(of):

@@ -15,7 +15,7 @@ from polebook.tui.draw.pulse_sight import Reach
 if TYPE_CHECKING:
     from polebook.solve.transient import Transient
 
-_KEPT = 12  # ledgers and windows in a row: undo and redo find theirs again
+_KEPT = 4  # the ledger of now and the pinned one, and the window before: each holds all of its ledger
 TURN = 0.4  # rad that the fastest oscillation in sight may turn between two points
 SEEN = 1e-3  # of the final value: an oscillation that is smaller is not in sight
 MOST = 4096  # points of a curve
