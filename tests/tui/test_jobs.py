@@ -157,11 +157,11 @@ async def test_without_keys_progress_is_painted_five_times_a_second_at_the_most(
         shown = []
         show = app.face.show
         app.face.show = lambda: shown.append(time.monotonic()) or show()
-        begun = time.monotonic()
+        begun, running = time.monotonic(), app.state.job is not None
         while app.state.job is not None:
             await pilot.pause(0.02)
         await settled(pilot)
-        assert 2 <= len(shown) <= (time.monotonic() - begun) / 0.2 + 2
+        assert running <= len(shown) <= (time.monotonic() - begun) / 0.2 + 2
         assert painted(app) == drawn(app)
 
 
