@@ -211,6 +211,14 @@ def limit_s(data: bytes) -> float:
     return LIMIT_S + STAGE_S * min(max(data.count(b"[[stage]]") - FEW, 0), 48) + ARM_S * min(data.count(b" }, {"), 256)
 
 
+def _most_megabytes() -> float:
+    """The most that this process has held since it was begun; `ru_maxrss` would have that of the one that began it."""
+    status = Path("/proc/self/status")
+    if status.exists():
+        return next(int(line.split()[1]) / 1024 for line in status.read_text().splitlines() if line.startswith("VmHWM"))
+    return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
+
+
 def run(command: str, path: str, number: int, times: float = 1.0) -> Finding:
     """The command, in this process, its streams caught; it may take so many times the limit."""
     from polebook.cli.main import main
@@ -224,7 +232,7 @@ def run(command: str, path: str, number: int, times: float = 1.0) -> Finding:
     except BaseException:
         wrong = traceback.format_exc()
     seconds = time.process_time() - begun
-    megabytes = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
+    megabytes = _most_megabytes()
     return Finding(number, command, code, seconds, wrong or _amiss(command, code, out.getvalue(), err.getvalue()) or
                    (f"{seconds:.1f} s" if seconds > times * limit_s(Path(path).read_bytes()) else "") or
                    (f"{megabytes:.0f} MB" if megabytes > LIMIT_MB else ""), megabytes)

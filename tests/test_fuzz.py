@@ -7,7 +7,7 @@ from tests.fuzz_files import commands, findings, spoilt
 from tests.fuzz_hostile import FIELDS, SEEDS, cases, characters, marked
 from tests.helpers import of_whole
 
-SAMPLE = of_whole(150, 80)
+SAMPLE = of_whole(150, 60)
 
 
 def test_spoilt_files_end_in_a_message_or_a_ledger():

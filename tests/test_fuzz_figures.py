@@ -11,8 +11,9 @@ from polebook.stages.registry import KINDS
 from tests.fuzz_chains import draw, shape_of
 from tests.fuzz_figures import Tally
 from tests.fuzz_judge import Judge, Judged, Whole, judge, odd_numbers
+from tests.helpers import of_whole
 
-SEED, SAMPLE = 2026, 44
+SEED, SAMPLE = 2026, of_whole(44, 24)
 
 
 def test_drawn_chains_have_right_figures():

@@ -7,6 +7,7 @@ import time
 import pytest
 
 from tests.bench.slow_line import run
+from tests.helpers import WHOLE
 from tests.terminal.probe import Terminal, app
 from tests.tui.desk import SIX, Desk, copied
 
@@ -93,6 +94,7 @@ def test_a_terminal_set_not_to_wait_is_waited_for(tmp_path):
         terminal.shows(desk.screen(200, 60))
 
 
+@pytest.mark.skipif(not WHOLE, reason="waits half a minute for a slow line; python -m tests.bench.slow_line tells more")
 @pytest.mark.parametrize(("name", "keys", "paints"), [("typed ahead, all at once", 16, 6), ("+ held down", 24, 10)])
 def test_over_9600_baud_and_300_ms_no_key_is_lost_and_few_are_painted(tmp_path, name, keys, paints):
     """How many are painted depends on how fast the machine is, that they are fewer than the keys does not."""
