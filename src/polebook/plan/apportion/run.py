@@ -27,7 +27,7 @@ from polebook.plan.apportion.yields import got, judged, judging, met_beside, mis
 from polebook.plan.proposal import Proposal, propose
 from polebook.problem import Problem, ProblemsFound
 
-SCATTERED = 48  # values that are tried for a start
+SCATTERED, TO_FAVOUR = 48, 16  # values that are tried for a start; once one start has met all, to favour a figure
 STARTS, STARTS_TO_FAVOUR = 5, 2  # of them, from which the search is begun anew
 AGREE, ALIKE = 3, 0.01  # starts that have to come to the same merit, and how near, for no more to be begun
 LIFELESS = 300  # values that are tried where the chain has no figures as it is
@@ -145,7 +145,7 @@ class _Search:
             found.append((yield from self._from(of, today)))
         if not self._enough(found):
             others = [] if today.lives else [seen]
-            for x in scattered(task, SCATTERED, self.request.seed):
+            for x in scattered(task, TO_FAVOUR if task.favour and found else SCATTERED, self.request.seed):
                 there = trial(task, x)
                 yield self._progress()
                 if there.lives:
