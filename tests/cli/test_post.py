@@ -240,7 +240,7 @@ def test_a_yield_is_posted_as_it_is_audited(capsys, tmp_path):
 def test_what_ctrl_c_stops_writes_nothing(capsys, tmp_path, monkeypatch):
     from polebook.plan import yielded
 
-    def stopped(_):
+    def stopped(*_):
         yield 1, 10, None
         raise KeyboardInterrupt
 

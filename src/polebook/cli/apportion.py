@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 import argparse
-from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from polebook.cli.command import INTERRUPTED, MET, MISSED, Command, Usage
-from polebook.cli.out import Out
+from polebook.cli.out import Out, Pace
+from polebook.cli.quantities import names
 
 if TYPE_CHECKING:
     from polebook.plan.apportion import Best, Request, Result
@@ -36,7 +36,6 @@ exit code: 0 where all targets are met as proposed, else 1
 examples:
   polebook apportion chain.toml
   polebook apportion chain.toml --free Q1.rc,Q1.re,Q2 --favour upper --write"""
-QUICK_S, REPAINT_S = 0.4, 0.1  # a search that is done by then shows no progress; least time between two paints
 _MOST_SEED = 10**9
 
 
@@ -62,8 +61,7 @@ def _run(args: argparse.Namespace, out: Out) -> int:
     chain = read.parse(text, args.file)
     from polebook.plan.apportion import Request  # deferred: a faulty file is told without numpy, 75 ms sooner
 
-    free = tuple(word.strip() for word in args.free.split(",") if word.strip())
-    found = _found(Request(text, args.file, free, args.favour.strip(), int(seed)), out)
+    found = _found(Request(text, args.file, names(args.free), args.favour.strip(), int(seed)), out)
     edit = found.proposal.edit
     written = args.write and bool(edit) and not found.stopped
     if written:
@@ -87,7 +85,7 @@ def _found(request: Request, out: Out) -> Result:
     """The result of the search; of what was found so far where ctrl-c stops it."""
     from polebook.plan.apportion import apportion, concluded  # deferred as above
 
-    work, best, next_s = apportion(request), None, monotonic() + QUICK_S
+    work, best, pace = apportion(request), None, Pace()
     try:
         while True:
             try:
@@ -95,8 +93,7 @@ def _found(request: Request, out: Out) -> Result:
             except StopIteration as end:
                 result: Result = end.value
                 break
-            if (now_s := monotonic()) > next_s:
-                next_s = now_s + REPAINT_S
+            if pace.due():
                 out.progress(f" {done} of at most {total} trials, {_state(best)} so far (ctrl-c stops)")
     except KeyboardInterrupt:
         out.progress("")

@@ -5,11 +5,10 @@ from __future__ import annotations
 import argparse
 import os
 from collections.abc import Iterable
-from time import monotonic
 from typing import TYPE_CHECKING
 
 from polebook.cli.command import FAULT, MET, Command
-from polebook.cli.out import Out
+from polebook.cli.out import Out, Pace
 from polebook.cli.quantities import whole
 
 if TYPE_CHECKING:
@@ -33,7 +32,6 @@ exit code: 0, or 2 where a sweep can't be read
 
 example:
   polebook bench chain.toml"""
-QUICK_S, REPAINT_S = 0.4, 0.1  # what is done by then shows no progress; least time between two paints
 
 
 def _arguments(parser: argparse.ArgumentParser) -> None:
@@ -82,11 +80,10 @@ def against_the_plan(chain: Chain, file: str, builds: int | None, seed: int, out
     from polebook.record.compared import compared  # deferred as above
 
     result: tuple[Compared, ...] = ()
-    next_s = monotonic() + QUICK_S
+    pace = Pace()
     for done, total, benches in compared(chain, os.path.dirname(file), builds, seed):
         result = benches
-        if (now_s := monotonic()) > next_s:
-            next_s = now_s + REPAINT_S
+        if pace.due():
             out.progress(f" {done} of {total} built (ctrl-c stops)")
     out.progress("")
     return result

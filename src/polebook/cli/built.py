@@ -2,15 +2,13 @@
 
 from __future__ import annotations
 
-from time import monotonic
 from typing import TYPE_CHECKING, Any
 
-from polebook.cli.out import Out
+from polebook.cli.out import Out, Pace
 
 if TYPE_CHECKING:
     from polebook.book.ledger import Ledger
 
-QUICK_S, REPAINT_S = 0.4, 0.1  # what is built by then shows no progress; least time between two paints
 
 
 def hand_yield(ledger: Ledger, file: str, out: Out) -> dict[str, Any] | None:
@@ -19,7 +17,7 @@ def hand_yield(ledger: Ledger, file: str, out: Out) -> dict[str, Any] | None:
         return None
     from polebook.plan import yielded  # deferred: few files ask for a yield
 
-    work, next_s = yielded.hand(ledger), monotonic() + QUICK_S
+    work, pace = yielded.hand(ledger), Pace()
     try:
         while True:
             try:
@@ -27,8 +25,7 @@ def hand_yield(ledger: Ledger, file: str, out: Out) -> dict[str, Any] | None:
             except StopIteration as end:
                 row: dict[str, Any] | None = end.value
                 return row
-            if (now_s := monotonic()) > next_s:
-                next_s = now_s + REPAINT_S
+            if pace.due():
                 out.progress(f" {file}: {done} of {total} built (ctrl-c stops)")
     finally:
         out.progress("")

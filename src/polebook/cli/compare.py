@@ -4,11 +4,10 @@ from __future__ import annotations
 
 import argparse
 from collections.abc import Generator
-from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from polebook.cli.command import INTERRUPTED, MET, Command, Usage
-from polebook.cli.out import Out
+from polebook.cli.out import Out, Pace
 
 if TYPE_CHECKING:
     from polebook.book.ledger import Ledger
@@ -39,7 +38,6 @@ examples:
   polebook compare chain.toml --rev HEAD~3
   polebook compare before.toml after.toml --json
   polebook compare chain.toml --post 2026-05-04"""
-QUICK_S, REPAINT_S = 0.4, 0.1  # what is done by then shows no progress; least time between two paints
 
 
 def _arguments(parser: argparse.ArgumentParser) -> None:
@@ -139,15 +137,14 @@ def _told(found: Changes, before: Ledger, after: Ledger, out: Out) -> dict[str, 
 
 def _worked(work: Generator[tuple[int, int], None, dict[str, Any]], out: Out) -> dict[str, Any]:
     """What the work comes to, with a line of progress where it takes long."""
-    next_s = monotonic() + QUICK_S
+    pace = Pace()
     while True:
         try:
             done, total = next(work)
         except StopIteration as end:
             result: dict[str, Any] = end.value
             return result
-        if (now_s := monotonic()) > next_s:
-            next_s = now_s + REPAINT_S
+        if pace.due():
             out.progress(f" one change at a time: {done} of {total} (ctrl-c stops)")
 
 

@@ -4,11 +4,10 @@ from __future__ import annotations
 
 import argparse
 from collections.abc import Iterator
-from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from polebook.cli.command import INTERRUPTED, MET, MISSED, Command, Usage
-from polebook.cli.out import Out
+from polebook.cli.out import Out, Pace
 from polebook.cli.quantities import quantity
 from polebook.problem import Problem, ProblemsFound
 
@@ -36,7 +35,6 @@ series. Exit code 1: none of the ways does it.
 
 example:
   polebook compensate chain.toml Q2 --edge 100k --feedback 0.01"""
-QUICK_S = 0.4  # what is done by then shows no progress
 WAYS, COILS = ("across", "away", "left", "ground"), ("flat", "delay", "wide")
 
 
@@ -119,11 +117,11 @@ def _coil(args: argparse.Namespace, text: str, beta: float | None, out: Out) -> 
 def _worked(steps: Iterator[tuple[int, int, Any]], out: Out) -> tuple[list[Any], bool]:
     """What the steps give, and whether ctrl-c cut them short; progress is shown once they take long."""
     done: list[Any] = []
-    stopped, since = False, monotonic()
+    stopped, pace = False, Pace()
     try:
         for count, total, one in steps:
             done.append(one)
-            if monotonic() - since > QUICK_S and count < total:
+            if count < total and pace.due():
                 out.progress(f" {count} of {total} ways (ctrl-c stops)")
     except KeyboardInterrupt:
         stopped = True

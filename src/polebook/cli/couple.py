@@ -7,7 +7,7 @@ from typing import Any
 
 from polebook.cli.command import MET, Command
 from polebook.cli.out import Out
-from polebook.cli.quantities import quantity
+from polebook.cli.quantities import names, quantity
 from polebook.cli.table_file import check, csv_option, deliver
 
 _ABOUT = """Size the coupling and bypass capacitors of a chain for a wanted lower edge with
@@ -52,8 +52,7 @@ def _run(args: argparse.Namespace, out: Out) -> int:
     chain = read.parse(text, args.file)
     from polebook.plan.couple import couple  # deferred: a faulty file is told without numpy, 75 ms sooner
 
-    free = [word.strip() for word in args.free.split(",") if word.strip()]
-    found = couple(text, args.file, wanted, free)
+    found = couple(text, args.file, wanted, names(args.free))
     edit = found.proposal.edit
     if args.write and edit:
         files.save(args.file, edit.apply(text))

@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 import argparse
-from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from polebook.cli.command import MET, Command
-from polebook.cli.out import Out
-from polebook.cli.quantities import whole
+from polebook.cli.out import Out, Pace
+from polebook.cli.quantities import names, whole
 
 if TYPE_CHECKING:
     from polebook.record.fit import Request, Result
@@ -33,7 +32,6 @@ are off alike, something shapes the curve that was not free, and it is told.
 
 example:
   polebook fit chain.toml --bench 1 --free Q1.stray,Q2.stray --write"""
-QUICK_S, REPAINT_S = 0.4, 0.1  # a fit that is done by then shows no progress; least time between two paints
 
 
 def _arguments(parser: argparse.ArgumentParser) -> None:
@@ -54,8 +52,7 @@ def _run(args: argparse.Namespace, out: Out) -> int:
     chain = read.parse(text, args.file)
     from polebook.record.fit import Request  # deferred: a faulty file is told without numpy, 75 ms sooner
 
-    free = tuple(word.strip() for word in args.free.split(",") if word.strip())
-    found = _fitted(Request(text, args.file, number, free, args.offset), out)
+    found = _fitted(Request(text, args.file, number, names(args.free), args.offset), out)
     edit = found.proposal.edit
     written = args.write and bool(edit)
     if written:
@@ -78,12 +75,10 @@ def _run(args: argparse.Namespace, out: Out) -> int:
 def _fitted(request: Request, out: Out) -> Result:
     from polebook.record.fit import fit  # deferred as above
 
-    next_s = monotonic() + QUICK_S
+    pace = Pace()
 
     def watch(looks: int, rms_db: float) -> None:
-        nonlocal next_s
-        if (now_s := monotonic()) > next_s:
-            next_s = now_s + REPAINT_S
+        if pace.due():
             out.progress(f" {looks} looks at the chain, off by {rms_db:.3g} dB rms (ctrl-c stops)")
 
     try:

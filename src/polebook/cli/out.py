@@ -6,14 +6,31 @@ import os
 import sys
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from time import monotonic
 from typing import TextIO
 
 from polebook.problem import Problem, ProblemsFound, render
 from polebook.report.look import WIDTH, Look, fit
 
+QUICK_S, REPAINT_S = 0.4, 0.1  # work that is done by then shows no progress; least time between two paints
+
 
 class OutputLost(Exception):
     """What was written could not be delivered: a full disk, not a reader that has left."""
+
+
+class Pace:
+    """When the progress of a piece of work, begun now, is to be shown: not where it is quick, and not too often."""
+
+    def __init__(self) -> None:
+        self._next_s = monotonic() + QUICK_S
+
+    def due(self) -> bool:
+        """Whether now; then not again for a while."""
+        if (now_s := monotonic()) <= self._next_s:
+            return False
+        self._next_s = now_s + REPAINT_S
+        return True
 
 
 @dataclass(frozen=True, slots=True)

@@ -1,4 +1,4 @@
-"""Options that are quantities or whole numbers."""
+"""Options that are quantities, whole numbers or lists of names."""
 
 from __future__ import annotations
 
@@ -30,3 +30,8 @@ def whole(command: str, option: str, typed: str | None, example: str) -> int | N
     if not (typed.isdecimal() and typed.isascii() and len(typed) <= _MOST):
         raise Usage(f'polebook {command}: {option}: "{typed}" is no whole number', f"write it like {option} {example}")
     return int(typed)
+
+
+def names(typed: str) -> tuple[str, ...]:
+    """The words between the commas of an option."""
+    return tuple(word.strip() for word in typed.split(",") if word.strip())

@@ -4,11 +4,10 @@ from __future__ import annotations
 
 import argparse
 from dataclasses import replace
-from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from polebook.cli.command import INTERRUPTED, MET, Command, Usage
-from polebook.cli.out import Out
+from polebook.cli.out import Out, Pace
 from polebook.cli.quantities import whole
 from polebook.cli.table_file import STANDARD, check, csv_option
 from polebook.report.look import Look
@@ -31,7 +30,6 @@ Ctrl-C stops, and shows what is done so far.
 examples:
   polebook spread chain.toml --builds 100000 --seed 7
   polebook spread chain.toml --temperature -20:60"""
-QUICK_S, REPAINT_S = 0.4, 0.1  # a spread that is done by then shows no progress; least time between two paints
 BAR = 24
 _TEMPERATURE = "supply.temperature"
 
@@ -107,14 +105,13 @@ def done(request: Request, out: Out) -> Result:
     from polebook.plan.spread import run
 
     result: Result | None = None
-    next_s = monotonic() + QUICK_S
+    pace = Pace()
     look = Look(encoding=out.err.encoding or "utf-8")
     try:
         with within_reach(request.chain):
             request, _ = pacing.paced(request)
             for solved, total, result in run.spread(request):
-                if (now_s := monotonic()) > next_s:
-                    next_s = now_s + REPAINT_S
+                if pace.due():
                     out.progress(_progress(result, solved / total, look))
     except KeyboardInterrupt:
         if result is None:

@@ -3,11 +3,10 @@
 from __future__ import annotations
 
 import argparse
-from time import monotonic
 from typing import TYPE_CHECKING
 
 from polebook.cli.command import INTERRUPTED, MET, Command, Usage
-from polebook.cli.out import Out
+from polebook.cli.out import Out, Pace
 from polebook.cli.quantities import quantity
 from polebook.cli.table_file import check, csv_option, deliver
 
@@ -32,7 +31,6 @@ for like one-pole stages: a gain of the root of e, 4.34 dB, in each.
 
 example:
   polebook stages chain.toml --template Q1 --gain 60dB --by re"""
-QUICK_S, REPAINT_S = 0.4, 0.1  # what is done by then shows no progress; least time between two paints
 
 
 def _arguments(parser: argparse.ArgumentParser) -> None:
@@ -61,12 +59,11 @@ def _run(args: argparse.Namespace, out: Out) -> int:
                     "name the key that does, with --by, or leave --gain out",
                     "a wanted gain is made by one key of every copy")
     rows: list[Row] = []
-    stopped, next_s = False, monotonic() + QUICK_S
+    stopped, pace = False, Pace()
     try:
         for done, total, row in stages.steps(of):
             rows.append(row)
-            if (now_s := monotonic()) > next_s:
-                next_s = now_s + REPAINT_S
+            if pace.due():
                 out.progress(f" {args.template}: {done} of {total} chains (ctrl-c stops)")
     except KeyboardInterrupt:
         stopped = True

@@ -3,11 +3,10 @@
 from __future__ import annotations
 
 import argparse
-from time import monotonic
 from typing import TYPE_CHECKING, Any
 
 from polebook.cli.command import INTERRUPTED, MET, Command, Usage
-from polebook.cli.out import Out
+from polebook.cli.out import Out, Pace
 from polebook.cli.table_file import check, csv_option, deliver
 from polebook.series import NAMES
 
@@ -32,7 +31,6 @@ stops, and shows what is done so far.
 example:
   polebook sweep chain.toml Q1.rc 1k:10k --series E12 --figure n1.pole"""
 POINTS = 25
-QUICK_S, REPAINT_S = 0.4, 0.1  # a sweep that is done by then shows no progress; least time between two paints
 
 
 def _arguments(parser: argparse.ArgumentParser) -> None:
@@ -94,12 +92,11 @@ def _answer(file: str, swept: Swept, asked: list[str], out: Out) -> dict[str, An
     figures = sweeping.resolved(swept.chain, swept.path, swept.values, asked)
     now = None if swept.now is None else next(sweeping.sweep(swept.chain, swept.path, [swept.now], figures))[2]
     done: list[Point] = []
-    stopped, next_s = False, monotonic() + QUICK_S
+    stopped, pace = False, Pace()
     try:
         for count, total, point in sweeping.sweep(swept.chain, swept.path, swept.values, figures):
             done.append(point)
-            if (now_s := monotonic()) > next_s:
-                next_s = now_s + REPAINT_S
+            if pace.due():
                 out.progress(f" {swept.path}: {count} of {total} (ctrl-c stops)")
     except KeyboardInterrupt:
         stopped = len(done) < len(swept.values)

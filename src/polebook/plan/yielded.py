@@ -59,11 +59,12 @@ def answer(of: Result | None) -> tuple[Built, dict[str, Any] | None]:
     return Built(told.shares[ALL].share, "", cause), row
 
 
-def hand(of: Ledger) -> Generator[tuple[int, int], None, dict[str, Any] | None]:
+def hand(of: Ledger, stop: Callable[[], bool] = lambda: False, block: int = 0,
+         at_once: int = FEW) -> Generator[tuple[int, int], None, dict[str, Any] | None]:
     """Hands `of` the yield of its builds; yields (done, total) meanwhile, and returns the row that `answer` gives."""
     result = None
     try:
-        for done, total, so_far in built(of.chain):
+        for done, total, so_far in built(of.chain, stop, block, at_once):
             result = so_far
             yield done, total
         made, row = answer(result)

@@ -9,23 +9,20 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator
 from dataclasses import replace
 
-from polebook.book.asked import Built
 from polebook.book.ledger import Ledger
 from polebook.plan.proposal import Proposal, pairs
-from polebook.plan.yielded import answer, asks, built
-from polebook.problem import ProblemsFound
+from polebook.plan.yielded import asks, hand
 
 YIELD = "yield"
-FAILED = "its builds can't be computed"
 BLOCK, ALONE = 512, 8  # builds in a piece of the work, and those of them that need a ledger each: some tens of ms
 
 
 def judging(proposal: Proposal, stop: Callable[[], bool]) -> Iterator[None]:
     """Hands either ledger its yield, a block of builds at a time; nothing where the file asks for none."""
     if asks(proposal.before.chain):
-        yield from _judging(proposal.before, stop)
+        yield from _handed(proposal.before, stop)
         if proposal.edit:
-            yield from _judging(proposal.after, stop)
+            yield from _handed(proposal.after, stop)
         else:
             proposal.after.hand(proposal.before.built)
 
@@ -50,13 +47,6 @@ def got(proposal: Proposal) -> float:
     return next((one.after.got or 0.0 for one in proposal.targets if one.name == YIELD), 0.0)
 
 
-def _judging(of: Ledger, stop: Callable[[], bool]) -> Iterator[None]:
-    result = None
-    try:
-        for _, _, so_far in built(of.chain, stop, BLOCK, ALONE):
-            result = so_far
-            yield None
-    except ProblemsFound:  # the chain itself has figures: only its yield is lost
-        of.hand(Built(None, FAILED))
-    else:
-        of.hand(answer(result)[0])
+def _handed(of: Ledger, stop: Callable[[], bool]) -> Iterator[None]:
+    for _ in hand(of, stop, BLOCK, ALONE):
+        yield None
