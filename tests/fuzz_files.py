@@ -361,12 +361,13 @@ def real(seed: int, number: int) -> str:
 def main(argv: list[str] | None = None) -> int:
     parser = argparse.ArgumentParser(prog="python -m tests.fuzz_files", description=__doc__.split("\n")[0])
     parser.add_argument("--count", type=int, default=2000)
+    parser.add_argument("--first", type=int, default=0, help="number of the first file")
     parser.add_argument("--seed", type=int, default=1)
     parser.add_argument("--workers", type=int, default=2)
     parser.add_argument("--real", type=int, default=0, help="so many of them also as programs of their own")
     parser.add_argument("--only", type=int, metavar="NUMBER", help="this file alone; its text is printed")
     args = parser.parse_args(argv)
-    numbers = list(range(args.count)) if args.only is None else [args.only]
+    numbers = list(range(args.first, args.first + args.count)) if args.only is None else [args.only]
     if args.only is not None:
         sys.stdout.write(spoilt(args.seed, args.only).decode("utf-8", "backslashreplace") + "\n")
     codes: dict[str, Counter[int | None]] = {command: Counter() for command in (*ALLOWED, *SOMETIMES)}

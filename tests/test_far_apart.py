@@ -100,3 +100,11 @@ def test_no_decibels_of_a_ratio_that_no_number_holds():
 @pytest.mark.parametrize("value", [5e-324, 1e-301, 2e299, 1.7e308])
 def test_no_series_has_a_value_beyond_its_decades(value):
     assert not any(holds(value, name) for name in NAMES)
+
+
+def test_nothing_is_posted_of_values_that_lie_too_far_apart(tmp_path, capsys):
+    path = tmp_path / "far.toml"
+    path.write_text(f"format = 1\n{INVERTING}{VOLT}", encoding="utf-8")
+    assert main(["post", str(path)]) == 2
+    assert APART in capsys.readouterr().err
+    assert [one.name for one in tmp_path.iterdir()] == ["far.toml"]

@@ -110,13 +110,35 @@ COMMANDS = {
     ("set", "chain.toml", "Q1.rc", "2k4"): ("chain.toml",),
     ("unset", "chain.toml", "Q1.couple"): ("chain.toml",),
     ("start", "new.toml"): ("new.toml",),
+    ("post", "chain.toml", "-m", "why"): ("chain.posted.toml",),
+    ("audit", "--posted", "chain.toml"): (),
+    ("compare", "chain.toml", "new.toml"): (),
+    ("compare", "chain.toml", "--rev", "HEAD"): (),
+    ("bench", "benched.toml"): (),
+    ("draw", "chain.toml", "--what", "levels", "-o", "levels.svg"): ("levels.svg",),
+    ("report", "chain.toml", "-o", "review.md"): (
+        "review-response.svg", "review-account.svg", "review-pulse.svg", "review-levels.svg", "review.md"),
     ("set", "nowhere.toml", "Q1.rc", "2k4"): (),
     ("show", "; touch pwned"): (),
 }
-IN_PLACE = {"new.toml"}  # made where nothing is yet
+IN_PLACE = {"new.toml", "chain.posted.toml"}  # made where nothing is yet
+
+
+GIT = {**os.environ, "GIT_AUTHOR_NAME": "a", "GIT_AUTHOR_EMAIL": "a", "GIT_COMMITTER_NAME": "a",
+       "GIT_COMMITTER_EMAIL": "a", "GIT_CONFIG_GLOBAL": os.devnull}
+
+
+def states(folder):
+    """What lies below a folder, and when it was last changed."""
+    return {path: path.stat().st_mtime_ns for path in folder.rglob("*")}
 
 
 def test_a_command_writes_what_it_is_asked_to_and_nothing_else(watched):
+    (watched.folder / "benched.toml").write_text(f'{SIX.read_text(encoding="utf-8")}\n[[bench]]\ngain = "40 dB"\n',
+                                                 encoding="utf-8")
+    for words in (["init", "-q"], ["add", "chain.toml"], ["commit", "-qm", MARK]):
+        subprocess.run(["git", *words], cwd=watched.folder, env=GIT, check=True)
+    repository = states(watched.folder / ".git")
     run = f"""import sys
 from polebook.cli.main import main
 for words in {[list(words) for words in COMMANDS]!r}:
@@ -133,10 +155,21 @@ for words in {[list(words) for words in COMMANDS]!r}:
             at.append(event)
     assert by_command.keys() == COMMANDS.keys()
     for words, done in by_command.items():
-        assert names(done[:-1]) == wanted(COMMANDS[words]), words
+        asked = [event for event in done[:-1] if event[0] == "subprocess.Popen"]
+        assert bool(asked) == ("--rev" in words) and all(map(only_asks, asked))
+        assert names([event for event in done[:-1] if event not in asked]) == wanted(COMMANDS[words]), words
         assert (done[-1] == ("os.ended", 2)) == (words[1:2] in (("nowhere.toml",), ("; touch pwned",))), words
-    assert {path.name for path in watched.folder.iterdir()} == {"chain.toml", "new.toml", "builds.csv", "hook", "log"}
+    made = {name for files in COMMANDS.values() for name in files}
+    assert {path.name for path in watched.folder.iterdir()} == made | {"benched.toml", "hook", "log", ".git"}
+    assert states(watched.folder / ".git") == repository
     assert watched.path.stat().st_mode & 0o777 == 0o640
+
+
+def only_asks(started):
+    """Whether git is called for a question."""
+    program, words = started[1:3]
+    return os.path.basename(program) == "git" and "--no-pager" in words and \
+        {"rev-parse", "cat-file", "log", "ls-files"} & set(words)
 
 
 def wanted(files):

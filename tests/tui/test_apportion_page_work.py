@@ -6,9 +6,12 @@ from threading import Event
 import pytest
 
 from polebook.plan.apportion import Request, apportion, finished
+from polebook.plan.wire import Garbled, Message
 from polebook.problem import ProblemsFound
 from polebook.tui import apportion_apart, spread_apart
 from polebook.tui.apportion_apart import sought
+from polebook.tui.apportion_passed import asked as asked_of
+from polebook.tui.apportion_passed import piece as taken
 from polebook.tui.apportion_work import question, run_of, steps
 from polebook.tui.apportions import Asked
 from tests.tui.apportion_told import here
@@ -38,6 +41,22 @@ def test_it_is_what_the_engine_comes_to_in_plain_values():
     assert dict(run.told) == {"file": "chain.toml", **result.document(), "written": False}
     first = found[0][2]["reached"]
     assert [name for name, _, _ in first] == ["gain", "lower", "upper", "peaking"] and first[2][2] is False
+
+
+def test_nothing_else_is_taken_for_a_piece_of_a_plan_or_for_what_is_asked():
+    found = [piece for _, _, piece in steps(question(LEAST, TEXT, "x.toml")) if piece is not None]
+    plan = json.loads(json.dumps(found[-1]))
+    assert taken(plan)["told"] == found[-1]["told"] and "reached" in taken(json.loads(json.dumps(found[0])))
+    told = plan["told"]
+    for wrong in ({**plan, "label": 1}, {**plan, "more": 0}, {**plan, "splices": [[1, 2, "x"]]}, {"else": 1}, [], None,
+                  {**plan, "told": {**told, "keys": [{}]}}, {**plan, "told": {**told, "met": 1}},
+                  {**plan, "told": {"keys": told["keys"]}}, {"reached": [["gain", "1", True]]}):
+        with pytest.raises(Garbled):
+            taken(wrong)
+    what = question(LEAST, TEXT, "x.toml")
+    for wrong in ({**what, "seed": "1"}, {**what, "free": "Q2.rc"}, {**what, "more": 0}, [what]):
+        with pytest.raises(Garbled):
+            asked_of(Message("run", wrong))
 
 
 def test_what_is_asked_at_fault_is_told(monkeypatch):

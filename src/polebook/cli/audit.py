@@ -65,13 +65,10 @@ def _judge(file: str, out: Out, quiet: bool, strict: bool) -> dict[str, Any]:
     try:
         chain = read.load(file)
         from polebook.book import build  # deferred: a faulty file is told without numpy, 75 ms sooner
-        from polebook.book.reach import within_reach
 
         ledger = build.ledger(chain)  # leverage, which the verdict takes, is more than an audit asks for
-        with within_reach(chain):
-            judged = ledger.judged
         spread = hand_yield(ledger, file, out)
-        document = build.document(ledger, (build.BAND, "targets", *(() if judged else ("verdict",))))
+        document = build.document(ledger, (build.BAND, "targets", *(() if ledger.judged else ("verdict",))))
     except ProblemsFound as found:
         out.found(found)
         problems = [_problem(problem) for problem in found.problems]

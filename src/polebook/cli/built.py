@@ -13,7 +13,11 @@ if TYPE_CHECKING:
 
 def hand_yield(ledger: Ledger, file: str, out: Out) -> dict[str, Any] | None:
     """Hands the ledger the yield that its file wants; what that was found from, None where nothing is built."""
-    if "target.yield" not in ledger.chain.given or not ledger.judged:
+    from polebook.book.reach import within_reach  # deferred: the help of an audit needs no book
+
+    with within_reach(ledger.chain):
+        judged = ledger.judged
+    if "target.yield" not in ledger.chain.given or not judged:
         return None
     from polebook.plan import yielded  # deferred: few files ask for a yield
 

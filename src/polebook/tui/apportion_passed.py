@@ -4,12 +4,37 @@ from __future__ import annotations
 
 from typing import Any
 
-from polebook.plan.wire import Garbled, Message, by_name, flag, many, maybe, number, of_names, several, whole, word
+from polebook.plan.wire import (
+    Garbled,
+    Message,
+    anything,
+    by_name,
+    flag,
+    many,
+    maybe,
+    number,
+    of_names,
+    several,
+    whole,
+    word,
+)
 
 STOP = "stop"  # kind of the message that is said in the midst of a run
 
 _ASKED = of_names(text=word, file=word, free=many(word), favour=word, seed=whole)
-_PLAN = of_names(told=by_name(lambda of: of), label=word, splices=many(several(whole, word, word)))
+_FIGURE = of_names(got=maybe(number), margin=maybe(number), met=maybe(flag), why=maybe(word))
+_KEY = of_names(path=word, unit=word, now=maybe(number), now_text=maybe(word), value=maybe(number), text=maybe(word),
+                moved=flag)
+_GIVEN = of_names(target=word, want=number, got=number)
+_HELD = of_names(path=word, value=number, bound=word, target=word, leverage=number)
+_LEVER = of_names(path=word, target=word, leverage=number)
+_TOLD = of_names(
+    file=word, free=of_names(**{"from": word, "keys": many(word)}), favour=maybe(word), seed=whole, starts=whole,
+    trials=whole, stopped=flag, keys=many(_KEY),
+    targets=many(of_names(name=word, want=maybe(number), before=_FIGURE, after=_FIGURE)),
+    overall=of_names(before=by_name(anything), after=by_name(anything)), cautions=many(word), mended=many(word),
+    met=flag, gives=many(_GIVEN), held=many(_HELD), levers=many(_LEVER), notes=many(word), written=flag)
+_PLAN = of_names(told=_TOLD, label=word, splices=many(several(whole, word, word)))
 _REACHED = of_names(reached=many(several(word, maybe(number), maybe(flag))))
 _PROBLEMS = of_names(problems=many(several(word, word, word)))
 
@@ -28,5 +53,5 @@ def piece(given: Any) -> dict[str, Any]:
         return {"reached": _REACHED(given)[0]}
     if "problems" in given:
         return {"problems": _PROBLEMS(given)[0]}
-    told, label, splices = _PLAN(given)
-    return {"told": told, "label": label, "splices": splices}
+    _, label, splices = _PLAN(given)
+    return {"told": given["told"], "label": label, "splices": splices}
