@@ -104,7 +104,7 @@ def test_no_series_has_a_value_beyond_its_decades(value):
 
 def test_nothing_is_posted_of_values_that_lie_too_far_apart(tmp_path, capsys):
     path = tmp_path / "far.toml"
-    path.write_text(f"format = 1\n{INVERTING}{VOLT}", encoding="utf-8")
+    path.write_text(f"format = 1\n{INVERTING}{VOLT}[target]\nyield = 0.9\n", encoding="utf-8")
     assert main(["post", str(path)]) == 2
     assert APART in capsys.readouterr().err
     assert [one.name for one in tmp_path.iterdir()] == ["far.toml"]
