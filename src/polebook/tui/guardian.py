@@ -21,7 +21,7 @@ from polebook.session.places import Unfit
 from polebook.session.recovery import Kept
 from polebook.session.watch import Look
 from polebook.text.files import Identity
-from polebook.tui.background import Background
+from polebook.tui.background import Ashore, Background
 from polebook.tui.control import recovered, watching
 from polebook.tui.control.base import at
 from polebook.tui.control.leaving import half_typed
@@ -46,17 +46,15 @@ class Guardian:
         self._lock = Lock(path)
         self._holder = self._lock.hold()
         self._keeper = Keeper(path, lambda: self._lock.ours)
+        self._ashore = Ashore()
         self._state: State | None = None
         self._handed: Work | None = NOTHING  # what was given to be kept; None after it failed
         self._taken: tuple[Kept, ...] = ()
-        self._loop: asyncio.AbstractEventLoop | None = None
         self._change: Change = lambda work: None
-        self._failed: Callable[[Exception], None] = lambda error: None
         self._timer: asyncio.TimerHandle | None = None
-        self._keeping = Background("polebook-keeping", self._broken)
-        self._watching = Background("polebook-watching", self._broken)
+        self._keeping = Background("polebook-keeping", self._ashore.broken)
+        self._watching = Background("polebook-watching", self._ashore.broken)
         self._looks = False  # a look is under way
-        self.over = False
         self.kept = ""  # where unsaved work was kept at the end, "" nowhere
         self.unkept = ""  # why not where it is looked for at the next opening
 
@@ -75,7 +73,8 @@ class Guardian:
     def begin(self, loop: asyncio.AbstractEventLoop, state: State, change: Change,
               failed: Callable[[Exception], None]) -> None:
         """Watches from now on. `change` is called, in the loop, with what makes a new state; `failed` with faults."""
-        self._loop, self._change, self._failed = loop, change, failed
+        self._ashore.begin(loop, failed)
+        self._change = change
         self.see(state)
         loop.call_later(LOOK_S, self._poll)
 
@@ -85,15 +84,15 @@ class Guardian:
         for one in state.care.taken:
             if one not in self._taken:
                 self._taken = (*self._taken, one)
-        if self._loop is None or self.over:
+        if self._ashore.loop is None or self._ashore.over:
             return
         if not state.unsaved:
             if self._handed != self._nothing():
                 self._keep()
         elif self._timer is None and self._handed is None:
-            self._timer = self._loop.call_later(RETRY_S, self._keep)
+            self._timer = self._ashore.loop.call_later(RETRY_S, self._keep)
         elif self._timer is None and self._handed is not None and self._handed.text != state.text:
-            self._timer = self._loop.call_later(KEEP_S, self._keep)
+            self._timer = self._ashore.loop.call_later(KEEP_S, self._keep)
 
     def now(self, state: State) -> str:
         """Keeps the work at once, where the program stops or ends. Why it can't be, "" where it is."""
@@ -106,9 +105,9 @@ class Guardian:
 
     def end(self, state: State) -> None:
         """The program ends, not by choice: the work is kept, an open note with it, and the file let go."""
-        if self.over:
+        if self._ashore.over:
             return
-        self.over = True
+        self._ashore.over = True
         with suppress(Exception):  # that may be just where the fault is that ends it
             state = half_typed(state, time.monotonic())
         self.unkept = self.now(state)
@@ -118,12 +117,12 @@ class Guardian:
 
     def leave(self, state: State) -> None:
         """The program is left by choice: the work goes where its user sent it, and the file is let go."""
-        if self.over:
+        if self._ashore.over:
             return
         if state.care.keep:
             self.end(state)
             return
-        self.over = True
+        self._ashore.over = True
         self._keeper.want(self._nothing())
         self._keeper.act()
         self._lock.release()
@@ -137,7 +136,7 @@ class Guardian:
 
     def close(self) -> None:
         """The file let go, where the app does not come to run."""
-        self.over = True
+        self._ashore.over = True
         self._lock.release()
 
     def report(self, text: str) -> str:
@@ -157,11 +156,11 @@ class Guardian:
         if self._timer is not None:
             self._timer.cancel()
             self._timer = None
-        if self._state is None or self.over:
+        if self._state is None or self._ashore.over:
             return
         self._handed = self._work(self._state)
         self._keeper.want(self._handed)
-        self._keeping.do(self._keeper.act, lambda reason: self._told(lambda: self._did(reason)))
+        self._keeping.do(self._keeper.act, lambda reason: self._ashore.tell(lambda: self._did(reason)))
 
     def _did(self, reason: str) -> None:
         if reason:
@@ -172,15 +171,16 @@ class Guardian:
 
     def _poll(self) -> None:
         """Another look, unless one hangs on a disk that does not answer."""
-        if self._loop is None or self._state is None or self.over:
+        if self._ashore.loop is None or self._state is None or self._ashore.over:
             return
-        self._loop.call_later(LOOK_S, self._poll)
+        self._ashore.loop.call_later(LOOK_S, self._poll)
         if not self._looks:
             self._looks = True
             state, theirs = self._state, self._state.care.theirs
             known = state.session.identity
             seen = known if theirs is None else theirs.identity
-            self._watching.do(lambda: self._look(state, seen), lambda found: self._told(lambda: self._saw(*found)))
+            self._watching.do(lambda: self._look(state, seen),
+                              lambda found: self._ashore.tell(lambda: self._saw(*found)))
 
     def _look(self, state: State, seen: Identity | None) -> tuple[Look | None, Holder | None, tuple[Kept, ...], bool]:
         """At the file and its lock; what was left behind where the lock has become ours; whether kept work is gone."""
@@ -200,23 +200,3 @@ class Guardian:
 
     def _found(self, state: State) -> tuple[tuple[Kept, ...], tuple[str, ...]]:
         return recovery.found(self._path, state.session.history.disk, self._keeper.file)
-
-    def _told(self, work: Callable[[], None]) -> None:
-        """From a thread to the loop."""
-        if self._loop is not None:
-            with suppress(RuntimeError):  # the loop has ended
-                self._loop.call_soon_threadsafe(self._sound, work)
-
-    def _sound(self, work: Callable[[], None]) -> None:
-        if self.over:
-            return
-        try:
-            work()
-        except Exception as error:
-            self._failed(error)
-
-    def _broken(self, error: Exception) -> None:
-        def work() -> None:
-            raise error
-
-        self._told(work)
