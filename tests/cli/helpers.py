@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import json
 import os
 import subprocess
 import sys
 from pathlib import Path
+
+from polebook.cli.main import main
 
 ROOT = Path(__file__).parent.parent.parent
 CHAINS = ROOT / "chains"
@@ -37,3 +40,21 @@ def run(words, stdout=subprocess.PIPE, env=None):
     return subprocess.run(
         words, stdout=stdout, stderr=subprocess.PIPE, env=env or environment(), timeout=60, check=False
     )
+
+
+def telling(name):
+    """A command run in this process: (capsys, its arguments) -> its exit code, output and messages."""
+    def told(capsys, *args):
+        code = main([name, *map(str, args)])
+        out, err = capsys.readouterr()
+        return code, out, err
+    return told
+
+
+def answering(name):
+    """The same with --json, which ends well and says nothing beside: its answer."""
+    def as_json(capsys, *args):
+        code, out, err = telling(name)(capsys, *args, "--json")
+        assert (code, err) == (0, "")
+        return json.loads(out)
+    return as_json

@@ -15,7 +15,7 @@ from polebook.cli import apportion as command
 from polebook.cli.main import main
 from polebook.plan import apportion as plan
 from polebook.report.look import cells
-from tests.cli.helpers import CHAINS, LISTENER, SIX, environment, program
+from tests.cli.helpers import CHAINS, LISTENER, SIX, environment, program, telling
 from tests.cli.helpers import command as words
 from tests.test_imports import modules_after
 
@@ -24,10 +24,7 @@ FEW = "Q1.rc,Q1.re,Q2.re,Q2.c_comp"
 FOUND = {}  # request -> its result
 
 
-def told(capsys, *args):
-    code = main(["apportion", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
+told = telling("apportion")
 
 
 @pytest.fixture

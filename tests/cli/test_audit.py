@@ -6,13 +6,9 @@ import re
 import pytest
 
 from polebook.cli.main import main
-from tests.cli.helpers import LISTENER, PHOTODIODE, SIX
+from tests.cli.helpers import LISTENER, PHOTODIODE, SIX, telling
 
-
-def told(capsys, *args):
-    code = main(["audit", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
+told = telling("audit")
 
 
 def variant(tmp_path, name, *changes):

@@ -4,17 +4,13 @@ import json
 
 import pytest
 
-from polebook.cli.main import main
-from tests.cli.helpers import CHAINS, LISTENER, SIX
+from tests.cli.helpers import CHAINS, LISTENER, SIX, telling
 from tests.cli.test_spread import EDGE, as_json
 
 PROBE = CHAINS / "leaf-probe.toml"
 
 
-def told(capsys, *args):
-    code = main(["audit", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
+told = telling("audit")
 
 
 def judged(capsys, *args):

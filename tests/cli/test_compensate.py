@@ -8,10 +8,9 @@ from pathlib import Path
 
 import pytest
 
-from polebook.cli.main import main
 from polebook.plan import compensate as plan
 from polebook.report.look import cells
-from tests.cli.helpers import LISTENER, PHOTODIODE, ROOT, program
+from tests.cli.helpers import LISTENER, PHOTODIODE, ROOT, program, telling
 
 SOUNDER = ROOT / "chains" / "frost-line-sounder.toml"
 EDGE = ("Q2", "--edge", "200k")
@@ -33,10 +32,7 @@ cgs = "p5"
 """
 
 
-def told(capsys, *args):
-    code = main(["compensate", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
+told = telling("compensate")
 
 
 def as_json(capsys, *args, code=0):

@@ -2,28 +2,17 @@
 
 import csv
 import io
-import json
 import re
 
 import pytest
 
 from polebook.book.ledger import ledger
 from polebook.chain import read
-from polebook.cli.main import main
 from polebook.report.look import cells
-from tests.cli.helpers import CHAINS, LISTENER, SIX, program
+from tests.cli.helpers import CHAINS, LISTENER, SIX, answering, program, telling
 
-
-def told(capsys, *args):
-    code = main(["couple", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
-
-
-def as_json(capsys, *args):
-    code, out, err = told(capsys, *args, "--json")
-    assert (code, err) == (0, "")
-    return json.loads(out)
+told = telling("couple")
+as_json = answering("couple")
 
 
 @pytest.fixture

@@ -1,27 +1,16 @@
 """show: pages, one frequency, JSON, faults of a file."""
 
-import json
 import math
 import re
 
 import pytest
 
-from polebook.cli.main import main
 from polebook.report.look import cells
 from polebook.report.pages import LEDGER, PAGES
-from tests.cli.helpers import ALL, LISTENER, PHOTODIODE
+from tests.cli.helpers import ALL, LISTENER, PHOTODIODE, answering, telling
 
-
-def told(capsys, *args):
-    code = main(["show", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
-
-
-def as_json(capsys, *args):
-    code, out, err = told(capsys, *args, "--json")
-    assert (code, err) == (0, "")
-    return json.loads(out)
+told = telling("show")
+as_json = answering("show")
 
 
 @pytest.mark.parametrize("file", ALL, ids=lambda file: file.stem)

@@ -17,7 +17,7 @@ import pytest
 from polebook.cli.main import main
 from polebook.plan.spread import run
 from polebook.report.look import cells
-from tests.cli.helpers import CHAINS, LISTENER, PHOTODIODE, SIX, environment, program
+from tests.cli.helpers import CHAINS, LISTENER, PHOTODIODE, SIX, answering, environment, program, telling
 from tests.cli.helpers import command as words
 
 PROBE = CHAINS / "leaf-probe.toml"
@@ -31,16 +31,8 @@ EDGE = (
 )
 
 
-def told(capsys, *args):
-    code = main(["spread", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
-
-
-def as_json(capsys, *args):
-    code, out, err = told(capsys, *args, "--json")
-    assert (code, err) == (0, "")
-    return json.loads(out)
+told = telling("spread")
+as_json = answering("spread")
 
 
 def as_rows(capsys, *args):

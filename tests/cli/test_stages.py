@@ -6,16 +6,11 @@ import json
 
 import pytest
 
-from polebook.cli.main import main
 from polebook.plan import stages as planning
 from polebook.report.look import cells
-from tests.cli.helpers import CHAINS, LISTENER, PHOTODIODE, SIX, program
+from tests.cli.helpers import CHAINS, LISTENER, PHOTODIODE, SIX, program, telling
 
-
-def told(capsys, *args):
-    code = main(["stages", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
+told = telling("stages")
 
 
 def as_json(capsys, *args):

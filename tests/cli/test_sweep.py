@@ -2,7 +2,6 @@
 
 import csv
 import io
-import json
 import os
 import pty
 import signal
@@ -12,22 +11,12 @@ import time
 import pytest
 
 from polebook.cli import sweep as command
-from polebook.cli.main import main
 from polebook.report.look import cells
-from tests.cli.helpers import ALL, LISTENER, PHOTODIODE, SIX, environment, program
+from tests.cli.helpers import ALL, LISTENER, PHOTODIODE, SIX, answering, environment, program, telling
 from tests.cli.helpers import command as words
 
-
-def told(capsys, *args):
-    code = main(["sweep", *map(str, args)])
-    out, err = capsys.readouterr()
-    return code, out, err
-
-
-def as_json(capsys, *args):
-    code, out, err = told(capsys, *args, "--json")
-    assert (code, err) == (0, "")
-    return json.loads(out)
+told = telling("sweep")
+as_json = answering("sweep")
 
 
 def test_the_table_has_a_line_a_point_and_marks_today(capsys):
