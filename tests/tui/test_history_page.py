@@ -272,7 +272,7 @@ def test_the_thread_finds_it_all_out_and_keys_do_not_wait(repository, monkeypatc
             if len(slow) >= 2 and wish(desk.state) is None:
                 break
         assert not faults_ and wish(desk.state) is None and len(names(desk)) == 6
-        history._broken(ValueError("ours"))
+        history._ashore.broken(ValueError("ours"))
         await asyncio.sleep(0.02)
         assert [str(one) for one in faults_] == ["ours"]
 
