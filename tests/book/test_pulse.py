@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from math import exp, log, pi, sqrt
 
 import numpy as np
@@ -9,6 +10,7 @@ import pytest
 
 from polebook.book.build import document, ledger, roots
 from polebook.book.delay import delay
+from polebook.book.ledger import Ledger
 from polebook.book.pulse import rise_by_edge, rise_by_nodes, rounded, sag
 from polebook.book.pulse_rows import overall, page
 from polebook.book.working import working
@@ -150,14 +152,11 @@ def test_everything_scales_with_time(name):
     """All C, L and tau three times as large: all times too, and no height moves."""
     from polebook.circuit.views import network
 
-    one, slow = ledger(chain(name)), ledger(chain(name))
-    circuit = slow.solution.circuit
-    layout = circuit.layout
+    one = ledger(chain(name))
+    circuit = one.solution.circuit
     values = [value * (3.0 if part.type in ("C", "L", "tau") else 1.0)
-              for value, part in zip(circuit.network.values, layout.parts, strict=True)]
-    circuit.network.values[:] = values
-    fresh = network(layout, values)
-    circuit.network.conductance[:], circuit.network.storing[:] = fresh.conductance, fresh.storing
+              for value, part in zip(circuit.network.values, circuit.layout.parts, strict=True)]
+    slow = Ledger(one.chain, replace(circuit, network=network(circuit.layout, values)))
     for key in ("rise_time_s", "settling_1_s", "settling_01_s"):
         assert getattr(slow.pulse, key) == pytest.approx(3 * getattr(one.pulse, key), rel=1e-9)
     assert slow.pulse.overshoot_percent == pytest.approx(one.pulse.overshoot_percent, rel=1e-9, abs=1e-9)
